@@ -1,0 +1,78 @@
+// How does A depend on k and on the pump (or loss) of a device?
+
+import type { Device } from '../device/model.ts';
+import { add, type Complex, complex, type ComplexArray, divide, multiply, scale } from '../numerics/complex.ts';
+import { BACKGROUND, LAYER } from '../mesh/mesh.ts';
+import type { Factorization } from '../sparse/pattern.ts';
+import { type OpenOperator, type RegionWeights, setWeight, zeroWeights } from './open-operator.ts';
+
+/** Which matrix of the family: A itself, ∂A/∂k or ∂A/∂(level). */
+export type Part = 'value' | 'byK' | 'byLevel';
+
+/**
+ * A(k, D) = Σ p_b(D) K_b − k² Σ q_b(D) M_b, with ε_b(D) = ε_b + σ i D w_b: σ = −1 pumps, σ = +1 adds loss.
+ * (p, q) = (1/μ, ε) for `Ez`, (1/ε, μ) for `Hz`. Linear in k² and, for `Ez`, in D.
+ */
+export interface DeviceFamily {
+  readonly size: number;
+  readonly operator: OpenOperator;
+  weights(k: Complex, level: number, part: Part): RegionWeights;
+  multiplyInto(out: ComplexArray, k: Complex, level: number, part: Part, x: ComplexArray, columns: number): ComplexArray;
+  factorize(k: Complex, level: number): Factorization;
+}
+
+export type LevelSense = 'gain' | 'loss';
+
+/** The family of a device on an assembled operator. */
+export function deviceFamily(device: Device, operator: OpenOperator, sense: LevelSense): DeviceFamily {
+  const weights = (k: Complex, level: number, part: Part): RegionWeights => {
+    const out = zeroWeights(device.bodies.length);
+    for (let region = LAYER; region < device.bodies.length; region++) {
+      const { p, q, pSlope, qSlope } = regionMaterial(device, region, level, sense);
+      const k2 = multiply(k, k);
+      if (part === 'value') {
+        setWeight(out.stiffness, region, p);
+        setWeight(out.mass, region, scale(multiply(k2, q), -1));
+      } else if (part === 'byK') {
+        setWeight(out.mass, region, scale(multiply(k, q), -2));
+      } else {
+        setWeight(out.stiffness, region, pSlope);
+        setWeight(out.mass, region, scale(multiply(k2, qSlope), -1));
+      }
+    }
+    return out;
+  };
+  return {
+    size: operator.space.unknowns,
+    operator,
+    weights,
+    multiplyInto: (out, k, level, part, x, columns) =>
+      operator.multiplyInto(out, weights(k, level, part), x, columns),
+    factorize: (k, level) => operator.factorize(weights(k, level, 'value')),
+  };
+}
+
+/** (p, q) of a region at a level, and their derivatives by the level. */
+export function regionMaterial(
+  device: Device,
+  region: number,
+  level: number,
+  sense: LevelSense,
+): { readonly p: Complex; readonly q: Complex; readonly pSlope: Complex; readonly qSlope: Complex } {
+  const zero = complex(0);
+  const one = complex(1);
+  if (region === BACKGROUND || region === LAYER) {
+    const { permittivity, permeability } = device.background;
+    return device.polarization === 'Ez'
+      ? { p: complex(1 / permeability), q: complex(permittivity), pSlope: zero, qSlope: zero }
+      : { p: complex(1 / permittivity), q: complex(permeability), pSlope: zero, qSlope: zero };
+  }
+  const body = device.bodies[region]!;
+  const slope = complex(0, (sense === 'gain' ? -1 : 1) * body.pumpWeight);
+  const permittivity = add(body.permittivity, scale(slope, level));
+  if (device.polarization === 'Ez') {
+    return { p: divide(one, body.permeability), q: permittivity, pSlope: zero, qSlope: slope };
+  }
+  const p = divide(one, permittivity);
+  return { p, q: body.permeability, pSlope: scale(multiply(multiply(p, p), slope), -1), qSlope: zero };
+}

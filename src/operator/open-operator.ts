@@ -1,0 +1,172 @@
+// What is the matrix A of an open device, at any k and any pump?
+
+import { assembleElements, type ElementMatrices, type PointCoefficients } from '../elements/element-matrices.ts';
+import { largestElement, type Space } from '../elements/space.ts';
+import { LAYER } from '../mesh/mesh.ts';
+import type { Complex, ComplexArray } from '../numerics/complex.ts';
+import type { Direction } from '../numerics/conventions.ts';
+import { analyse } from '../sparse/analyse.ts';
+import type { Analysis, Factorization } from '../sparse/pattern.ts';
+
+/** One complex number for stiffness and one for mass on every region: index body + 2, so 0 is LAYER, 1 BACKGROUND. */
+export interface RegionWeights {
+  readonly stiffness: ComplexArray;
+  readonly mass: ComplexArray;
+}
+
+/**
+ * A = Σ_t w_K(region) K_t + w_M(region) M_t with any complex weights: the affine family of a mesh. The layer's
+ * matrices are conjugated for incoming waves. Every matrix is complex symmetric.
+ */
+export interface OpenOperator {
+  readonly space: Space;
+  readonly direction: Direction;
+  readonly elements: ElementMatrices;
+  readonly analysis: Analysis;
+  /** out = A x for `columns` interleaved column-major vectors of space.unknowns. */
+  multiplyInto(out: ComplexArray, weights: RegionWeights, x: ComplexArray, columns: number): ComplexArray;
+  factorize(weights: RegionWeights): Factorization;
+}
+
+/** Assembles all element matrices and analyses the pattern; both serve every direction through `facing`. */
+export function assembleOpen(space: Space, layer: PointCoefficients, direction: Direction): OpenOperator {
+  const elements = assembleElements(space, layer);
+  const { mesh } = space;
+  const triangles = mesh.triangles.length / 3;
+  const centroids = new Float64Array(2 * triangles);
+  for (let t = 0; t < triangles; t++) {
+    for (let i = 0; i < 3; i++) {
+      const v = mesh.triangles[3 * t + i]!;
+      centroids[2 * t] = centroids[2 * t]! + mesh.vertices[2 * v]! / 3;
+      centroids[2 * t + 1] = centroids[2 * t + 1]! + mesh.vertices[2 * v + 1]! / 3;
+    }
+  }
+  const analysis = analyse({ unknowns: space.unknowns, starts: space.starts, list: space.list, centroids });
+  return makeOperator(space, elements, analysis, direction);
+}
+
+/** The same device with the other direction of its open boundary; shares all stored matrices. */
+export const facing = (operator: OpenOperator, direction: Direction): OpenOperator =>
+  direction === operator.direction
+    ? operator
+    : makeOperator(operator.space, operator.elements, operator.analysis, direction);
+
+/** Weights per region for a device with `bodies` bodies, all zero. */
+export const zeroWeights = (bodies: number): RegionWeights => ({
+  stiffness: new Float64Array(2 * (bodies + 2)),
+  mass: new Float64Array(2 * (bodies + 2)),
+});
+
+export function setWeight(array: ComplexArray, region: number, value: Complex): void {
+  array[2 * (region + 2)] = value.re;
+  array[2 * (region + 2) + 1] = value.im;
+}
+
+function makeOperator(
+  space: Space,
+  elements: ElementMatrices,
+  analysis: Analysis,
+  direction: Direction,
+): OpenOperator {
+  return {
+    space,
+    direction,
+    elements,
+    analysis,
+    multiplyInto: (out, weights, x, columns) => multiplyElements(out, space, elements, direction, weights, x, columns),
+    factorize: (weights) =>
+      analysis.factorize((t, into) => fillElement(into, t, space.mesh.regions[t]!, elements, direction, weights)),
+  };
+}
+
+function fillElement(
+  into: ComplexArray,
+  t: number,
+  region: number,
+  elements: ElementMatrices,
+  direction: Direction,
+  weights: RegionWeights,
+): void {
+  const k = elements.stiffness[t]!;
+  const m = elements.mass[t]!;
+  const at = 2 * (region + 2);
+  const kr = weights.stiffness[at]!;
+  const ki = weights.stiffness[at + 1]!;
+  const mr = weights.mass[at]!;
+  const mi = weights.mass[at + 1]!;
+  if (region !== LAYER) {
+    for (let n = 0; n < k.length; n++) {
+      into[2 * n] = kr * k[n]! + mr * m[n]!;
+      into[2 * n + 1] = ki * k[n]! + mi * m[n]!;
+    }
+    return;
+  }
+  const flip = direction === 'incoming' ? -1 : 1;
+  for (let n = 0; n < k.length; n += 2) {
+    const a = k[n]!;
+    const b = flip * k[n + 1]!;
+    const c = m[n]!;
+    const d = flip * m[n + 1]!;
+    into[n] = kr * a - ki * b + mr * c - mi * d;
+    into[n + 1] = kr * b + ki * a + mr * d + mi * c;
+  }
+}
+
+function multiplyElements(
+  out: ComplexArray,
+  space: Space,
+  elements: ElementMatrices,
+  direction: Direction,
+  weights: RegionWeights,
+  x: ComplexArray,
+  columns: number,
+): ComplexArray {
+  const { starts, list, unknowns, mesh } = space;
+  const triangles = starts.length - 1;
+  const widest = largestElement(space);
+  const local = new Float64Array(2 * widest);
+  const block = new Float64Array(2 * widest * widest);
+  out.fill(0, 0, 2 * unknowns * columns);
+  for (let t = 0; t < triangles; t++) {
+    const region = mesh.regions[t]!;
+    const at = 2 * (region + 2);
+    if (
+      weights.stiffness[at] === 0 &&
+      weights.stiffness[at + 1] === 0 &&
+      weights.mass[at] === 0 &&
+      weights.mass[at + 1] === 0
+    ) {
+      continue;
+    }
+    fillElement(block, t, region, elements, direction, weights);
+    const start = starts[t]!;
+    const nd = starts[t + 1]! - start;
+    for (let c = 0; c < columns; c++) {
+      const shift = 2 * c * unknowns;
+      for (let i = 0; i < nd; i++) {
+        const g = list[start + i]!;
+        local[2 * i] = g < 0 ? 0 : x[shift + 2 * g]!;
+        local[2 * i + 1] = g < 0 ? 0 : x[shift + 2 * g + 1]!;
+      }
+      for (let i = 0; i < nd; i++) {
+        const g = list[start + i]!;
+        if (g < 0) continue;
+        // row i of a symmetric block is its column i: contiguous
+        let sr = 0;
+        let si = 0;
+        const row = 2 * i * nd;
+        for (let j = 0; j < 2 * nd; j += 2) {
+          const ar = block[row + j]!;
+          const ai = block[row + j + 1]!;
+          const br = local[j]!;
+          const bi = local[j + 1]!;
+          sr += ar * br - ai * bi;
+          si += ar * bi + ai * br;
+        }
+        out[shift + 2 * g] = out[shift + 2 * g]! + sr;
+        out[shift + 2 * g + 1] = out[shift + 2 * g + 1]! + si;
+      }
+    }
+  }
+  return out;
+}
