@@ -41,7 +41,7 @@ export function divergingMap(theme: Theme): ColourMap {
   return sampleMap((t) => {
     const s = Math.abs(2 * t - 1);
     const hue = ((t < 0.5 ? BROWN : TEAL) * Math.PI) / 180;
-    return fade(ground, [end, 0.088 * Math.cos(hue), 0.088 * Math.sin(hue)], s, 0.045, hue);
+    return fade(ground, [end, 0.066 * Math.cos(hue), 0.066 * Math.sin(hue)], s, 0.04, hue);
   });
 }
 
