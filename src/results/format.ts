@@ -202,4 +202,6 @@ export interface RunRecord {
     >;
   };
   readonly arrays: Readonly<Record<string, ArrayEntry>>;
+  /** Files of the run folder other than `run.json`, made when it is stored: reading checks `arrays.bin` against it. */
+  readonly files?: Readonly<Record<string, { readonly bytes: number; readonly sha256: string }>>;
 }
