@@ -1,0 +1,141 @@
+// The few block operations on tall complex matrices that the eigen solvers share.
+
+import type { ComplexArray } from '../numerics/complex.ts';
+
+/** out[i + j·p] = Σ x_i y_j over the n rows (no conjugation): XᵀY of p and q columns. */
+export function transposeProduct(x: ComplexArray, p: number, y: ComplexArray, q: number, n: number): ComplexArray {
+  return product(x, p, y, q, n, 1);
+}
+
+/** The same with the left factor conjugated: XᴴY. */
+export function adjointProduct(x: ComplexArray, p: number, y: ComplexArray, q: number, n: number): ComplexArray {
+  return product(x, p, y, q, n, -1);
+}
+
+function product(x: ComplexArray, p: number, y: ComplexArray, q: number, n: number, sign: 1 | -1): ComplexArray {
+  const out = new Float64Array(2 * p * q);
+  for (let j = 0; j < q; j++) {
+    const yj = y.subarray(2 * j * n, 2 * (j + 1) * n);
+    for (let i = 0; i < p; i++) {
+      const xi = x.subarray(2 * i * n, 2 * (i + 1) * n);
+      let rr = 0;
+      let ii = 0;
+      let ri = 0;
+      let ir = 0;
+      for (let s = 0; s < 2 * n; s += 2) {
+        const a = xi[s]!;
+        const b = xi[s + 1]!;
+        const c = yj[s]!;
+        const d = yj[s + 1]!;
+        rr += a * c;
+        ii += b * d;
+        ri += a * d;
+        ir += b * c;
+      }
+      out[2 * (i + j * p)] = rr - sign * ii;
+      out[2 * (i + j * p) + 1] = ri + sign * ir;
+    }
+  }
+  return out;
+}
+
+/** out += factor · X C, with X n × p and C p × q. */
+export function addProduct(
+  out: ComplexArray,
+  x: ComplexArray,
+  p: number,
+  c: ComplexArray,
+  q: number,
+  n: number,
+  factor = 1,
+): ComplexArray {
+  for (let j = 0; j < q; j++) {
+    const oj = out.subarray(2 * j * n, 2 * (j + 1) * n);
+    for (let i = 0; i < p; i++) {
+      const cr = factor * c[2 * (i + j * p)]!;
+      const ci = factor * c[2 * (i + j * p) + 1]!;
+      if (cr === 0 && ci === 0) continue;
+      const xi = x.subarray(2 * i * n, 2 * (i + 1) * n);
+      for (let s = 0; s < 2 * n; s += 2) {
+        const a = xi[s]!;
+        const b = xi[s + 1]!;
+        oj[s] = oj[s]! + cr * a - ci * b;
+        oj[s + 1] = oj[s + 1]! + cr * b + ci * a;
+      }
+    }
+  }
+  return out;
+}
+
+/** X C as a new n × q matrix. */
+export const combine = (x: ComplexArray, p: number, c: ComplexArray, q: number, n: number): ComplexArray =>
+  addProduct(new Float64Array(2 * n * q), x, p, c, q, n);
+
+/** Euclidean norm of column j. */
+export function columnNorm(x: ComplexArray, j: number, n: number): number {
+  let sum = 0;
+  for (let s = 2 * j * n; s < 2 * (j + 1) * n; s++) sum += x[s]! * x[s]!;
+  return Math.sqrt(sum);
+}
+
+/** Multiplies column j by a complex number. */
+export function scaleColumn(x: ComplexArray, j: number, n: number, re: number, im = 0): void {
+  for (let s = 2 * j * n; s < 2 * (j + 1) * n; s += 2) {
+    const a = x[s]!;
+    const b = x[s + 1]!;
+    x[s] = re * a - im * b;
+    x[s + 1] = re * b + im * a;
+  }
+}
+
+/** Scales every column to Euclidean norm 1. */
+export function normaliseColumns(x: ComplexArray, columns: number, n: number): ComplexArray {
+  for (let j = 0; j < columns; j++) {
+    const norm = columnNorm(x, j, n);
+    if (norm > 0) scaleColumn(x, j, n, 1 / norm);
+  }
+  return x;
+}
+
+/**
+ * Orthonormalises the columns of W (n × q) against the orthonormal V (n × p) and among themselves, block classical
+ * Gram–Schmidt twice. Returns the coefficients: H (p × q) with W_old = V H + W R, and R (q × q) upper triangular.
+ * Columns that vanish (relative 1e-12) are replaced by zero and their R diagonal is 0.
+ */
+export function orthonormalise(
+  w: ComplexArray,
+  q: number,
+  v: ComplexArray,
+  p: number,
+  n: number,
+): { readonly h: ComplexArray; readonly r: ComplexArray } {
+  const before = Array.from({ length: q }, (_, j) => columnNorm(w, j, n));
+  const h = new Float64Array(2 * p * q);
+  for (let pass = 0; pass < 2; pass++) {
+    if (p === 0) break;
+    const c = adjointProduct(v, p, w, q, n);
+    addProduct(w, v, p, c, q, n, -1);
+    for (let s = 0; s < c.length; s++) h[s] = h[s]! + c[s]!;
+  }
+  const r = new Float64Array(2 * q * q);
+  for (let j = 0; j < q; j++) {
+    const wj = w.subarray(2 * j * n, 2 * (j + 1) * n);
+    for (let pass = 0; pass < 2; pass++) {
+      if (j === 0) break;
+      const c = adjointProduct(w, j, wj, 1, n);
+      addProduct(wj, w, j, c, 1, n, -1);
+      for (let i = 0; i < j; i++) {
+        r[2 * (i + j * q)] = r[2 * (i + j * q)]! + c[2 * i]!;
+        r[2 * (i + j * q) + 1] = r[2 * (i + j * q) + 1]! + c[2 * i + 1]!;
+      }
+    }
+    const norm = columnNorm(wj, 0, n);
+    if (norm <= 1e-12 * before[j]! || norm === 0) {
+      wj.fill(0);
+      continue;
+    }
+    r[2 * (j + j * q)] = norm;
+    scaleColumn(wj, 0, n, 1 / norm);
+  }
+  return { h, r };
+}

@@ -1,0 +1,134 @@
+// Given a space that holds a cluster of eigenvectors, what are its eigenvalues and how do they move?
+
+import { add, type Complex, complex, type ComplexArray, divide, modulus, scale, subtract } from '../numerics/complex.ts';
+import { eigenGeneral } from '../numerics/eigenvalues.ts';
+import { luFactor, luSolveInto } from '../numerics/lu.ts';
+import { combine, normaliseColumns, transposeProduct } from './columns.ts';
+import type { EigenProblem } from './problem.ts';
+
+/** Members of a cluster that agree within the tolerance: one row of an answer. */
+export interface EigenGroup {
+  /** Mean of the members: well-conditioned even where uᵀA′u vanishes for a single vector. */
+  readonly k: Complex;
+  /** Largest distance of a member from the mean. */
+  readonly spread: number;
+  /** dk/d(level) of the mean. */
+  readonly slope: Complex;
+  readonly multiplicity: number;
+  /** size × multiplicity, columns of norm 1. */
+  readonly vectors: ComplexArray;
+}
+
+/**
+ * Eigenvalues near k of the problem projected on the columns of U, by the block Rayleigh functional: eigenvalues δ of
+ * UᵀA(k)U + δ UᵀA′(k)U. Complex symmetry makes the error quadratic in that of U. Repeated from the group's own mean
+ * until it stands still, since A is not linear in k.
+ *
+ * @param near   where the cluster lies
+ * @param columns of U, which is size × columns
+ * @param tolerance absolute distance within which members form one group
+ */
+export function rayleighGroups(
+  problem: EigenProblem,
+  near: Complex,
+  level: number,
+  U: ComplexArray,
+  columns: number,
+  tolerance: number,
+  withSlope = true,
+): EigenGroup[] {
+  const n = problem.size;
+  const first = smallPencil(problem, near, level, U, columns);
+  if (!first) return [];
+  return gather(first.offsets, tolerance).map((members) => {
+    const y = new Float64Array(2 * columns * members.length);
+    members.forEach((i, j) => y.set(first.vectors.subarray(2 * columns * i, 2 * columns * (i + 1)), 2 * columns * j));
+    const vectors = normaliseColumns(combine(U, columns, y, members.length, n), members.length, n);
+    let k = add(near, mean(members.map((i) => first.offsets[i]!)));
+    let spread = 0;
+    for (let pass = 0; pass < 8; pass++) {
+      const again = smallPencil(problem, k, level, vectors, members.length);
+      if (!again) break;
+      const step = mean(again.offsets);
+      spread = Math.max(...again.offsets.map((o) => modulus(subtract(o, step))));
+      k = add(k, step);
+      if (modulus(step) <= 1e-15 * modulus(k)) break;
+    }
+    const slope = withSlope ? groupSlope(problem, k, level, vectors, members.length) : complex(0);
+    return { k, spread, slope, multiplicity: members.length, vectors };
+  });
+}
+
+/** Mean dk/d(level) = −tr[(UᵀA_k U)⁻¹ UᵀA_level U]/μ of a group. */
+function groupSlope(problem: EigenProblem, k: Complex, level: number, U: ComplexArray, columns: number): Complex {
+  const n = problem.size;
+  const work = new Float64Array(2 * n * columns);
+  problem.multiplyInto(work, k, level, 'byK', U, columns);
+  const byK = transposeProduct(U, columns, work, columns, n);
+  problem.multiplyInto(work, k, level, 'byLevel', U, columns);
+  const byLevel = transposeProduct(U, columns, work, columns, n);
+  const lu = luFactor(byK, columns);
+  luSolveInto(byLevel, lu, byLevel, columns);
+  let trace = complex(0);
+  for (let i = 0; i < columns; i++) {
+    trace = add(trace, complex(byLevel[2 * (i + i * columns)]!, byLevel[2 * (i + i * columns) + 1]!));
+  }
+  return scale(trace, -1 / columns);
+}
+
+function smallPencil(
+  problem: EigenProblem,
+  k: Complex,
+  level: number,
+  U: ComplexArray,
+  columns: number,
+): { readonly offsets: readonly Complex[]; readonly vectors: ComplexArray } | null {
+  const n = problem.size;
+  const work = new Float64Array(2 * n * columns);
+  problem.multiplyInto(work, k, level, 'value', U, columns);
+  const g = transposeProduct(U, columns, work, columns, n);
+  problem.multiplyInto(work, k, level, 'byK', U, columns);
+  const slope = transposeProduct(U, columns, work, columns, n);
+  if (columns === 1) {
+    const d = complex(slope[0]!, slope[1]!);
+    if (modulus(d) === 0) return null;
+    const offset = scale(divide(complex(g[0]!, g[1]!), d), -1);
+    return { offsets: [offset], vectors: Float64Array.of(1, 0) };
+  }
+  const lu = luFactor(slope, columns);
+  const matrix = luSolveInto(new Float64Array(g.length), lu, g, columns);
+  for (let s = 0; s < matrix.length; s++) matrix[s] = -matrix[s]!;
+  if (!matrix.every(Number.isFinite)) return null;
+  const { values, vectors } = eigenGeneral(matrix, columns);
+  return {
+    offsets: Array.from({ length: columns }, (_, i) => complex(values[2 * i]!, values[2 * i + 1]!)),
+    vectors,
+  };
+}
+
+/** Chains of values that lie within the tolerance of one another, as lists of indices. */
+export function gather(values: readonly Complex[], tolerance: number): number[][] {
+  const groups: number[][] = [];
+  const taken = values.map(() => false);
+  for (let i = 0; i < values.length; i++) {
+    if (taken[i]) continue;
+    const group = [i];
+    taken[i] = true;
+    for (let at = 0; at < group.length; at++) {
+      for (let j = 0; j < values.length; j++) {
+        if (!taken[j] && modulus(subtract(values[j]!, values[group[at]!]!)) <= tolerance) {
+          taken[j] = true;
+          group.push(j);
+        }
+      }
+    }
+    groups.push(group);
+  }
+  return groups;
+}
+
+const mean = (values: readonly Complex[]): Complex =>
+  scale(
+    values.reduce((a, b) => add(a, b), complex(0)),
+    1 / values.length,
+  );
