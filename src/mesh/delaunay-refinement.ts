@@ -1,0 +1,415 @@
+// Which points make a triangulation of the curves one of good triangles of the wanted size?
+
+import type { Arrangement } from '../geometry/arrangement.ts';
+import type { Point } from '../geometry/curves.ts';
+import { pointAt } from '../geometry/curves.ts';
+import { GeometryError } from '../geometry/geometry-error.ts';
+import type { Discretisation, Segment } from './discretisation.ts';
+import { GROWTH } from './discretisation.ts';
+import { Triangulation, nextOf, previousOf } from './triangulation.ts';
+
+/** Label of triangles outside the outermost curve. */
+export const OUTSIDE = -1;
+
+const UNKNOWN = -9;
+const degrees = Math.PI / 180;
+
+/**
+ * A triangulation under refinement: Delaunay refinement with circumcentres and off-centres (Chew 1993, Ruppert 1995,
+ * Üngör 2004), segments split on their true curves. A point encroaches on a segment that it sees under more than 120°;
+ * so no vertex ever comes between a chord and its arc.
+ */
+export class Draft {
+  readonly triangulation: Triangulation;
+  readonly segments: (Segment | null)[];
+  /** Size wanted at each vertex of the triangulation. */
+  readonly size: number[];
+  /** 1 where the vertex lies on a curve. */
+  readonly onCurve: number[] = [];
+  private readonly arrangement: Arrangement;
+  private readonly base: (label: number) => number;
+  private readonly floor: number;
+  private readonly limit: number;
+
+  constructor(
+    arrangement: Arrangement,
+    discretisation: Discretisation,
+    base: (label: number) => number,
+    center: Point,
+    reach: number,
+    limit: number,
+  ) {
+    this.arrangement = arrangement;
+    this.base = base;
+    this.floor = 1e-8 * reach;
+    this.limit = limit;
+    const t = new Triangulation(center[0], center[1], 4 * reach);
+    this.triangulation = t;
+    this.size = [reach, reach, reach, reach];
+    this.onCurve.push(1, 1, 1, 1);
+    const { x, y, size, segments } = discretisation;
+    for (let i = 0; i < x.length; i++) {
+      const v = t.insert(x[i], y[i]);
+      if (v !== i + 4) throw this.failure('two vertices fall together', [x[i], y[i]]);
+      this.size.push(size[i]);
+      this.onCurve.push(1);
+    }
+    this.segments = segments.map((s) => ({ ...s, a: s.a + 4, b: s.b + 4 }));
+    segments.forEach((s, i) => {
+      if (!t.constrain(s.a + 4, s.b + 4, i)) throw this.failure('two outlines cross', [x[s.a], y[s.a]]);
+    });
+    for (let i = 0; i < t.triangles; i++) t.touched.add(i);
+    t.region.fill(OUTSIDE);
+    this.relabel();
+  }
+
+  /** Inserts points until every triangle has its size and angles ≥ `angle` degrees (or cannot be helped). */
+  refine(angle: number): void {
+    const t = this.triangulation;
+    this.clearSegments();
+    for (let pass = 0; pass < 200; pass++) {
+      const bad: { key: number; e: number; a: number; b: number; c: number; slim: boolean }[] = [];
+      for (let i = 0; i < t.triangles; i++) {
+        const found = this.judge(i, angle);
+        if (found)
+          bad.push({
+            ...found,
+            e: 3 * i,
+            a: t.start[3 * i],
+            b: t.start[3 * i + 1],
+            c: t.start[3 * i + 2],
+          });
+      }
+      bad.sort((p, q) => q.key - p.key || p.e - q.e);
+      let done = 0;
+      for (const { e, a, b, c, slim } of bad) {
+        if (t.start[e] !== a || t.start[e + 1] !== b || t.start[e + 2] !== c) continue;
+        if (this.mend(e / 3, slim, angle)) done++;
+        if (t.x.length > this.limit)
+          throw this.failure(`more than ${this.limit} vertices would be needed`, [t.x[a], t.y[a]]);
+      }
+      if (done === 0) return;
+    }
+  }
+
+  /** Moves free vertices toward the size-weighted middle of their stars, never to a worse smallest angle. */
+  smooth(rounds: number): void {
+    const t = this.triangulation;
+    const { x, y, start } = t;
+    for (let round = 0; round < rounds; round++) {
+      for (let v = 4; v < x.length; v++) {
+        if (this.onCurve[v]) continue;
+        const star = t.spokesOf(v);
+        let sx = 0;
+        let sy = 0;
+        let weights = 0;
+        for (const e of star) {
+          // Optimal-Delaunay weights (L. Chen 2004): circumcentres by area, density by the wanted size.
+          const b = start[nextOf(e)];
+          const c = start[previousOf(e)];
+          const [ox, oy] = this.circumcenter(v, b, c);
+          const area = (x[b] - x[v]) * (y[c] - y[v]) - (y[b] - y[v]) * (x[c] - x[v]);
+          const h = (this.size[b] + this.size[c] + this.size[v]) / 3;
+          const w = area / h ** 3;
+          sx += w * (x[v] + ox);
+          sy += w * (y[v] + oy);
+          weights += w;
+        }
+        const old: Point = [x[v], y[v]];
+        const before = this.starQuality(v, star);
+        let moved = false;
+        for (const share of [1, 0.5, 0.25]) {
+          x[v] = old[0] + share * (sx / weights - old[0]);
+          y[v] = old[1] + share * (sy / weights - old[1]);
+          if (this.starQuality(v, star) <= before) continue;
+          moved = true;
+          break;
+        }
+        if (moved) t.move(v, x[v], y[v]);
+        else {
+          x[v] = old[0];
+          y[v] = old[1];
+        }
+      }
+    }
+  }
+
+  /** Smallest angle of the star, radians; negative when a triangle is turned over or a segment is encroached. */
+  private starQuality(v: number, star: readonly number[]): number {
+    const t = this.triangulation;
+    let least = Infinity;
+    for (const e of star) {
+      const far = nextOf(e);
+      const q = this.smallestAngle(v, t.start[far], t.start[previousOf(e)]);
+      if (q <= 0) return -1;
+      least = Math.min(least, q);
+      if (t.segment[far] >= 0 && this.sees(v, t.start[far], t.start[nextOf(far)])) return -1;
+    }
+    return least;
+  }
+
+  /** Smallest angle of a triangle, radians; ≤ 0 when it is turned over. */
+  private smallestAngle(a: number, b: number, c: number): number {
+    const { x, y } = this.triangulation;
+    const area = (x[b] - x[a]) * (y[c] - y[a]) - (y[b] - y[a]) * (x[c] - x[a]);
+    if (area <= 0) return area === 0 ? 0 : -1;
+    const angle = (p: number, q: number, r: number): number =>
+      Math.atan2(area, (x[q] - x[p]) * (x[r] - x[p]) + (y[q] - y[p]) * (y[r] - y[p]));
+    return Math.min(angle(a, b, c), angle(b, c, a), angle(c, a, b));
+  }
+
+  /** Why a triangle is bad, and how bad; null when it is good. */
+  private judge(i: number, angle: number): { key: number; slim: boolean } | null {
+    const t = this.triangulation;
+    const label = t.region[i];
+    if (label === OUTSIDE) return null;
+    const [a, b, c] = [t.start[3 * i], t.start[3 * i + 1], t.start[3 * i + 2]];
+    const { x, y } = t;
+    const lengths = [
+      Math.hypot(x[a] - x[b], y[a] - y[b]),
+      Math.hypot(x[b] - x[c], y[b] - y[c]),
+      Math.hypot(x[c] - x[a], y[c] - y[a]),
+    ];
+    const wanted = Math.min(this.base(label), (this.size[a] + this.size[b] + this.size[c]) / 3);
+    const area = (x[b] - x[a]) * (y[c] - y[a]) - (y[b] - y[a]) * (x[c] - x[a]);
+    const radius = (lengths[0] * lengths[1] * lengths[2]) / (2 * area);
+    const tooLarge = Math.max(radius / (0.66 * wanted), Math.max(...lengths) / (1.2 * wanted));
+    if (tooLarge > 1) return { key: 1e6 * tooLarge, slim: false };
+    const shortest = Math.min(...lengths);
+    // Smallest angle: sin = shortest / 2R.
+    const sine = shortest / (2 * radius);
+    if (sine < Math.sin(angle * degrees)) return { key: 1 / sine, slim: true };
+    return null;
+  }
+
+  /** Removes a bad triangle by a new point or a split segment; false when neither may be done. */
+  private mend(i: number, slim: boolean, angle: number): boolean {
+    const t = this.triangulation;
+    const { x, y, start } = t;
+    const label = t.region[i];
+    const target = slim
+      ? this.offcenter(i, angle)
+      : this.circumcenter(start[3 * i], start[3 * i + 1], start[3 * i + 2]);
+    const { at, blockedBy } = this.walk(i, target);
+    if (blockedBy >= 0) return this.trySplit(blockedBy, slim, label);
+    // Segments on the border of the point's cavity.
+    const seen = this.encroachedBy(at, target);
+    if (seen >= 0) return this.trySplit(seen, slim, label);
+    let size = this.base(label);
+    for (let e = 3 * at; e < 3 * at + 3; e++)
+      size = Math.min(
+        size,
+        this.size[start[e]] + GROWTH * Math.hypot(x[start[e]] - target[0], y[start[e]] - target[1]),
+      );
+    const before = x.length;
+    const v = t.insert(target[0], target[1], at);
+    if (v < before) return false;
+    t.touched.clear();
+    this.size.push(size);
+    this.onCurve.push(0);
+    return true;
+  }
+
+  private trySplit(segment: number, slim: boolean, label: number): boolean {
+    const { a, b } = this.segments[segment]!;
+    const { x, y } = this.triangulation;
+    const length = Math.hypot(x[a] - x[b], y[a] - y[b]);
+    const wanted = Math.min(this.base(label), (this.size[a] + this.size[b]) / 2);
+    if (!slim && length < 1.15 * wanted) return false;
+    if (length < this.floor) return false;
+    this.split(segment);
+    return true;
+  }
+
+  /** Splits a segment on its true curve, and then every segment that sees a vertex inside its 120° lens. */
+  split(segment: number): void {
+    const t = this.triangulation;
+    const { a, b, edge, s0, s1 } = this.segments[segment]!;
+    const s = (s0 + s1) / 2;
+    const [px, py] = pointAt(this.arrangement.edges[edge].piece, s);
+    t.mark(t.findEdge(a, b), -1);
+    const before = t.x.length;
+    const v = t.insert(px, py, Math.floor(t.spoke[a] / 3));
+    if (v < before) throw this.failure('a segment cannot be split', [px, py]);
+    const length = Math.hypot(t.x[a] - t.x[b], t.y[a] - t.y[b]);
+    const size = Math.min(1.5 * (length / 2), (this.size[a] + this.size[b]) / 2);
+    this.size.push(size);
+    this.size[a] = Math.min(this.size[a], 1.5 * size);
+    this.size[b] = Math.min(this.size[b], 1.5 * size);
+    this.onCurve.push(1);
+    const n = this.segments.length;
+    this.segments[segment] = null;
+    this.segments.push({ a, b: v, edge, s0, s1: s }, { a: v, b, edge, s0: s, s1 });
+    if (!t.constrain(a, v, n) || !t.constrain(v, b, n + 1)) throw this.failure('a segment cannot be split', [px, py]);
+    this.relabel();
+    for (const part of [n, n + 1]) this.clear(part);
+  }
+
+  private clearSegments(): void {
+    for (let s = 0; s < this.segments.length; s++) this.clear(s);
+  }
+
+  /** Splits a segment while an apex beside it lies in its lens. */
+  private clear(segment: number): void {
+    const s = this.segments[segment];
+    if (!s) return;
+    const t = this.triangulation;
+    const e = t.findEdge(s.a, s.b);
+    for (const h of [e, t.twin[e]]) {
+      if (h < 0 || t.region[Math.floor(h / 3)] === OUTSIDE) continue;
+      const apex = t.start[previousOf(h)];
+      if (this.sees(apex, s.a, s.b) && Math.hypot(t.x[s.a] - t.x[s.b], t.y[s.a] - t.y[s.b]) > this.floor) {
+        this.split(segment);
+        return;
+      }
+    }
+  }
+
+  /** Whether vertex v sees a–b under more than 120°. */
+  private sees(v: number, a: number, b: number): boolean {
+    const { x, y } = this.triangulation;
+    return inLens(x[v], y[v], x[a], y[a], x[b], y[b]);
+  }
+
+  /** A segment on the border of the Delaunay cavity of the point that the point encroaches on, −1 for none. */
+  private encroachedBy(at: number, [px, py]: Point): number {
+    const t = this.triangulation;
+    const { x, y, start, twin, segment } = t;
+    const seen = new Set([at]);
+    const queue = [at];
+    let worst = -1;
+    let widest = -0.5;
+    while (queue.length > 0) {
+      const i = queue.pop()!;
+      for (let e = 3 * i; e < 3 * i + 3; e++) {
+        const a = start[e];
+        const b = start[nextOf(e)];
+        if (segment[e] >= 0) {
+          const cosine = cosineAt(px, py, x[a], y[a], x[b], y[b]);
+          if (cosine < widest) [worst, widest] = [segment[e], cosine];
+          continue;
+        }
+        const o = twin[e];
+        const j = Math.floor(o / 3);
+        if (o < 0 || seen.has(j)) continue;
+        const [u, v, w] = [start[3 * j], start[3 * j + 1], start[3 * j + 2]];
+        const [cx, cy] = this.circumcenter(u, v, w);
+        if (Math.hypot(px - cx, py - cy) >= Math.hypot(x[u] - cx, y[u] - cy)) continue;
+        seen.add(j);
+        queue.push(j);
+      }
+    }
+    return worst;
+  }
+
+  /** Walks from triangle i straight to the point: the triangle that holds it, or the first segment in the way. */
+  private walk(i: number, [px, py]: Point): { at: number; blockedBy: number } {
+    const t = this.triangulation;
+    const { x, y, start, twin, segment } = t;
+    const ox = (x[start[3 * i]] + x[start[3 * i + 1]] + x[start[3 * i + 2]]) / 3;
+    const oy = (y[start[3 * i]] + y[start[3 * i + 1]] + y[start[3 * i + 2]]) / 3;
+    const side = (v: number): number => (px - ox) * (y[v] - oy) - (py - oy) * (x[v] - ox);
+    let at = i;
+    let came = -1;
+    for (let guard = 0; guard < 3 * t.triangles; guard++) {
+      let out = -1;
+      for (let e = 3 * at; e < 3 * at + 3; e++) {
+        if (e === came) continue;
+        const a = start[e];
+        const b = start[nextOf(e)];
+        if ((x[b] - x[a]) * (py - y[a]) - (y[b] - y[a]) * (px - x[a]) >= 0) continue;
+        if (side(a) <= 0 && side(b) >= 0) {
+          out = e;
+          break;
+        }
+        if (out < 0) out = e;
+      }
+      if (out < 0) return { at, blockedBy: -1 };
+      if (segment[out] >= 0) return { at, blockedBy: segment[out] };
+      came = twin[out];
+      at = Math.floor(came / 3);
+    }
+    return { at, blockedBy: -1 };
+  }
+
+  private circumcenter(a: number, b: number, c: number): Point {
+    const { x, y } = this.triangulation;
+    const bx = x[b] - x[a];
+    const by = y[b] - y[a];
+    const cx = x[c] - x[a];
+    const cy = y[c] - y[a];
+    const d = 2 * (bx * cy - by * cx);
+    const bb = bx * bx + by * by;
+    const cc = cx * cx + cy * cy;
+    return [x[a] + (cy * bb - by * cc) / d, y[a] + (bx * cc - cx * bb) / d];
+  }
+
+  /** The point on the bisector of the shortest side that makes just the wanted angle, or the circumcentre if nearer. */
+  private offcenter(i: number, angle: number): Point {
+    const { x, y, start } = this.triangulation;
+    let best = 3 * i;
+    let least = Infinity;
+    for (let e = 3 * i; e < 3 * i + 3; e++) {
+      const d = Math.hypot(x[start[e]] - x[start[nextOf(e)]], y[start[e]] - y[start[nextOf(e)]]);
+      if (d < least) [best, least] = [e, d];
+    }
+    const a = start[best];
+    const b = start[nextOf(best)];
+    const [ox, oy] = this.circumcenter(a, b, start[previousOf(best)]);
+    const mx = (x[a] + x[b]) / 2;
+    const my = (y[a] + y[b]) / 2;
+    const height = Math.hypot(ox - mx, oy - my);
+    // Two degrees to spare: sides 1, apex angle = wanted angle.
+    const wanted = least / 2 / Math.tan(((angle + 2) * degrees) / 2);
+    if (height <= wanted) return [ox, oy];
+    return [mx + ((ox - mx) * wanted) / height, my + ((oy - my) * wanted) / height];
+  }
+
+  /** Gives the touched triangles their labels again, from segments and from untouched neighbours. */
+  private relabel(): void {
+    const t = this.triangulation;
+    const touched = [...t.touched];
+    t.touched.clear();
+    const known: number[] = [];
+    for (const i of touched) t.region[i] = UNKNOWN;
+    for (const i of touched) {
+      let label = UNKNOWN;
+      for (let e = 3 * i; e < 3 * i + 3 && label === UNKNOWN; e++) {
+        const s = t.segment[e] >= 0 ? this.segments[t.segment[e]] : null;
+        if (s) {
+          const edge = this.arrangement.edges[s.edge];
+          label = t.start[e] === s.a ? edge.left : edge.right;
+        } else if (t.twin[e] < 0) label = OUTSIDE;
+        else label = t.region[Math.floor(t.twin[e] / 3)];
+      }
+      if (label === UNKNOWN) continue;
+      t.region[i] = label;
+      known.push(i);
+    }
+    while (known.length > 0) {
+      const i = known.pop()!;
+      for (let e = 3 * i; e < 3 * i + 3; e++) {
+        const j = Math.floor(t.twin[e] / 3);
+        if (t.twin[e] < 0 || t.segment[e] >= 0 || t.region[j] !== UNKNOWN) continue;
+        t.region[j] = t.region[i];
+        known.push(j);
+      }
+    }
+  }
+
+  private failure(what: string, place: Point): GeometryError {
+    const where = `(${place[0].toPrecision(6)}, ${place[1].toPrecision(6)})`;
+    return new GeometryError(`Cannot mesh the drawing near ${where}: ${what}.`, [], place);
+  }
+}
+
+function cosineAt(px: number, py: number, ax: number, ay: number, bx: number, by: number): number {
+  const ux = ax - px;
+  const uy = ay - py;
+  const vx = bx - px;
+  const vy = by - py;
+  return (ux * vx + uy * vy) / Math.sqrt((ux * ux + uy * uy) * (vx * vx + vy * vy));
+}
+
+const inLens = (px: number, py: number, ax: number, ay: number, bx: number, by: number): boolean =>
+  cosineAt(px, py, ax, ay, bx, by) < -0.5;

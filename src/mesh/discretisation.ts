@@ -1,0 +1,245 @@
+// Into which segments are the curves cut, and how long may they be?
+
+import Flatbush from 'flatbush';
+import type { Arrangement, ArrangementEdge } from '../geometry/arrangement.ts';
+import { pointAt } from '../geometry/curves.ts';
+import { curvatureAt, velocityAt } from '../geometry/pieces.ts';
+
+/** How fast the wanted size may grow with distance. */
+export const GROWTH = 0.4;
+
+/** A piece of an arrangement edge between two mesh vertices: parameters s0 → s1 of the edge's curve. */
+export interface Segment {
+  readonly a: number;
+  readonly b: number;
+  readonly edge: number;
+  readonly s0: number;
+  readonly s1: number;
+}
+
+/** Sizes wanted, by arrangement label. */
+export interface Sizes {
+  readonly ofLabel: (label: number) => number;
+  readonly cornerGrading: number;
+  readonly largestArc: number;
+}
+
+export interface Discretisation {
+  readonly x: number[];
+  readonly y: number[];
+  /** Size wanted at each vertex. */
+  readonly size: number[];
+  readonly segments: Segment[];
+}
+
+/** Cuts every edge evenly in (length / wanted size), no piece turning more than the largest arc. */
+export function discretise(arrangement: Arrangement, sizes: Sizes): Discretisation {
+  const { vertices, edges } = arrangement;
+  const x: number[] = [];
+  const y: number[] = [];
+  const size: number[] = [];
+  for (let v = 0; v < vertices.length / 2; v++) {
+    x.push(vertices[2 * v]);
+    y.push(vertices[2 * v + 1]);
+    size.push(Infinity);
+  }
+  const corners = cornersOf(arrangement, sizes);
+  const wanted = (edge: ArrangementEdge, px: number, py: number): number => {
+    let h = Math.min(sizes.ofLabel(edge.left), sizes.ofLabel(edge.right));
+    for (const corner of corners) h = Math.min(h, corner.size + GROWTH * Math.hypot(px - corner.x, py - corner.y));
+    return h;
+  };
+  let segments: Segment[] = [];
+  edges.forEach((edge, index) => {
+    const marks = evenMarks(edge, (px, py) => wanted(edge, px, py), sizes.largestArc);
+    let last = edge.from;
+    for (let i = 1; i < marks.length; i++) {
+      let next = edge.to;
+      if (i < marks.length - 1) {
+        const [px, py] = pointAt(edge.piece, marks[i]);
+        next = x.length;
+        x.push(px);
+        y.push(py);
+        size.push(wanted(edge, px, py));
+      } else size[next] = Math.min(size[next], wanted(edge, x[next], y[next]));
+      size[last] = Math.min(size[last], wanted(edge, x[last], y[last]));
+      segments.push({ a: last, b: next, edge: index, s0: marks[i - 1], s1: marks[i] });
+      last = next;
+    }
+  });
+  segments = separate(segments, edges, x, y, size);
+  for (const { a, b } of segments) {
+    const length = Math.hypot(x[a] - x[b], y[a] - y[b]);
+    size[a] = Math.min(size[a], 1.5 * length);
+    size[b] = Math.min(size[b], 1.5 * length);
+  }
+  return { x, y, size, segments };
+}
+
+/** True corners: a tangent jump of more than 5°, or where three or more edges meet. */
+function cornersOf({ vertices, edges }: Arrangement, sizes: Sizes): { x: number; y: number; size: number }[] {
+  if (sizes.cornerGrading >= 1) return [];
+  const count = vertices.length / 2;
+  const outward: [number, number][][] = Array.from({ length: count }, () => []);
+  const local = new Float64Array(count).fill(Infinity);
+  for (const edge of edges) {
+    const [ax, ay] = velocityAt(edge.piece, 0);
+    const [bx, by] = velocityAt(edge.piece, 1);
+    outward[edge.from].push([ax, ay]);
+    outward[edge.to].push([-bx, -by]);
+    const h = Math.min(sizes.ofLabel(edge.left), sizes.ofLabel(edge.right));
+    local[edge.from] = Math.min(local[edge.from], h);
+    local[edge.to] = Math.min(local[edge.to], h);
+  }
+  const corners: { x: number; y: number; size: number }[] = [];
+  for (let v = 0; v < count; v++) {
+    const spokes = outward[v];
+    if (spokes.length === 2) {
+      const [[ax, ay], [bx, by]] = spokes;
+      const bend = Math.PI - Math.abs(Math.atan2(ax * by - ay * bx, ax * bx + ay * by));
+      if (bend < (5 * Math.PI) / 180) continue;
+    }
+    corners.push({ x: vertices[2 * v], y: vertices[2 * v + 1], size: sizes.cornerGrading * local[v] });
+  }
+  return corners;
+}
+
+/** Parameters 0 = s₀ < s₁ < … = 1 with equal shares of ∫ max(|dp|/h, |dθ|/largest arc, |dt|/largest arc). */
+function evenMarks(edge: ArrangementEdge, wanted: (x: number, y: number) => number, largestArc: number): number[] {
+  const { piece } = edge;
+  const samples = 128;
+  const cumulative = new Float64Array(samples + 1);
+  for (let i = 0; i < samples; i++) {
+    const s = (i + 0.5) / samples;
+    const [px, py] = pointAt(piece, s);
+    const speed = Math.hypot(...velocityAt(piece, s));
+    // Sides may exceed the wanted size by a tenth before another piece pays.
+    let density = speed / (1.1 * wanted(px, py));
+    if (piece.kind === 'arc')
+      density = Math.max(
+        density,
+        Math.max(speed * Math.abs(curvatureAt(piece, s)), Math.abs(piece.sweep)) / largestArc,
+      );
+    cumulative[i + 1] = cumulative[i] + density / samples;
+  }
+  const total = cumulative[samples];
+  const pieces = Math.max(edge.from === edge.to ? 3 : 1, Math.ceil(total - 1e-9));
+  const marks = [0];
+  let i = 0;
+  for (let k = 1; k < pieces; k++) {
+    const target = (k / pieces) * total;
+    while (cumulative[i + 1] < target) i++;
+    marks.push((i + (target - cumulative[i]) / (cumulative[i + 1] - cumulative[i])) / samples);
+  }
+  marks.push(1);
+  return marks;
+}
+
+/** Angle by which a segment's curve turns: twice the largest angle between chord and tangent, about. */
+export function turnOf(edge: ArrangementEdge, segment: Segment): number {
+  if (edge.piece.kind === 'line') return 0;
+  const [ax, ay] = velocityAt(edge.piece, segment.s0);
+  const [bx, by] = velocityAt(edge.piece, segment.s1);
+  return Math.abs(Math.atan2(ax * by - ay * bx, ax * bx + ay * by));
+}
+
+/**
+ * Splits curved segments until each stays clear of all others: chord to chord more than 1.5 × the sum of the bulges,
+ * and in a corner the bulges take less than half of the angle.
+ */
+function separate(
+  segments: Segment[],
+  edges: readonly ArrangementEdge[],
+  x: number[],
+  y: number[],
+  size: number[],
+): Segment[] {
+  for (let round = 0; round < 40; round++) {
+    const n = segments.length;
+    const index = new Flatbush(n);
+    const bulge = new Float64Array(n);
+    const turns = new Float64Array(n);
+    segments.forEach((segment, i) => {
+      const { a, b } = segment;
+      const length = Math.hypot(x[a] - x[b], y[a] - y[b]);
+      turns[i] = turnOf(edges[segment.edge], segment);
+      bulge[i] = (length * turns[i]) / 8;
+      index.add(
+        Math.min(x[a], x[b]) - 1.5 * bulge[i],
+        Math.min(y[a], y[b]) - 1.5 * bulge[i],
+        Math.max(x[a], x[b]) + 1.5 * bulge[i],
+        Math.max(y[a], y[b]) + 1.5 * bulge[i],
+      );
+    });
+    index.finish();
+    const split = new Uint8Array(n);
+    for (let i = 0; i < n; i++) {
+      if (bulge[i] === 0) continue;
+      const { a, b } = segments[i];
+      const near = index.search(
+        Math.min(x[a], x[b]) - 1.5 * bulge[i],
+        Math.min(y[a], y[b]) - 1.5 * bulge[i],
+        Math.max(x[a], x[b]) + 1.5 * bulge[i],
+        Math.max(y[a], y[b]) + 1.5 * bulge[i],
+      );
+      for (const j of near) {
+        if (j === i || (bulge[j] > 0 && j < i)) continue;
+        const other = segments[j];
+        const shared = [other.a, other.b].filter((v) => v === a || v === b);
+        let clash: boolean;
+        if (shared.length === 2) clash = true;
+        else if (shared.length === 1) {
+          const v = shared[0];
+          const [ux, uy] = awayFrom(edges[segments[i].edge], segments[i], v);
+          const [wx, wy] = awayFrom(edges[other.edge], other, v);
+          const angle = Math.abs(Math.atan2(ux * wy - uy * wx, ux * wx + uy * wy));
+          clash = (turns[i] + turns[j]) / 2 > 0.5 * angle;
+        } else clash = distance(x, y, a, b, other.a, other.b) < 1.5 * (bulge[i] + bulge[j]);
+        if (clash) split[bulge[i] >= bulge[j] ? i : j] = 1;
+      }
+    }
+    if (!split.includes(1)) return segments;
+    segments = segments.flatMap((segment, i) => {
+      if (!split[i]) return [segment];
+      const { a, b, edge, s0, s1 } = segment;
+      const middle = (s0 + s1) / 2;
+      const [px, py] = pointAt(edges[edge].piece, middle);
+      x.push(px);
+      y.push(py);
+      size.push(Math.min(size[a], size[b]));
+      const m = x.length - 1;
+      return [
+        { a, b: m, edge, s0, s1: middle },
+        { a: m, b, edge, s0: middle, s1 },
+      ];
+    });
+  }
+  return segments;
+}
+
+/** Direction in which a segment's true curve leaves vertex v. */
+function awayFrom(edge: ArrangementEdge, segment: Segment, v: number): readonly [number, number] {
+  if (segment.a === v) return velocityAt(edge.piece, segment.s0);
+  const [vx, vy] = velocityAt(edge.piece, segment.s1);
+  return [-vx, -vy];
+}
+
+/** Distance between the segments a–b and c–d (0 where they cross). */
+function distance(x: number[], y: number[], a: number, b: number, c: number, d: number): number {
+  const side = (p: number, q: number, r: number): number =>
+    (x[q] - x[p]) * (y[r] - y[p]) - (y[q] - y[p]) * (x[r] - x[p]);
+  if (side(a, b, c) * side(a, b, d) < 0 && side(c, d, a) * side(c, d, b) < 0) return 0;
+  return Math.min(
+    pointToSegment(x[a], y[a], x[c], y[c], x[d], y[d]),
+    pointToSegment(x[b], y[b], x[c], y[c], x[d], y[d]),
+    pointToSegment(x[c], y[c], x[a], y[a], x[b], y[b]),
+    pointToSegment(x[d], y[d], x[a], y[a], x[b], y[b]),
+  );
+}
+
+export function pointToSegment(px: number, py: number, ax: number, ay: number, bx: number, by: number): number {
+  const dx = bx - ax;
+  const dy = by - ay;
+  const t = Math.max(0, Math.min(1, ((px - ax) * dx + (py - ay) * dy) / (dx * dx + dy * dy)));
+  return Math.hypot(px - ax - t * dx, py - ay - t * dy);
+}
