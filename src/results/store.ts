@@ -8,6 +8,7 @@ import { basename, dirname, extname, join, resolve, sep } from 'node:path';
 
 import { RunFormatError, checkRunRecord, packArrays, viewArray } from './bytes.ts';
 import type { RunArray, RunRecord } from './format.ts';
+import { READ_FIRST_NAME, readFirstText } from './read-first.ts';
 
 /** The folder cannot be written or is no readable run; the message says where, what was found and what to do. */
 export class RunStoreError extends Error {
@@ -26,7 +27,6 @@ export interface LoadedRun {
 
 const RECORD_FILE = 'run.json';
 const ARRAYS_FILE = 'arrays.bin';
-const CAUTION_FILE = 'READ-FIRST.txt';
 /** Where files go that someone else had put into a run folder which is now written anew. */
 const EARLIER_FOLDER = 'earlier';
 
@@ -50,7 +50,7 @@ export function writeRun(
   refuseUnsafeTarget(target);
   const { bytes, entries } = packArrays(arrays);
   const files: Record<string, Uint8Array> = { [ARRAYS_FILE]: bytes };
-  if (record.cautions.length > 0) files[CAUTION_FILE] = encode(cautionText(record.cautions));
+  if (record.cautions.length > 0) files[READ_FIRST_NAME] = encode(readFirstText({ ...record, arrays: entries }));
   for (const [name, content] of Object.entries(extraFiles)) {
     refuseUnsafeName(name);
     files[name] = encode(content);
@@ -118,11 +118,6 @@ export function runFolder(base: string, deviceFile: string, command: string, has
   return join(base, device || 'device', `${command}-${digest(encode(hashInput)).slice(0, 8)}`);
 }
 
-/** The text of `READ-FIRST.txt`. */
-export function cautionText(cautions: readonly string[]): string {
-  return ['Read first.', '', ...cautions.flatMap((caution) => [caution, ''])].join('\n');
-}
-
 const encode = (text: string): Uint8Array => new TextEncoder().encode(text);
 const digest = (bytes: Uint8Array): string => createHash('sha256').update(bytes).digest('hex');
 const describeFile = ([name, bytes]: [string, Uint8Array]): [string, { bytes: number; sha256: string }] => [
@@ -170,7 +165,7 @@ function refuseUnsafeTarget(target: string): void {
 }
 
 function refuseUnsafeName(name: string): void {
-  const reserved = [RECORD_FILE, ARRAYS_FILE, CAUTION_FILE, EARLIER_FOLDER];
+  const reserved = [RECORD_FILE, ARRAYS_FILE, READ_FIRST_NAME, EARLIER_FOLDER];
   if (name === '' || name.startsWith('.') || /[/\\\0]/.test(name) || reserved.includes(name))
     throw new RunStoreError(`file '${name}': expected a plain file name other than ${reserved.join(', ')}`);
 }
@@ -259,7 +254,7 @@ function takePlace(temporary: string, target: string, files: Readonly<Record<str
 
 /** Moves what no run wrote (notes, exports) from the replaced run into `earlier` of the new one. */
 function keepForeignFiles(aside: string, target: string, files: Readonly<Record<string, unknown>>): void {
-  const own = new Set([RECORD_FILE, ARRAYS_FILE, CAUTION_FILE, ...Object.keys(files), ...namesWritten(aside)]);
+  const own = new Set([RECORD_FILE, ARRAYS_FILE, READ_FIRST_NAME, ...Object.keys(files), ...namesWritten(aside)]);
   const foreign = readdirSync(aside).filter((name) => !own.has(name));
   if (foreign.length === 0) return;
   const earlier = join(target, EARLIER_FOLDER);
