@@ -6,6 +6,7 @@ import { planFronts } from './fronts.ts';
 import { findIncidence } from './incidence.ts';
 import type { FrontKernels } from './kernels/kernels.ts';
 import { makeTwinKernels } from './kernels/twin.ts';
+import { loadWasmKernels } from './kernels/wasm-kernels.ts';
 import type { Analysis, ElementFill, ElementPattern, Factorization } from './pattern.ts';
 
 /**
@@ -33,6 +34,6 @@ let kernels: FrontKernels | undefined;
 
 /** One working memory for all factorizations: they run one after the other and keep their results elsewhere. */
 function sharedKernels(): FrontKernels {
-  kernels ??= makeTwinKernels();
+  kernels ??= loadWasmKernels() ?? makeTwinKernels();
   return kernels;
 }

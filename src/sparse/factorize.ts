@@ -73,10 +73,10 @@ export function factorFronts(
   const { count, pivotStarts, boundaryStarts, childStarts, children, boundaryInParent } = fronts;
   const { elementStarts, elements, listInFront } = fronts;
   // Memory: integers for one map and one permutation, inverse pivots, an element, work, then the stack.
-  const mapAt = 0;
+  const mapAt = 2 * kernels.base;
   const mapNumbers = Math.max(plan.largestFront, plan.largestElement) + 8;
   const permAt = mapAt + 2 * mapNumbers;
-  const pivotsAt = 2 * mapNumbers;
+  const pivotsAt = kernels.base + 2 * mapNumbers;
   const elementAt = pivotsAt + 4 * plan.largestPivots + 8;
   const workAt = elementAt + 2 * plan.largestElement * plan.largestElement;
   const stackAt = workAt + workNumbers(plan.largestFront);
@@ -166,9 +166,8 @@ function summarize(
   let phase = 0;
   for (let j = 0; 4 * j < d.length; j++) {
     const at = 4 * j;
-    let x = d[at];
-    let y = d[at + 1];
-    let modulus: number;
+    const x = d[at];
+    const y = d[at + 1];
     if (d[at + 2] !== 0 || d[at + 3] !== 0) {
       // det D⁻¹ of the pair, by its largest entry b: b² (ac/b² − 1).
       const [br, bi] = [d[at + 2], d[at + 3]];
@@ -187,12 +186,11 @@ function summarize(
       j++;
       continue;
     }
-    modulus = Math.hypot(x, y);
+    const modulus = Math.hypot(x, y);
     re -= Math.log(modulus);
     phase -= Math.atan2(y, x);
     smallest = Math.min(smallest, 1 / modulus);
     largest = Math.max(largest, 1 / modulus);
-    x = y = 0;
   }
   return {
     report: {

@@ -138,13 +138,12 @@ function frontCost(pivots: number, boundary: number): number {
 
 /** Σ over the pivots of r(r+1)/2 + r, r the rows below: multiply-adds of the update and scalings of the column. */
 function multiplyAdds(pivots: number, boundary: number): number {
-  let sum = 0;
   // Closed form of Σ_{r=boundary}^{boundary+pivots-1} (r² + 3r)/2.
   const a = boundary;
   const b = boundary + pivots - 1;
   const squares = (n: number): number => (n * (n + 1) * (2 * n + 1)) / 6;
   const firsts = (n: number): number => (n * (n + 1)) / 2;
-  sum = squares(b) - (a > 0 ? squares(a - 1) : 0) + 3 * (firsts(b) - (a > 0 ? firsts(a - 1) : 0));
+  const sum = squares(b) - (a > 0 ? squares(a - 1) : 0) + 3 * (firsts(b) - (a > 0 ? firsts(a - 1) : 0));
   return sum / 2;
 }
 

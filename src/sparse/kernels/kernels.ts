@@ -17,6 +17,8 @@
 export interface FrontKernels {
   readonly kind: 'typescript' | 'wasm';
   readonly numbers: Float64Array;
+  /** First position that callers may use. */
+  readonly base: number;
   readonly integers: Int32Array;
   /** Makes the memory hold at least this many float64; contents may be lost. */
   reserve(numbers: number): void;
@@ -45,4 +47,4 @@ export interface FrontKernels {
 }
 
 /** Numbers of work space that factorFront wants for fronts up to this size. */
-export const workNumbers = (largestFront: number): number => 2 * (largestFront + 8) * 64 + 1024;
+export const workNumbers = (largestFront: number): number => 4 * 64 * (largestFront + 8) + 2 * 66 * 66;

@@ -15,6 +15,7 @@ export function makeTwinKernels(): FrontKernels {
 
   return {
     kind: 'typescript',
+    base: 0,
     get numbers() {
       return m;
     },
