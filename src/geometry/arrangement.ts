@@ -1,20 +1,15 @@
 // Into which vertices, edges and regions do overlapping shapes cut the plane?
 
+import type { ArrangementEdge } from './arrangement-edge.ts';
+import { turned } from './arrangement-edge.ts';
+import { healCusps } from './cusps.ts';
 import type { CurvePiece, Outline, Point, Shape } from './curves.ts';
 import { pointAt } from './curves.ts';
-import { GeometryError } from './geometry-error.ts';
+import { refuseNarrowGaps } from './gaps.ts';
 import { meetings } from './intersections.ts';
-import { angleOfPoint, boxOf, lengthOf, parameterOfAngle, partOf, velocityAt } from './pieces.ts';
+import { angleOfPoint, boxOf, parameterOfAngle, partOf, velocityAt } from './pieces.ts';
 
-/** A curve between two vertices with a region on each side; a loop has `from === to`. */
-export interface ArrangementEdge {
-  readonly piece: CurvePiece;
-  readonly from: number;
-  readonly to: number;
-  /** Index of the last shape that holds the points just left (right) of the edge, −1 where there is none. */
-  readonly left: number;
-  readonly right: number;
-}
+export type { ArrangementEdge } from './arrangement-edge.ts';
 
 export interface Arrangement {
   /** [x0,y0,x1,y1,…] of the vertices. */
@@ -33,19 +28,26 @@ export function arrangeShapes(shapes: readonly Shape[], names: readonly string[]
   const pool = new VertexPool(tolerance);
   const parts = unify(cutAtMeetings(sources, pool, tolerance), tolerance);
   const owned = parts.map((part) => ({ part, sides: sidesOf(part, sources, shapes.length, tolerance) }));
-  const edges = joinChains(
-    owned
-      .filter(({ sides }) => sides[0] !== sides[1])
-      .map(({ part, sides }) => ({
-        piece: part.piece,
-        from: part.from,
-        to: part.to,
-        left: sides[0],
-        right: sides[1],
-      })),
-  );
-  checkConsistent(edges, pool, names);
-  return { ...dropUnused(pool, edges), notes: [] };
+  const cut: ArrangementEdge[] = owned
+    .filter(({ sides }) => sides[0] !== sides[1])
+    .map(({ part, sides }) => ({ piece: part.piece, from: part.from, to: part.to, left: sides[0], right: sides[1] }));
+  const sizes = shapes.map(sizeOf);
+  refuseNarrowGaps(cut, sizes, names, tolerance);
+  const { edges, notes } = healCusps(joinChains(cut), pool.coordinates, names);
+  return { ...dropUnused(pool, joinChains(edges)), notes };
+}
+
+/** Half the diagonal of the shape's box. */
+function sizeOf(shape: Shape): number {
+  const box = [Infinity, Infinity, -Infinity, -Infinity];
+  for (const piece of shape.flat()) {
+    const [x0, y0, x1, y1] = boxOf(piece);
+    box[0] = Math.min(box[0], x0);
+    box[1] = Math.min(box[1], y0);
+    box[2] = Math.max(box[2], x1);
+    box[3] = Math.max(box[3], y1);
+  }
+  return Math.hypot(box[2] - box[0], box[3] - box[1]) / 2;
 }
 
 /** One piece of an outline as it was given. */
@@ -296,14 +298,6 @@ function joinChains(edges: ArrangementEdge[]): ArrangementEdge[] {
   return joined as ArrangementEdge[];
 }
 
-export const turned = (edge: ArrangementEdge): ArrangementEdge => ({
-  piece: partOf(edge.piece, 1, 0),
-  from: edge.to,
-  to: edge.from,
-  left: edge.right,
-  right: edge.left,
-});
-
 function joinedPiece(a: CurvePiece, b: CurvePiece): CurvePiece | null {
   if (a.kind === 'line' && b.kind === 'line') {
     const ux = a.to[0] - a.from[0];
@@ -321,38 +315,6 @@ function joinedPiece(a: CurvePiece, b: CurvePiece): CurvePiece | null {
   let sweep = a.sweep + b.sweep;
   if (Math.abs(Math.abs(sweep) - 2 * Math.PI) < 1e-9) sweep = Math.sign(sweep) * 2 * Math.PI;
   return { ...a, sweep };
-}
-
-/** Around every vertex the region between neighbouring edges must be one. */
-function checkConsistent(edges: readonly ArrangementEdge[], pool: VertexPool, names: readonly string[]): void {
-  const around = new Map<number, { angle: number; ahead: number; behind: number }[]>();
-  const reach = new Map<number, number>();
-  for (const edge of edges) {
-    const length = lengthOf(edge.piece);
-    for (const v of [edge.from, edge.to]) reach.set(v, Math.min(reach.get(v) ?? Infinity, 1e-3 * length));
-  }
-  for (const edge of edges) {
-    for (const e of [edge, turned(edge)]) {
-      const [x, y] = pointAt(e.piece, Math.min(0.5, reach.get(e.from)! / Math.hypot(...velocityAt(e.piece, 0))));
-      const angle = Math.atan2(y - pool.coordinates[2 * e.from + 1], x - pool.coordinates[2 * e.from]);
-      around.set(e.from, [...(around.get(e.from) ?? []), { angle, ahead: e.left, behind: e.right }]);
-    }
-  }
-  for (const [vertex, spokes] of around) {
-    spokes.sort((a, b) => a.angle - b.angle);
-    spokes.forEach((spoke, i) => {
-      const next = spokes[(i + 1) % spokes.length];
-      if (spoke.ahead === next.behind) return;
-      const place: Point = [pool.coordinates[2 * vertex], pool.coordinates[2 * vertex + 1]];
-      const bodies = [...new Set([spoke.ahead, next.behind].filter((i) => i >= 0).map((i) => names[i]))];
-      throw new GeometryError(
-        `The outlines of ${bodies.map((name) => `'${name}'`).join(' and ')} come too close to each other or to themselves near ` +
-          `(${place[0].toPrecision(6)}, ${place[1].toPrecision(6)}) to tell inside from outside; move them apart or let them overlap clearly.`,
-        bodies,
-        place,
-      );
-    });
-  }
 }
 
 function dropUnused(pool: VertexPool, edges: readonly ArrangementEdge[]) {
