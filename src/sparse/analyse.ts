@@ -1,7 +1,7 @@
 // How does a pattern become a plan that any matrix on it can be factored by?
 
 import { dissect } from './dissection.ts';
-import { factorFronts, planMemory } from './factorize.ts';
+import { factorFronts, makeSparePanels, planMemory } from './factorize.ts';
 import { planFronts } from './fronts.ts';
 import { findIncidence } from './incidence.ts';
 import type { FrontKernels } from './kernels/kernels.ts';
@@ -22,10 +22,11 @@ export function analyse(pattern: ElementPattern): Analysis {
   const incidence = findIncidence(pattern);
   const fronts = planFronts(pattern, incidence, dissect(pattern, incidence));
   const plan = planMemory(pattern, fronts);
+  const spare = makeSparePanels();
   return {
     pattern,
     factorize(fill: ElementFill): Factorization {
-      return factorFronts(pattern, fronts, plan, sharedKernels(), fill);
+      return factorFronts(pattern, fronts, plan, sharedKernels(), fill, spare);
     },
   };
 }

@@ -59,6 +59,25 @@ export function planMemory(pattern: ElementPattern, fronts: Fronts): MemoryPlan 
   return { panelStarts, largestFront, largestElement, largestPivots, stack };
 }
 
+/** Memory of released factorizations of one plan, for the next ones: touching new memory costs as much as factoring. */
+export interface SparePanels {
+  take(): Float64Array | undefined;
+  give(panels: Float64Array): void;
+}
+
+/** Keeps at most this many released panels. */
+const MOST_SPARE = 2;
+
+export function makeSparePanels(): SparePanels {
+  const held: Float64Array[] = [];
+  return {
+    take: () => held.pop(),
+    give(panels): void {
+      if (held.length < MOST_SPARE) held.push(panels);
+    },
+  };
+}
+
 /** Pivots below this multiple of the largest entry met in the front so far are replaced: a rounding error's size. */
 const TINY = 2 ** -52;
 
@@ -69,6 +88,7 @@ export function factorFronts(
   plan: MemoryPlan,
   kernels: FrontKernels,
   fill: ElementFill,
+  spare: SparePanels,
 ): Factorization {
   const { count, pivotStarts, boundaryStarts, childStarts, children, boundaryInParent } = fronts;
   const { elementStarts, elements, listInFront } = fronts;
@@ -84,7 +104,7 @@ export function factorFronts(
   const m = kernels.numbers;
   const ints = kernels.integers;
 
-  const panels = new Float64Array(plan.panelStarts[count]);
+  const panels = spare.take() ?? new Float64Array(plan.panelStarts[count]);
   const inversePivots = new Float64Array(4 * pattern.unknowns);
   const pivotOrder = new Int32Array(pattern.unknowns);
   const largestChild = new Float64Array(count);
@@ -99,7 +119,7 @@ export function factorFronts(
     const p = top;
     const s = p + 2 * nf * np;
     let scale = 0;
-    kernels.clear(p, 2 * nf * np + 2 * nb * nb);
+    kernels.clear(p, s, nf, np);
 
     for (let i = elementStarts[f]; i < elementStarts[f + 1]; i++) {
       const e = elements[i];
@@ -144,12 +164,18 @@ export function factorFronts(
     top = bottom + nb * (nb + 1);
   }
 
+  let released = false;
   const factors: Factors = { fronts, panels, panelStarts: plan.panelStarts, inversePivots, pivotOrder };
   return {
     unknowns: pattern.unknowns,
     ...summarize(fronts, factors, perturbed),
     solveInto(out: ComplexArray, rhs: ComplexArray, columns: number): ComplexArray {
+      if (released) throw new Error('this factorization was released: factor again, or release later');
       return solveFronts(factors, out, rhs, columns);
+    },
+    release(): void {
+      if (!released) spare.give(panels);
+      released = true;
     },
   };
 }

@@ -40,6 +40,11 @@ export interface Factorization {
   readonly logDeterminant: Complex;
   /** Solves A x = b for `columns` right-hand sides, column-major interleaved; `out` may be `rhs`. */
   solveInto(out: ComplexArray, rhs: ComplexArray, columns: number): ComplexArray;
+  /**
+   * Optional, and worth much in a loop: gives the memory of L to the next factorization of the same analysis. This one
+   * must not solve afterwards; its report and determinant stay.
+   */
+  release(): void;
 }
 
 /** Everything that depends on the pattern only: ordering, tree, symbolic fronts, memory plan. */

@@ -22,7 +22,8 @@ export interface FrontKernels {
   readonly integers: Int32Array;
   /** Makes the memory hold at least this many float64; contents may be lost. */
   reserve(numbers: number): void;
-  clear(at: number, count: number): void;
+  /** Zeros wherever a front is read. */
+  clear(p: number, s: number, nf: number, np: number): void;
   /** Adds an element matrix (nd × nd, column-major, interleaved); row i goes to row map[i] of the front, -1: nowhere. */
   addElement(p: number, s: number, nf: number, np: number, element: number, nd: number, map: number): void;
   /** Adds a packed contribution (see packContribution) of order n; map increases. */

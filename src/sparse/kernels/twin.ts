@@ -29,8 +29,8 @@ export function makeTwinKernels(): FrontKernels {
       m = new Float64Array(buffer);
       ints = new Int32Array(buffer);
     },
-    clear(at: number, count: number): void {
-      m.fill(0, at, at + count);
+    clear(p: number, _s: number, nf: number, np: number): void {
+      m.fill(0, p, p + 2 * nf * np + 2 * (nf - np) * (nf - np));
     },
     addElement,
     addContribution,

@@ -5,7 +5,7 @@ import type { FrontKernels } from './kernels.ts';
 
 /** What front.wasm exports; pointers in bytes. */
 interface FrontExports {
-  clear(at: number, count: number): void;
+  clear(p: number, s: number, nf: number, np: number): void;
   addElement(p: number, s: number, nf: number, np: number, element: number, nd: number, map: number): void;
   addContribution(p: number, s: number, nf: number, np: number, from: number, n: number, map: number): void;
   factorFront(
@@ -62,7 +62,7 @@ function bindKernels(module: WebAssembly.Module, memory: WebAssembly.Memory): Fr
       numbers = new Float64Array(memory.buffer);
       integers = new Int32Array(memory.buffer);
     },
-    clear: (at, count) => wasm.clear(8 * at, count),
+    clear: (p, s, nf, np) => wasm.clear(8 * p, 8 * s, nf, np),
     addElement: (p, s, nf, np, element, nd, map) => wasm.addElement(8 * p, 8 * s, nf, np, 8 * element, nd, 4 * map),
     addContribution: (p, s, nf, np, from, n, map) => wasm.addContribution(8 * p, 8 * s, nf, np, 8 * from, n, 4 * map),
     factorFront: (p, s, nf, np, d, perm, work, tiny) =>

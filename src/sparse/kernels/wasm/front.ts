@@ -11,8 +11,30 @@ const PANEL: i32 = 48;
 /** Row slabs (of 4 rows) of L that stay in the second-level cache while all columns pass. */
 const SLAB_BLOCK: i32 = 32;
 
-export function clear(at: usize, count: i32): void {
-  memory.fill(at, 0, (<usize>count) << 3);
+/** Zeros in P and in the lower triangle of S (a few numbers above it too). */
+export function clear(p: usize, s: usize, nf: i32, np: i32): void {
+  const nb = nf - np;
+  clearRun(p, nf * np * 2);
+  for (let plane = 0; plane < 2; plane++) {
+    let column = s + ((<usize>(plane * nb * nb)) << 3);
+    for (let j = 0; j < nb; j++) {
+      clearRun(column, nb - j);
+      column += (<usize>(nb + 1)) << 3;
+    }
+  }
+}
+
+function clearRun(at: usize, count: i32): void {
+  const zero = f64x2.splat(0);
+  const end = at + ((<usize>count) << 3);
+  while (at + 56 < end) {
+    v128.store(at, zero);
+    v128.store(at, zero, 16);
+    v128.store(at, zero, 32);
+    v128.store(at, zero, 48);
+    at += 64;
+  }
+  for (; at < end; at += 8) store<f64>(at, 0);
 }
 
 export function addElement(p: usize, s: usize, nf: i32, np: i32, element: usize, nd: i32, map: usize): void {
@@ -85,9 +107,16 @@ export function packContribution(s: usize, nb: i32, to: usize): void {
   for (let plane = 0; plane < 2; plane++) {
     let from = s + ((<usize>(plane * nb * nb)) << 3);
     for (let j = 0; j < nb; j++) {
-      const bytes = (<usize>(nb - j)) << 3;
-      memory.copy(to, from, bytes);
-      to += bytes;
+      let at = from;
+      const end = from + ((<usize>(nb - j)) << 3);
+      // Loads run ahead of the stores, which go down: overlap is safe.
+      for (; at + 24 < end; at += 32, to += 32) {
+        const x = v128.load(at);
+        const y = v128.load(at, 16);
+        v128.store(to, x);
+        v128.store(to, y, 16);
+      }
+      for (; at < end; at += 8, to += 8) store<f64>(to, load<f64>(at));
       from += (<usize>(nb + 1)) << 3;
     }
   }
