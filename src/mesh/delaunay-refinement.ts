@@ -178,8 +178,16 @@ export class Draft {
     const shortest = Math.min(...lengths);
     // Smallest angle: sin = shortest / 2R.
     const sine = shortest / (2 * radius);
-    if (sine < Math.sin(angle * degrees)) return { key: 1 / sine, slim: true };
+    if (sine < Math.sin(angle * degrees) && !this.isTip(i)) return { key: 1 / sine, slim: true };
     return null;
+  }
+
+  /** Whether two sides of the triangle are fixed segments: the tip of a sharp corner. */
+  private isTip(i: number): boolean {
+    const { segment } = this.triangulation;
+    let fixed = 0;
+    for (let e = 3 * i; e < 3 * i + 3; e++) if (segment[e] >= 0 && this.segments[segment[e]]!.fixed) fixed++;
+    return fixed >= 2;
   }
 
   /** Removes a bad triangle by a new point or a split segment; false when neither may be done. */
@@ -211,7 +219,8 @@ export class Draft {
   }
 
   private trySplit(segment: number, slim: boolean, label: number): boolean {
-    const { a, b } = this.segments[segment]!;
+    const { a, b, fixed } = this.segments[segment]!;
+    if (fixed) return false;
     const { x, y } = this.triangulation;
     const length = Math.hypot(x[a] - x[b], y[a] - y[b]);
     const wanted = Math.min(this.base(label), (this.size[a] + this.size[b]) / 2);
@@ -239,7 +248,7 @@ export class Draft {
     this.onCurve.push(1);
     const n = this.segments.length;
     this.segments[segment] = null;
-    this.segments.push({ a, b: v, edge, s0, s1: s }, { a: v, b, edge, s0: s, s1 });
+    this.segments.push({ a, b: v, edge, s0, s1: s, fixed: false }, { a: v, b, edge, s0: s, s1, fixed: false });
     if (!t.constrain(a, v, n) || !t.constrain(v, b, n + 1)) throw this.failure('a segment cannot be split', [px, py]);
     this.relabel();
     for (const part of [n, n + 1]) this.clear(part);
@@ -252,7 +261,7 @@ export class Draft {
   /** Splits a segment while an apex beside it lies in its lens. */
   private clear(segment: number): void {
     const s = this.segments[segment];
-    if (!s) return;
+    if (!s || s.fixed) return;
     const t = this.triangulation;
     const e = t.findEdge(s.a, s.b);
     for (const h of [e, t.twin[e]]) {

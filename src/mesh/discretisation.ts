@@ -3,7 +3,7 @@
 import Flatbush from 'flatbush';
 import type { Arrangement, ArrangementEdge } from '../geometry/arrangement.ts';
 import { pointAt } from '../geometry/curves.ts';
-import { curvatureAt, velocityAt } from '../geometry/pieces.ts';
+import { boxOf, curvatureAt, lengthOf, velocityAt } from '../geometry/pieces.ts';
 
 /** How fast the wanted size may grow with distance. */
 export const GROWTH = 0.4;
@@ -15,6 +15,8 @@ export interface Segment {
   readonly edge: number;
   readonly s0: number;
   readonly s1: number;
+  /** Ends at a sharp corner: never split, so that the corner's triangles fit together whatever its angle. */
+  readonly fixed: boolean;
 }
 
 /** Sizes wanted, by arrangement label. */
@@ -50,8 +52,11 @@ export function discretise(arrangement: Arrangement, sizes: Sizes): Discretisati
     return h;
   };
   let segments: Segment[] = [];
+  const tips = tipsOf(arrangement, (edge, px, py) => wanted(edge, px, py));
   edges.forEach((edge, index) => {
-    const marks = evenMarks(edge, (px, py) => wanted(edge, px, py), sizes.largestArc);
+    const [first, last0] = tips[index];
+    const inner = evenMarks(edge, first, last0, (px, py) => wanted(edge, px, py), sizes.largestArc);
+    const marks = [...(first > 0 ? [0] : []), ...inner, ...(last0 < 1 ? [1] : [])];
     let last = edge.from;
     for (let i = 1; i < marks.length; i++) {
       let next = edge.to;
@@ -63,7 +68,8 @@ export function discretise(arrangement: Arrangement, sizes: Sizes): Discretisati
         size.push(wanted(edge, px, py));
       } else size[next] = Math.min(size[next], wanted(edge, x[next], y[next]));
       size[last] = Math.min(size[last], wanted(edge, x[last], y[last]));
-      segments.push({ a: last, b: next, edge: index, s0: marks[i - 1], s1: marks[i] });
+      const fixed = (i === 1 && first > 0) || (i === marks.length - 1 && last0 < 1);
+      segments.push({ a: last, b: next, edge: index, s0: marks[i - 1], s1: marks[i], fixed });
       last = next;
     }
   });
@@ -74,6 +80,79 @@ export function discretise(arrangement: Arrangement, sizes: Sizes): Discretisati
     size[b] = Math.min(size[b], 1.5 * length);
   }
   return { x, y, size, segments };
+}
+
+/** Corners sharper than this (radians) get their tips cut off beforehand. */
+const SHARP = Math.PI / 3;
+
+/**
+ * Per edge the parameters [first, last] between which it may be cut freely. At a vertex with a wedge below 60° every
+ * edge is cut at one common distance ρ, so that the tips are isosceles and need no more points (J. Ruppert 1995, §6):
+ * ρ is the wanted size, at most 0.45 of the shortest edge and of the distance to anything else, and small enough for
+ * the curves to take less than a third of the wedge.
+ */
+function tipsOf(
+  { vertices, edges }: Arrangement,
+  wanted: (edge: ArrangementEdge, x: number, y: number) => number,
+): [number, number][] {
+  const tips: [number, number][] = edges.map(() => [0, 1]);
+  const spokes: { index: number; back: boolean; angle: number; bend: number }[][] = [];
+  for (let v = 0; v < vertices.length / 2; v++) spokes.push([]);
+  edges.forEach((edge, index) => {
+    for (const back of [false, true]) {
+      const [x, y] = velocityAt(edge.piece, back ? 1 : 0);
+      const angle = back ? Math.atan2(-y, -x) : Math.atan2(y, x);
+      spokes[back ? edge.to : edge.from].push({
+        index,
+        back,
+        angle,
+        bend: Math.abs(curvatureAt(edge.piece, back ? 1 : 0)),
+      });
+    }
+  });
+  const boxes = edges.map(({ piece }) => boxOf(piece));
+  spokes.forEach((around, v) => {
+    if (around.length < 2) return;
+    const [x, y] = [vertices[2 * v], vertices[2 * v + 1]];
+    around.sort((p, q) => p.angle - q.angle || p.index - q.index);
+    let reach = Infinity;
+    let sharp = false;
+    around.forEach((p, i) => {
+      const q = around[(i + 1) % around.length];
+      const wedge = i + 1 < around.length ? q.angle - p.angle : q.angle + 2 * Math.PI - p.angle;
+      if (wedge < SHARP) {
+        sharp = true;
+        reach = Math.min(reach, (0.6 * wedge) / (p.bend + q.bend));
+      }
+      const { piece } = edges[p.index];
+      reach = Math.min(reach, wanted(edges[p.index], x, y), 0.45 * lengthOf(piece));
+    });
+    if (!sharp) return;
+    const own = new Set(around.map(({ index }) => index));
+    edges.forEach(({ piece }, index) => {
+      const [x0, y0, x1, y1] = boxes[index];
+      if (own.has(index) || Math.hypot(Math.max(x0 - x, x - x1, 0), Math.max(y0 - y, y - y1, 0)) > 2.3 * reach) return;
+      // The distance is sampled: an error of half a step in sixty-four does no harm below 0.45.
+      for (let i = 0; i <= 64; i++) {
+        const [px, py] = pointAt(piece, i / 64);
+        reach = Math.min(reach, 0.45 * Math.hypot(px - x, py - y));
+      }
+    });
+    for (const { index, back } of around) {
+      const { piece } = edges[index];
+      let low = 0;
+      let high = 0.5;
+      for (let step = 0; step < 60; step++) {
+        const s = (low + high) / 2;
+        const [px, py] = pointAt(piece, back ? 1 - s : s);
+        if (Math.hypot(px - x, py - y) < reach) low = s;
+        else high = s;
+      }
+      if (back) tips[index][1] = 1 - high;
+      else tips[index][0] = high;
+    }
+  });
+  return tips;
 }
 
 /** True corners: a tangent jump of more than 5°, or where three or more edges meet. */
@@ -104,13 +183,20 @@ function cornersOf({ vertices, edges }: Arrangement, sizes: Sizes): { x: number;
   return corners;
 }
 
-/** Parameters 0 = s₀ < s₁ < … = 1 with equal shares of ∫ max(|dp|/h, |dθ|/largest arc, |dt|/largest arc). */
-function evenMarks(edge: ArrangementEdge, wanted: (x: number, y: number) => number, largestArc: number): number[] {
+/** Parameters first = s₀ < s₁ < … = last with equal shares of ∫ max(|dp|/h, |dθ|/largest arc, |dt|/largest arc). */
+function evenMarks(
+  edge: ArrangementEdge,
+  first: number,
+  last: number,
+  wanted: (x: number, y: number) => number,
+  largestArc: number,
+): number[] {
   const { piece } = edge;
+  const range = last - first;
   const samples = 128;
   const cumulative = new Float64Array(samples + 1);
   for (let i = 0; i < samples; i++) {
-    const s = (i + 0.5) / samples;
+    const s = first + (range * (i + 0.5)) / samples;
     const [px, py] = pointAt(piece, s);
     const speed = Math.hypot(...velocityAt(piece, s));
     // Sides may exceed the wanted size by a tenth before another piece pays.
@@ -120,18 +206,18 @@ function evenMarks(edge: ArrangementEdge, wanted: (x: number, y: number) => numb
         density,
         Math.max(speed * Math.abs(curvatureAt(piece, s)), Math.abs(piece.sweep)) / largestArc,
       );
-    cumulative[i + 1] = cumulative[i] + density / samples;
+    cumulative[i + 1] = cumulative[i] + (range * density) / samples;
   }
   const total = cumulative[samples];
   const pieces = Math.max(edge.from === edge.to ? 3 : 1, Math.ceil(total - 1e-9));
-  const marks = [0];
+  const marks = [first];
   let i = 0;
   for (let k = 1; k < pieces; k++) {
     const target = (k / pieces) * total;
     while (cumulative[i + 1] < target) i++;
-    marks.push((i + (target - cumulative[i]) / (cumulative[i + 1] - cumulative[i])) / samples);
+    marks.push(first + (range * (i + (target - cumulative[i]) / (cumulative[i + 1] - cumulative[i]))) / samples);
   }
-  marks.push(1);
+  marks.push(last);
   return marks;
 }
 
@@ -195,13 +281,16 @@ function separate(
           const angle = Math.abs(Math.atan2(ux * wy - uy * wx, ux * wx + uy * wy));
           clash = (turns[i] + turns[j]) / 2 > 0.5 * angle;
         } else clash = distance(x, y, a, b, other.a, other.b) < 1.5 * (bulge[i] + bulge[j]);
-        if (clash) split[bulge[i] >= bulge[j] ? i : j] = 1;
+        if (!clash) continue;
+        const longer = bulge[i] >= bulge[j] ? i : j;
+        const chosen = segments[longer].fixed ? i + j - longer : longer;
+        if (!segments[chosen].fixed && bulge[chosen] > 0) split[chosen] = 1;
       }
     }
     if (!split.includes(1)) return segments;
     segments = segments.flatMap((segment, i) => {
       if (!split[i]) return [segment];
-      const { a, b, edge, s0, s1 } = segment;
+      const { a, b, edge, s0, s1, fixed } = segment;
       const middle = (s0 + s1) / 2;
       const [px, py] = pointAt(edges[edge].piece, middle);
       x.push(px);
@@ -209,8 +298,8 @@ function separate(
       size.push(Math.min(size[a], size[b]));
       const m = x.length - 1;
       return [
-        { a, b: m, edge, s0, s1: middle },
-        { a: m, b, edge, s0: middle, s1 },
+        { a, b: m, edge, s0, s1: middle, fixed },
+        { a: m, b, edge, s0: middle, s1, fixed },
       ];
     });
   }
