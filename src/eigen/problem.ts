@@ -19,10 +19,3 @@ export interface EigenProblem {
   multiplyInto(out: ComplexArray, k: Complex, level: number, part: Part, x: ComplexArray, columns: number): ComplexArray;
   factorize(k: Complex, level: number): Inverse;
 }
-
-/** A cluster of eigenpairs: the columns of `vectors` span their space; `ks` in no particular order. */
-export interface EigenCluster {
-  readonly ks: readonly Complex[];
-  /** size × ks.length; column i belongs to ks[i] (for a defective or degenerate cluster: to some basis of the space). */
-  readonly vectors: ComplexArray;
-}

@@ -1,9 +1,9 @@
 // Which eigenvalues lie in a window of the complex k plane?
 
-import { complex, type Complex, modulus, type ComplexArray } from '../numerics/complex.ts';
-import { gather } from './rayleigh.ts';
+import { complex, type Complex, type ComplexArray } from '../numerics/complex.ts';
 import { modesNear, squareDistance } from './krylov.ts';
-import type { EigenCluster, EigenProblem, Inverse } from './problem.ts';
+import type { EigenProblem, Inverse } from './problem.ts';
+import { type EigenGroup, gather } from './rayleigh.ts';
 
 /** k with Re in [kMin, kMax] and Im between −low·Re and +high·Re. */
 export interface Wedge {
@@ -24,37 +24,39 @@ export interface WindowRequest {
   /** Modes wanted a tile. */
   readonly perTile: number;
   readonly tolerance: number;
-  /** Members closer than this (relative to |k|) belong to one cluster. */
-  readonly clusterWidth: number;
   readonly seed: number;
   /** Called after each tile with the share of the window that is done; throws to stop. */
   readonly progress?: (done: number) => void;
 }
 
-/** A tile of the window with the factorization at its middle, which later steps use again. */
+/** A disc of the window, all eigenpairs seen in it, and the factorization at its middle, which later steps use again. */
 export interface Tile {
   readonly shift: Complex;
+  /** In k²: |k² − shift²| ≤ radius is covered. */
+  readonly radius: number;
   readonly inverse: Inverse;
+  /** Converged pairs, some beyond the disc, nearest to the shift first. */
+  readonly ks: readonly Complex[];
+  /** size × ks.length. */
+  readonly vectors: ComplexArray;
 }
 
 export interface WindowAnswer {
-  /** Clusters with at least one member in the wedge. */
-  readonly clusters: readonly (EigenCluster & { readonly tile: Tile })[];
+  readonly tiles: readonly Tile[];
   /** False when some tile could not be covered. */
   readonly covered: boolean;
-  readonly tiles: number;
 }
 
 /**
  * Covers the wedge with discs about shifts and finds everything in each by block Arnoldi. A tile that cannot be covered
- * is halved, up to a depth of 6. Each cluster is taken from the tile that saw the most members of it.
+ * is halved, up to a depth of 6. Discs overlap: `ownGroups` tells which tile answers for which mode.
  */
 export function modesInWindow(problem: EigenProblem, request: WindowRequest): WindowAnswer {
   const { wedge } = request;
   const edges = tileEdges(request);
-  const seen: Seen[] = [];
+  const tiles: Tile[] = [];
   let covered = true;
-  let tiles = 0;
+  let tries = 0;
   const visit = (a: number, b: number, depth: number): void => {
     const shift = tileShift(wedge, a, b);
     const radius = tileRadius(wedge, a, b, shift) * 1.02;
@@ -65,30 +67,54 @@ export function modesInWindow(problem: EigenProblem, request: WindowRequest): Wi
       block: 3,
       largestDimension: 40 + 5 * request.perTile,
       tolerance: request.tolerance,
-      seed: request.seed + tiles,
+      seed: request.seed + tries++,
     });
-    tiles++;
     if (!nearby.covered && nearby.dimension < problem.size && depth < 6) {
       visit(a, (a + b) / 2, depth + 1);
       visit((a + b) / 2, b, depth + 1);
       return;
     }
     covered &&= nearby.covered || nearby.dimension >= problem.size;
-    const tile: Tile = { shift, inverse: nearby.inverse };
-    nearby.ks.forEach((k, i) => {
-      if (squareDistance(k, shift) <= radius * 1.2) seen.push({ k, i, tile, vectors: nearby.vectors });
-    });
+    tiles.push({ shift, radius, inverse: nearby.inverse, ks: nearby.ks, vectors: nearby.vectors });
     request.progress?.((b - wedge.kMin) / (wedge.kMax - wedge.kMin));
   };
   for (let i = 0; i + 1 < edges.length; i++) visit(edges[i]!, edges[i + 1]!, 0);
-  return { clusters: mergeTiles(problem.size, seen, request), covered, tiles };
+  return { tiles, covered };
 }
 
-interface Seen {
-  readonly k: Complex;
-  readonly i: number;
-  readonly tile: Tile;
-  readonly vectors: ComplexArray;
+/** A group of modes and the tile it was taken from. */
+export interface OwnedGroup {
+  readonly group: EigenGroup;
+  readonly tile: number;
+}
+
+/**
+ * One row for every group seen by any tile: where discs overlap, the tile that saw the highest multiplicity answers,
+ * and among equals the one whose shift is nearest. `width` is the absolute distance within which groups are the same.
+ */
+export function ownGroups(tiles: readonly Tile[], groups: readonly (readonly EigenGroup[])[], width: number): OwnedGroup[] {
+  const all = groups.flatMap((list, tile) =>
+    list
+      .filter((g) => squareDistance(g.k, tiles[tile]!.shift) <= 1.05 * tiles[tile]!.radius)
+      .map((group) => ({ group, tile })),
+  );
+  const same = gather(
+    all.map((g) => g.group.k),
+    width,
+  );
+  return same
+    .flatMap((indices) => {
+      const members = indices.map((i) => all[i]!);
+      const count = (tile: number): number =>
+        members.reduce((sum, g) => sum + (g.tile === tile ? g.group.multiplicity : 0), 0);
+      const distance = (g: OwnedGroup): number => squareDistance(g.group.k, tiles[g.tile]!.shift);
+      const best = members.reduce((a, b) => {
+        const more = count(b.tile) - count(a.tile);
+        return more > 0 || (more === 0 && distance(b) < distance(a)) ? b : a;
+      });
+      return members.filter((g) => g.tile === best.tile);
+    })
+    .sort((a, b) => a.group.k.re - b.group.k.re);
 }
 
 /** Tiles of about `perTile` modes each, and no wider than 0.6 of their middle k. */
@@ -119,35 +145,4 @@ function tileRadius(wedge: Wedge, a: number, b: number, shift: Complex): number 
     }
   }
   return radius;
-}
-
-function mergeTiles(n: number, seen: readonly Seen[], request: WindowRequest): (EigenCluster & { tile: Tile })[] {
-  const scale = request.wedge.kMax;
-  const groups = gather(
-    seen.map((s) => s.k),
-    request.clusterWidth * scale,
-  );
-  const out: (EigenCluster & { tile: Tile })[] = [];
-  for (const group of groups) {
-    const byTile = new Map<Tile, Seen[]>();
-    for (const i of group) {
-      const s = seen[i]!;
-      const list = byTile.get(s.tile);
-      if (list) list.push(s);
-      else byTile.set(s.tile, [s]);
-    }
-    let best: Seen[] = [];
-    for (const list of byTile.values()) {
-      const better =
-        list.length > best.length ||
-        (list.length === best.length &&
-          squareDistance(list[0]!.k, list[0]!.tile.shift) < squareDistance(best[0]!.k, best[0]!.tile.shift));
-      if (better) best = list;
-    }
-    if (!best.some((s) => wedgeHolds(request.wedge, s.k))) continue;
-    const vectors = new Float64Array(2 * n * best.length);
-    best.forEach((s, j) => vectors.set(s.vectors.subarray(2 * n * s.i, 2 * n * (s.i + 1)), 2 * n * j));
-    out.push({ ks: best.map((s) => s.k), vectors, tile: best[0]!.tile });
-  }
-  return out.sort((a, b) => a.ks[0]!.re - b.ks[0]!.re || modulus(a.ks[0]!) - modulus(b.ks[0]!));
 }

@@ -1,0 +1,213 @@
+// At which real k and real pump (or loss) do the modes of a device meet the real axis?
+
+import { groupWidth } from '../accuracy/mode-ladder.ts';
+import { DEFAULT_DIGITS, HIGHEST_ORDER, resolutionFor } from '../accuracy/resolution.ts';
+import type { Device } from '../device/model.ts';
+import { embed } from '../elements/space.ts';
+import { type Crossing, findCrossing } from '../eigen/crossing.ts';
+import { followCluster, type ModePath } from '../eigen/follow.ts';
+import { type EigenGroup, gather, rayleighGroups } from '../eigen/rayleigh.ts';
+import { modesInWindow, ownGroups } from '../eigen/window.ts';
+import { type Complex, modulus } from '../numerics/complex.ts';
+import type { LevelSense } from '../operator/device-family.ts';
+import { modeMultipoles, multipoleOrder } from '../scattering/regular-waves.ts';
+import type { Multipoles } from '../scattering/amplitudes.ts';
+import { modeLabel } from './label.ts';
+import { expectedModes } from './mode-count.ts';
+import { type Progress, wedgeFor } from './modes.ts';
+import { familyOf, type Prepared, prepare, spaceOf } from './prepare.ts';
+
+export interface CrossingsRequest {
+  readonly digits?: number;
+  /** Largest pump or loss D; default a quarter of the largest |ε| among the active bodies. */
+  readonly levelMax?: number;
+  readonly progress?: Progress;
+}
+
+/** One mode on the real axis. */
+export interface AxisMode {
+  readonly k: number;
+  readonly kError: number;
+  readonly level: number;
+  readonly levelError: number;
+  readonly multiplicity: number;
+  readonly label: string;
+  /** size × multiplicity in the space of `order`. */
+  readonly group: EigenGroup;
+  readonly order: number;
+  /** b_m − a_m of each member, m = −M … M. */
+  readonly multipoles: readonly Multipoles[];
+  readonly path: { readonly levels: readonly number[]; readonly ks: readonly Complex[] };
+  /** The error is below the digits asked for. */
+  readonly reached: boolean;
+}
+
+export interface CrossingsAnswer {
+  readonly crossings: readonly AxisMode[];
+  /** Modes that were followed and did not cross in the band below levelMax. */
+  readonly others: readonly ModePath[];
+  readonly levelMax: number;
+  readonly covered: boolean;
+  readonly digits: number;
+  readonly prepared: Prepared;
+  readonly sense: LevelSense;
+}
+
+const SEED = 7;
+
+/** Largest level searched when none is given. */
+export function defaultLevelMax(device: Device): number {
+  const active = device.bodies.filter((b) => b.pumpWeight > 0);
+  return Math.max(...active.map((b) => modulus(b.permittivity) / (4 * b.pumpWeight)));
+}
+
+/**
+ * All crossings in the band below `levelMax`, lowest level first. Poles are followed under gain, zeros under loss; each
+ * from level 0 to the axis. The window at level 0 is widened by what the level can move: |δk|/k ≈ D w / 2|ε|.
+ *
+ * @throws RangeError when no body is active, or for digits out of range.
+ */
+export function findCrossings(device: Device, sense: LevelSense, request: CrossingsRequest = {}): CrossingsAnswer {
+  const digits = request.digits ?? DEFAULT_DIGITS;
+  const active = device.bodies.filter((b) => b.pumpWeight > 0);
+  if (active.length === 0) throw new RangeError('no body is active; expected a pump section that names at least one');
+  const levelMax = request.levelMax ?? defaultLevelMax(device);
+  if (!(levelMax > 0)) throw new RangeError(`the largest level came as ${levelMax}; expected a positive number`);
+  const resolution = resolutionFor(digits);
+  const { kMin, kMax } = device.band;
+  const reach = Math.max(...active.map((b) => (levelMax * b.pumpWeight) / (2 * modulus(b.permittivity))));
+  const slope = Math.min(1, 1.3 * reach + 0.01);
+  const margin = Math.min(0.3 * slope, 0.25);
+  const assignment = sense === 'gain' ? 'poles' : 'zeros';
+  const direction = sense === 'gain' ? 'outgoing' : 'incoming';
+  const wedge = wedgeFor(device, assignment, kMin * (1 - margin), kMax * (1 + margin), slope);
+  request.progress?.('meshing', 0);
+  const prepared = prepare(device, { kMin: wedge.kMin, kMax: wedge.kMax, slope }, resolution);
+  const order = resolution.order;
+  const family = familyOf(prepared, order, direction, sense);
+
+  // 1 modes at level 0
+  const found = modesInWindow(family, {
+    wedge,
+    level: 0,
+    expected: expectedModes(device),
+    perTile: 18,
+    tolerance: 1e-8,
+    seed: SEED,
+    progress: (done) => request.progress?.('modes without pump', done),
+  });
+  const width = groupWidth(digits, kMax);
+  const groups = found.tiles.map((t) => rayleighGroups(family, t.shift, 0, t.vectors, t.ks.length, width));
+  const start = ownGroups(found.tiles, groups, width)
+    .map((o) => o.group)
+    .filter((g) => g.k.re > 0 && mayCross(g, levelMax, sense));
+
+  // 2 followed in clusters to the axis
+  const clusters = gather(
+    start.map((g) => g.k),
+    CLUSTER_WIDTH * kMax,
+  );
+  const paths: ModePath[] = [];
+  clusters.forEach((members, i) => {
+    const list = members.map((m) => start[m]!);
+    const columns = list.reduce((sum, g) => sum + g.multiplicity, 0);
+    const vectors = new Float64Array(2 * family.size * columns);
+    let at = 0;
+    for (const g of list) {
+      vectors.set(g.vectors, at);
+      at += g.vectors.length;
+    }
+    request.progress?.('following modes to the axis', i / clusters.length);
+    paths.push(
+      ...followCluster(family, {
+        k: list[0]!.k,
+        vectors,
+        columns,
+        levelMax,
+        groupWidth: width / kMax,
+        clusterWidth: CLUSTER_WIDTH,
+      }),
+    );
+  });
+
+  // 3 polished with their errors
+  const inBand = paths.filter((p) => p.crossing && p.crossing.k >= kMin && p.crossing.k <= kMax);
+  const crossings = inBand.map((path, i) => {
+    request.progress?.('polishing', i / inBand.length);
+    return climbCrossing(prepared, direction, sense, path, digits, width);
+  });
+  crossings.sort((a, b) => a.level - b.level || a.k - b.k);
+  return {
+    crossings,
+    others: paths.filter((p) => !inBand.includes(p)),
+    levelMax,
+    covered: found.covered,
+    digits,
+    prepared,
+    sense,
+  };
+}
+
+/** Modes closer than this (relative) are followed together. */
+const CLUSTER_WIDTH = 2e-3;
+
+/** A mode whose tangent needs much more than the largest level is not followed; twice leaves room for curvature. */
+function mayCross(group: EigenGroup, levelMax: number, sense: LevelSense): boolean {
+  const toward = sense === 'gain' ? group.slope.im : -group.slope.im;
+  const distance = sense === 'gain' ? -group.k.im : group.k.im;
+  return distance > 0 && toward > 0 && distance / toward < 2 * levelMax;
+}
+
+/** Raises the order until k and the level have their digits; the errors come from one order more. */
+function climbCrossing(
+  prepared: Prepared,
+  direction: 'outgoing' | 'incoming',
+  sense: LevelSense,
+  path: ModePath,
+  digits: number,
+  width: number,
+): AxisMode {
+  const { device, layer } = prepared;
+  let order = resolutionFor(digits).order;
+  let here: Crossing = path.crossing!;
+  for (;;) {
+    const up = familyOf(prepared, order + 1, direction, sense);
+    const columns = here.group.multiplicity;
+    const next = findCrossing(up, {
+      k: here.k,
+      level: here.level,
+      space: embed(spaceOf(prepared, order + 1), spaceOf(prepared, order), here.group.vectors, columns),
+      columns,
+      groupWidth: width,
+    });
+    const kStep = next ? Math.abs(next.k - here.k) : Infinity;
+    const levelStep = next ? Math.abs(next.level - here.level) : Infinity;
+    const goal = 10 ** -digits;
+    const reached = kStep <= goal * here.k && levelStep <= Math.max(goal * here.level, 1e-13);
+    if (reached || !next || order + 1 >= HIGHEST_ORDER) {
+      const { vectors, multiplicity, spread, slope } = here.group;
+      const n = vectors.length / (2 * multiplicity);
+      const members = Array.from({ length: multiplicity }, (_, i) => vectors.subarray(2 * n * i, 2 * n * (i + 1)));
+      const M = multipoleOrder(device, prepared.bodyRadius, here.k);
+      const k = { re: here.k, im: 0 };
+      const multipoles = modeMultipoles(device, spaceOf(prepared, order), k, here.level, sense, M, members);
+      // what the layer returns shifts k by about `returned` times the width the mode would have without level
+      const boundary = layer.returned * Math.abs(slope.im) * here.level;
+      return {
+        k: here.k,
+        kError: Math.max(kStep, spread) + boundary + 1e-14 * here.k,
+        level: here.level,
+        levelError: levelStep + spread / Math.abs(slope.im) + layer.returned * here.level + (1e-14 * here.k) / Math.abs(slope.im),
+        multiplicity,
+        label: modeLabel(multipoles),
+        group: here.group,
+        order,
+        multipoles,
+        path: { levels: path.levels, ks: path.ks },
+        reached,
+      };
+    }
+    order++;
+    here = next;
+  }
+}

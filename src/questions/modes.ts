@@ -1,0 +1,147 @@
+// Where does a device resonate? Poles, or zeros, in a window of complex k.
+
+import { type ErrorParts, climbModes, type FoundMode, totalError } from '../accuracy/mode-ladder.ts';
+import { DEFAULT_DIGITS, resolutionFor } from '../accuracy/resolution.ts';
+import type { Device } from '../device/model.ts';
+import type { Wedge } from '../eigen/window.ts';
+import type { Complex, ComplexArray } from '../numerics/complex.ts';
+import { farField, type Multipoles } from '../scattering/amplitudes.ts';
+import { modeMultipoles, multipoleOrder } from '../scattering/regular-waves.ts';
+import { modeLabel } from './label.ts';
+import { expectedModes } from './mode-count.ts';
+import { familyOf, type Prepared, prepare, spaceOf } from './prepare.ts';
+
+/** Called now and then with what is being done and the share that is done, 0 … 1. It may throw to stop the work. */
+export type Progress = (stage: string, done: number) => void;
+
+export type Assignment = 'poles' | 'zeros';
+
+export interface ModesRequest {
+  readonly digits?: number;
+  /** `poles`: all waves go out; `zeros`: all come in. */
+  readonly assignment?: Assignment;
+  /** Lowest Q = Re k / 2|Im k| asked for; default 10. */
+  readonly qMin?: number;
+  readonly progress?: Progress;
+}
+
+export interface Mode {
+  readonly k: Complex;
+  readonly error: ErrorParts;
+  readonly kError: number;
+  readonly q: number;
+  readonly qError: number;
+  readonly multiplicity: number;
+  /** "m = 5" where the rim shows one azimuthal order only, else "". */
+  readonly label: string;
+  readonly layerShare: number;
+  readonly layerSensitivity: number;
+  /** Coefficients in the space of `prepared` at `order`, one array a member. */
+  readonly vectors: readonly ComplexArray[];
+  /** Amplitudes of the first member outside: outgoing for poles, incoming for zeros; m = −M … M. */
+  readonly multipoles: Multipoles;
+  /** Far-field power density at 0 … 359°, mean 1 (of the first member). */
+  readonly farField: Float64Array;
+}
+
+export interface ModesAnswer {
+  readonly modes: readonly Mode[];
+  readonly assignment: Assignment;
+  readonly dropped: readonly { readonly k: Complex; readonly reason: string }[];
+  /** The search covered the whole window. */
+  readonly covered: boolean;
+  /** All modes have the digits. */
+  readonly reached: boolean;
+  readonly digits: number;
+  readonly qMin: number;
+  readonly order: number;
+  readonly prepared: Prepared;
+}
+
+export const DEFAULT_Q_MIN = 10;
+
+/** Highest Q that is told from infinity: |Im k| below this share of Re k is rounding. */
+const HIGHEST_Q = 1e13;
+
+/**
+ * All poles (zeros) with real part in the device's band and Q ≥ qMin, each with its error.
+ *
+ * @throws RangeError for digits outside 2 … 11 or a qMin below 0.5.
+ * @example
+ * const answer = findModes(readDevice(text, 'disk.yaml'), { digits: 8 });
+ * for (const mode of answer.modes) print(mode.k.re, mode.kError, mode.q);
+ */
+export function findModes(device: Device, request: ModesRequest = {}): ModesAnswer {
+  const digits = request.digits ?? DEFAULT_DIGITS;
+  const qMin = request.qMin ?? DEFAULT_Q_MIN;
+  const assignment = request.assignment ?? 'poles';
+  if (!(qMin >= 0.5)) throw new RangeError(`the lowest Q came as ${qMin}; expected 0.5 or more`);
+  const resolution = resolutionFor(digits);
+  const { kMin, kMax } = device.band;
+  const wedge = wedgeFor(device, assignment, kMin, kMax, 1 / (2 * qMin));
+  request.progress?.('meshing', 0);
+  const prepared = prepare(device, { kMin, kMax, slope: 1 / (2 * qMin) }, resolution);
+  const direction = assignment === 'poles' ? 'outgoing' : 'incoming';
+  const search = climbModes((order) => familyOf(prepared, order, direction, 'gain'), {
+    wedge,
+    level: 0,
+    digits,
+    startOrder: resolution.order,
+    layer: prepared.layer,
+    expected: expectedModes(device),
+    ...(request.progress ? { progress: request.progress } : {}),
+  });
+  const modes = search.modes.map((found, i) => {
+    request.progress?.('far fields', i / search.modes.length);
+    return describeMode(prepared, search.order, found, assignment);
+  });
+  return {
+    modes,
+    assignment,
+    dropped: search.dropped,
+    covered: search.covered,
+    reached: search.reached,
+    digits,
+    qMin,
+    order: search.order,
+    prepared,
+  };
+}
+
+/** Poles of passive devices lie below the axis; zeros lie on either side of it as soon as there is loss. */
+export function wedgeFor(device: Device, assignment: Assignment, kMin: number, kMax: number, slope: number): Wedge {
+  const gain = device.bodies.some((b) => b.permittivity.im < 0 || b.permeability.im < 0);
+  const loss = device.bodies.some((b) => b.permittivity.im > 0 || b.permeability.im > 0);
+  const sliver = 1e-9;
+  return assignment === 'poles'
+    ? { kMin, kMax, low: slope, high: gain ? slope : sliver }
+    : { kMin, kMax, low: loss ? slope : sliver, high: slope };
+}
+
+function describeMode(prepared: Prepared, order: number, found: FoundMode, assignment: Assignment): Mode {
+  const { group, error, layer } = found;
+  const { k, vectors, multiplicity } = group;
+  const n = vectors.length / (2 * multiplicity);
+  const space = spaceOf(prepared, order);
+  const members = Array.from({ length: multiplicity }, (_, i) => vectors.slice(2 * n * i, 2 * n * (i + 1)));
+  const M = multipoleOrder(prepared.device, prepared.bodyRadius, Math.hypot(k.re, k.im));
+  const all = modeMultipoles(prepared.device, space, k, 0, 'gain', M, members);
+  // d/4ip_b is b − a: a zero's incoming amplitudes are minus that
+  if (assignment === 'zeros') for (const a of all) for (let i = 0; i < a.length; i++) a[i] = -a[i]!;
+  const kError = totalError(error);
+  const width = Math.max(Math.abs(k.im), k.re / (2 * HIGHEST_Q));
+  return {
+    k,
+    error,
+    kError,
+    q: k.re / (2 * width),
+    qError: (k.re / (2 * width)) * Math.min(1, kError / width),
+    multiplicity,
+    label: modeLabel(all),
+    layerShare: layer.share,
+    layerSensitivity: layer.sensitivity,
+    vectors: members,
+    multipoles: all[0]!,
+    farField: farField(all[0]!),
+  };
+}
