@@ -68,7 +68,7 @@ export class Draft {
     const t = this.triangulation;
     this.clearSegments();
     for (let pass = 0; pass < 200; pass++) {
-      const bad: { key: number; e: number; a: number; b: number; c: number; slim: boolean }[] = [];
+      const bad: { key: number; e: number; a: number; b: number; c: number; large: boolean; slim: boolean }[] = [];
       for (let i = 0; i < t.triangles; i++) {
         const found = this.judge(i, angle);
         if (found)
@@ -82,9 +82,9 @@ export class Draft {
       }
       bad.sort((p, q) => q.key - p.key || p.e - q.e);
       let done = 0;
-      for (const { e, a, b, c, slim } of bad) {
+      for (const { e, a, b, c, large, slim } of bad) {
         if (t.start[e] !== a || t.start[e + 1] !== b || t.start[e + 2] !== c) continue;
-        if (this.mend(e / 3, slim, angle)) done++;
+        if (this.mend(e / 3, large, slim, angle)) done++;
         if (t.x.length > this.limit)
           throw this.failure(`more than ${this.limit} vertices would be needed`, [t.x[a], t.y[a]]);
       }
@@ -159,7 +159,7 @@ export class Draft {
   }
 
   /** Why a triangle is bad, and how bad; null when it is good. */
-  private judge(i: number, angle: number): { key: number; slim: boolean } | null {
+  private judge(i: number, angle: number): { key: number; large: boolean; slim: boolean } | null {
     const t = this.triangulation;
     const label = t.region[i];
     if (label === OUTSIDE) return null;
@@ -174,12 +174,12 @@ export class Draft {
     const area = (x[b] - x[a]) * (y[c] - y[a]) - (y[b] - y[a]) * (x[c] - x[a]);
     const radius = (lengths[0] * lengths[1] * lengths[2]) / (2 * area);
     const tooLarge = Math.max(radius / (0.66 * wanted), Math.max(...lengths) / (1.2 * wanted));
-    if (tooLarge > 1) return { key: 1e6 * tooLarge, slim: false };
     const shortest = Math.min(...lengths);
     // Smallest angle: sin = shortest / 2R.
     const sine = shortest / (2 * radius);
-    if (sine < Math.sin(angle * degrees) && !this.isTip(i)) return { key: 1 / sine, slim: true };
-    return null;
+    const slim = sine < Math.sin(angle * degrees) && !this.isTip(i);
+    if (tooLarge > 1) return { key: 1e6 * tooLarge, large: true, slim };
+    return slim ? { key: 1 / sine, large: false, slim } : null;
   }
 
   /** Whether two sides of the triangle are fixed segments: the tip of a sharp corner. */
@@ -191,13 +191,13 @@ export class Draft {
   }
 
   /** Removes a bad triangle by a new point or a split segment; false when neither may be done. */
-  private mend(i: number, slim: boolean, angle: number): boolean {
+  private mend(i: number, large: boolean, slim: boolean, angle: number): boolean {
     const t = this.triangulation;
     const { x, y, start } = t;
     const label = t.region[i];
-    const target = slim
-      ? this.offcenter(i, angle)
-      : this.circumcenter(start[3 * i], start[3 * i + 1], start[3 * i + 2]);
+    const target = large
+      ? this.circumcenter(start[3 * i], start[3 * i + 1], start[3 * i + 2])
+      : this.offcenter(i, angle);
     const { at, blockedBy } = this.walk(i, target);
     if (blockedBy >= 0) return this.trySplit(blockedBy, slim, label);
     // Segments on the border of the point's cavity.
