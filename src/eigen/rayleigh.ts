@@ -52,7 +52,8 @@ export function rayleighGroups(
       const step = mean(again.offsets);
       spread = Math.max(...again.offsets.map((o) => modulus(subtract(o, step))));
       k = add(k, step);
-      if (modulus(step) <= 1e-15 * modulus(k)) break;
+      // Newton's next step is the square of this one
+      if (modulus(step) <= 1e-8 * modulus(k)) break;
     }
     const slope = withSlope ? groupSlope(problem, k, level, vectors, members.length) : complex(0);
     return { k, spread, slope, multiplicity: members.length, vectors };

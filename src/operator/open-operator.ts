@@ -112,6 +112,10 @@ function fillElement(
   }
 }
 
+/**
+ * Element by element: gather, multiply by K and M apart (real inside the rim), weigh, scatter. Columns are taken
+ * together, so that each matrix entry is read once.
+ */
 function multiplyElements(
   out: ComplexArray,
   space: Space,
@@ -125,20 +129,19 @@ function multiplyElements(
   const triangles = starts.length - 1;
   const widest = largestElement(space);
   const local = new Float64Array(2 * widest);
-  const block = new Float64Array(2 * widest * widest);
+  const sum = new Float64Array(2 * widest);
+  const flip = direction === 'incoming' ? -1 : 1;
   out.fill(0, 0, 2 * unknowns * columns);
   for (let t = 0; t < triangles; t++) {
     const region = mesh.regions[t]!;
     const at = 2 * (region + 2);
-    if (
-      weights.stiffness[at] === 0 &&
-      weights.stiffness[at + 1] === 0 &&
-      weights.mass[at] === 0 &&
-      weights.mass[at + 1] === 0
-    ) {
-      continue;
-    }
-    fillElement(block, t, region, elements, direction, weights);
+    const kr = weights.stiffness[at]!;
+    const ki = weights.stiffness[at + 1]!;
+    const mr = weights.mass[at]!;
+    const mi = weights.mass[at + 1]!;
+    const useK = kr !== 0 || ki !== 0;
+    const useM = mr !== 0 || mi !== 0;
+    if (!useK && !useM) continue;
     const start = starts[t]!;
     const nd = starts[t + 1]! - start;
     for (let c = 0; c < columns; c++) {
@@ -148,25 +151,62 @@ function multiplyElements(
         local[2 * i] = g < 0 ? 0 : x[shift + 2 * g]!;
         local[2 * i + 1] = g < 0 ? 0 : x[shift + 2 * g + 1]!;
       }
+      sum.fill(0, 0, 2 * nd);
+      if (useK) addLocal(sum, elements.stiffness[t]!, nd, local, kr, ki, region === LAYER, flip);
+      if (useM) addLocal(sum, elements.mass[t]!, nd, local, mr, mi, region === LAYER, flip);
       for (let i = 0; i < nd; i++) {
         const g = list[start + i]!;
         if (g < 0) continue;
-        // row i of a symmetric block is its column i: contiguous
-        let sr = 0;
-        let si = 0;
-        const row = 2 * i * nd;
-        for (let j = 0; j < 2 * nd; j += 2) {
-          const ar = block[row + j]!;
-          const ai = block[row + j + 1]!;
-          const br = local[j]!;
-          const bi = local[j + 1]!;
-          sr += ar * br - ai * bi;
-          si += ar * bi + ai * br;
-        }
-        out[shift + 2 * g] = out[shift + 2 * g]! + sr;
-        out[shift + 2 * g + 1] = out[shift + 2 * g + 1]! + si;
+        out[shift + 2 * g] = out[shift + 2 * g]! + sum[2 * i]!;
+        out[shift + 2 * g + 1] = out[shift + 2 * g + 1]! + sum[2 * i + 1]!;
       }
     }
   }
   return out;
+}
+
+/** sum += w B x for a symmetric element matrix B, real or complex. */
+function addLocal(
+  sum: Float64Array,
+  B: Float64Array,
+  nd: number,
+  x: Float64Array,
+  wr: number,
+  wi: number,
+  complexMatrix: boolean,
+  flip: number,
+): void {
+  for (let i = 0; i < nd; i++) {
+    // row i of a symmetric matrix is its column i: contiguous
+    let re = 0;
+    let im = 0;
+    if (complexMatrix) {
+      const row = 2 * i * nd;
+      let rr = 0;
+      let ii = 0;
+      let ri = 0;
+      let ir = 0;
+      for (let j = 0; j < 2 * nd; j += 2) {
+        const a = B[row + j]!;
+        const b = B[row + j + 1]!;
+        const c = x[j]!;
+        const d = x[j + 1]!;
+        rr += a * c;
+        ii += b * d;
+        ri += a * d;
+        ir += b * c;
+      }
+      re = rr - flip * ii;
+      im = ri + flip * ir;
+    } else {
+      const row = i * nd;
+      for (let j = 0; j < nd; j++) {
+        const a = B[row + j]!;
+        re += a * x[2 * j]!;
+        im += a * x[2 * j + 1]!;
+      }
+    }
+    sum[2 * i] = sum[2 * i]! + wr * re - wi * im;
+    sum[2 * i + 1] = sum[2 * i + 1]! + wr * im + wi * re;
+  }
 }

@@ -6,7 +6,8 @@ import type { Device } from '../device/model.ts';
 import type { Wedge } from '../eigen/window.ts';
 import type { Complex, ComplexArray } from '../numerics/complex.ts';
 import { farField, type Multipoles } from '../scattering/amplitudes.ts';
-import { modeMultipoles, multipoleOrder } from '../scattering/regular-waves.ts';
+import { multipoleOrder } from '../scattering/regular-waves.ts';
+import { rimMultipoles } from '../scattering/rim-waves.ts';
 import { modeLabel } from './label.ts';
 import { expectedModes } from './mode-count.ts';
 import { familyOf, type Prepared, prepare, spaceOf } from './prepare.ts';
@@ -125,9 +126,7 @@ function describeMode(prepared: Prepared, order: number, found: FoundMode, assig
   const space = spaceOf(prepared, order);
   const members = Array.from({ length: multiplicity }, (_, i) => vectors.slice(2 * n * i, 2 * n * (i + 1)));
   const M = multipoleOrder(prepared.device, prepared.bodyRadius, Math.hypot(k.re, k.im));
-  const all = modeMultipoles(prepared.device, space, k, 0, 'gain', M, members);
-  // d/4ip_b is b − a: a zero's incoming amplitudes are minus that
-  if (assignment === 'zeros') for (const a of all) for (let i = 0; i < a.length; i++) a[i] = -a[i]!;
+  const all = rimMultipoles(prepared.device, space, k, assignment === 'poles' ? 1 : 2, M, members);
   const kError = totalError(error);
   const width = Math.max(Math.abs(k.im), k.re / (2 * HIGHEST_Q));
   return {
