@@ -125,9 +125,10 @@ export const jacobianBounds = (mesh: Mesh, t: number): JacobianBounds =>
 
 /**
  * Bounds of the Jacobian determinant by its Bernstein coefficients (degree 2g − 2), whose smallest and largest enclose
- * it; the triangle is halved until they are within a twentieth of values really taken, or 64 times at most.
+ * it; the triangle is halved until they are within a twentieth of values really taken, or lower ≥ `enough` × upper, or
+ * 64 times at most.
  */
-export function boundJacobian({ corners, bulges }: TriangleCurves, g: number): JacobianBounds {
+export function boundJacobian({ corners, bulges }: TriangleCurves, g: number, enough = Infinity): JacobianBounds {
   if (!bulges[0] && !bulges[1] && !bulges[2]) {
     const [x0, y0, x1, y1, x2, y2] = corners;
     const twice = (x1 - x0) * (y2 - y0) - (y1 - y0) * (x2 - x0);
@@ -144,6 +145,7 @@ export function boundJacobian({ corners, bulges }: TriangleCurves, g: number): J
     for (let i = 1; i < cells.length; i++) if (cells[i].lower < cells[worst].lower) worst = i;
     let widest = 0;
     for (let i = 1; i < cells.length; i++) if (cells[i].upper > cells[widest].upper) widest = i;
+    if (cells[worst].lower >= enough * cells[widest].upper) break;
     const slack = 0.05 * Math.abs(least);
     let chosen = worst;
     if (cells[worst].lower >= least - slack || least <= 0) {

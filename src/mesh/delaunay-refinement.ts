@@ -4,12 +4,18 @@ import type { Arrangement } from '../geometry/arrangement.ts';
 import type { Point } from '../geometry/curves.ts';
 import { pointAt } from '../geometry/curves.ts';
 import { GeometryError } from '../geometry/geometry-error.ts';
+import { gaussLobatto } from '../numerics/quadrature.ts';
+import type { TriangleCurves } from './curved-triangles.ts';
+import { boundJacobian, bulgeOfNodes } from './curved-triangles.ts';
 import type { Discretisation, Segment } from './discretisation.ts';
 import { GROWTH } from './discretisation.ts';
 import { Triangulation, nextOf, previousOf } from './triangulation.ts';
 
 /** Label of triangles outside the outermost curve. */
 export const OUTSIDE = -1;
+
+/** Degree of the edge polynomials: on spans of 0.6 rad they equal the arc to rounding. */
+export const CURVE_ORDER = 10;
 
 const UNKNOWN = -9;
 const degrees = Math.PI / 180;
@@ -90,6 +96,74 @@ export class Draft {
       }
       if (done === 0) return;
     }
+  }
+
+  /**
+   * Splits the curved sides of triangles whose map is folded or too uneven (Jacobian ratio below `least`); returns how
+   * many such triangles there were. A triangle whose sides are all fixed must only not be folded.
+   */
+  straighten(least: number): number {
+    const t = this.triangulation;
+    const bad: { sides: number[]; folded: boolean; place: Point }[] = [];
+    for (let i = 0; i < t.triangles; i++) {
+      if (t.region[i] === OUTSIDE) continue;
+      const curves = this.curvesOf(i);
+      if (!curves) continue;
+      const { lower, upper } = boundJacobian(curves, CURVE_ORDER, least);
+      if (lower >= least * upper) continue;
+      const sides = [0, 1, 2].map((j) => t.segment[3 * i + j]).filter((s) => s >= 0 && this.isCurved(s));
+      bad.push({ sides, folded: lower <= 0, place: [t.x[t.start[3 * i]], t.y[t.start[3 * i]]] });
+    }
+    let split = 0;
+    for (const { sides, folded, place } of bad) {
+      const free = sides.filter((s) => this.segments[s] && !this.segments[s].fixed);
+      const stillThere = sides.every((s) => this.segments[s]);
+      if (stillThere && free.length === 0 && folded) throw this.failure('curves meet too sharply', place);
+      for (const s of free) {
+        if (!this.segments[s]) continue;
+        this.split(s);
+        split++;
+      }
+    }
+    return split;
+  }
+
+  private isCurved(segment: number): boolean {
+    return this.arrangement.edges[this.segments[segment]!.edge].piece.kind === 'arc';
+  }
+
+  /** The map of triangle i, null when all its sides are straight. */
+  private curvesOf(i: number): TriangleCurves | null {
+    const { x, y, start, segment } = this.triangulation;
+    const corners = new Float64Array(6);
+    const bulges: [Float64Array | null, Float64Array | null, Float64Array | null] = [null, null, null];
+    let curved = false;
+    for (let j = 0; j < 3; j++) {
+      const v = start[3 * i + j];
+      corners[2 * j] = x[v];
+      corners[2 * j + 1] = y[v];
+      const nodes = segment[3 * i + j] >= 0 ? this.nodesOf(segment[3 * i + j], v) : null;
+      if (!nodes) continue;
+      bulges[j] = bulgeOfNodes(nodes);
+      curved = true;
+    }
+    return curved ? { corners, bulges } : null;
+  }
+
+  /** The Gauss–Lobatto points [x0,y0,…] of a segment's curve from its end `from` on; null for a straight segment. */
+  nodesOf(segment: number, from: number): Float64Array | null {
+    const { a, b, edge, s0, s1 } = this.segments[segment]!;
+    const { piece } = this.arrangement.edges[edge];
+    if (piece.kind === 'line') return null;
+    const { x, y } = this.triangulation;
+    const [first, last, to] = a === from ? [s0, s1, b] : [s1, s0, a];
+    const { nodes } = gaussLobatto(CURVE_ORDER + 1);
+    const points = new Float64Array(2 * (CURVE_ORDER + 1));
+    for (let j = 1; j < CURVE_ORDER; j++)
+      points.set(pointAt(piece, (first * (1 - nodes[j]) + last * (1 + nodes[j])) / 2), 2 * j);
+    points.set([x[from], y[from]]);
+    points.set([x[to], y[to]], 2 * CURVE_ORDER);
+    return points;
   }
 
   /** Moves free vertices toward the size-weighted middle of their stars, never to a worse smallest angle. */

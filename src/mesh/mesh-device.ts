@@ -6,20 +6,19 @@ import type { Arrangement } from '../geometry/arrangement.ts';
 import type { Outline, Point } from '../geometry/curves.ts';
 import { pointAt } from '../geometry/curves.ts';
 import { GeometryError } from '../geometry/geometry-error.ts';
-import { gaussLobatto } from '../numerics/quadrature.ts';
-import { Draft, OUTSIDE } from './delaunay-refinement.ts';
+import { CURVE_ORDER, Draft, OUTSIDE } from './delaunay-refinement.ts';
 import { discretise } from './discretisation.ts';
 import type { Mesh, MeshPlan } from './mesh.ts';
 import { BACKGROUND, LAYER } from './mesh.ts';
 
-/** Degree of the edge polynomials: on spans of 0.6 rad they equal the arc to rounding. */
-const CURVE_ORDER = 10;
-
 /** Points nearer than this share of the end radius are one point. */
 const SNAP = 1e-10;
 
+/** Triangles whose Jacobian varies by more than this factor get smaller curved sides. */
+const LEAST_JACOBIAN_RATIO = 0.2;
+
 /** A mesh that would need more vertices than this is refused. */
-const MOST_VERTICES = 400_000;
+const MOST_VERTICES = 50_000;
 
 /** The mesh of a device, and what had to be changed for it, in words. */
 export interface MeshedDevice {
@@ -57,7 +56,12 @@ export function meshDeviceWithNotes(bodies: readonly Body[], plan: MeshPlan): Me
   draft.refine(28);
   draft.smooth(4);
   draft.refine(28);
-  return { mesh: meshOf(draft, arrangement, plan), notes: arrangement.notes };
+  for (let round = 0; draft.straighten(LEAST_JACOBIAN_RATIO) > 0; round++) {
+    if (round === 20)
+      throw new GeometryError('The curved outlines cannot be meshed: their triangles stay folded.', [], center);
+    draft.refine(28);
+  }
+  return { mesh: meshOf(draft, plan), notes: arrangement.notes };
 }
 
 const circle = (center: Point, radius: number): Outline => [
@@ -93,7 +97,7 @@ function checkInsideRim(arrangement: Arrangement, names: readonly string[]): voi
   }
 }
 
-function meshOf(draft: Draft, arrangement: Arrangement, plan: MeshPlan): Mesh {
+function meshOf(draft: Draft, plan: MeshPlan): Mesh {
   const t = draft.triangulation;
   const number = new Int32Array(t.x.length).fill(-1);
   const vertices: number[] = [];
@@ -120,7 +124,6 @@ function meshOf(draft: Draft, arrangement: Arrangement, plan: MeshPlan): Mesh {
   const triangleEdges: number[] = [];
   const edgeCurve: number[] = [];
   const curves: number[] = [];
-  const nodes = gaussLobatto(CURVE_ORDER + 1).nodes;
   kept.forEach((i, index) => {
     for (let e = 3 * i; e < 3 * i + 3; e++) {
       const o = t.twin[e];
@@ -137,19 +140,9 @@ function meshOf(draft: Draft, arrangement: Arrangement, plan: MeshPlan): Mesh {
       edges.push(number[low], number[high]);
       edgeTriangles.push(index, -1);
       triangleEdges.push(edgeOf[e]);
-      const segment = t.segment[e] >= 0 ? draft.segments[t.segment[e]] : null;
-      const piece = segment ? arrangement.edges[segment.edge].piece : null;
-      if (!segment || !piece || piece.kind === 'line') {
-        edgeCurve.push(-1);
-        continue;
-      }
-      edgeCurve.push(curves.length / (2 * CURVE_ORDER + 2));
-      const [s0, s1] = segment.a === low ? [segment.s0, segment.s1] : [segment.s1, segment.s0];
-      nodes.forEach((node, j) => {
-        if (j === 0) curves.push(t.x[low], t.y[low]);
-        else if (j === CURVE_ORDER) curves.push(t.x[high], t.y[high]);
-        else curves.push(...pointAt(piece, (s0 * (1 - node) + s1 * (1 + node)) / 2));
-      });
+      const nodes = t.segment[e] >= 0 ? draft.nodesOf(t.segment[e], low) : null;
+      edgeCurve.push(nodes ? curves.length / (2 * CURVE_ORDER + 2) : -1);
+      if (nodes) curves.push(...nodes);
     }
   });
   return {
