@@ -171,7 +171,7 @@ export function factorFronts(
     ...summarize(fronts, factors, perturbed),
     solveInto(out: ComplexArray, rhs: ComplexArray, columns: number): ComplexArray {
       if (released) throw new Error('this factorization was released: factor again, or release later');
-      return solveFronts(factors, out, rhs, columns);
+      return solveFronts(factors, plan, kernels, out, rhs, columns);
     },
     release(): void {
       if (!released) spare.give(panels);

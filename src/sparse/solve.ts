@@ -1,13 +1,20 @@
 // How are right-hand sides solved with the factors?
 
 import type { ComplexArray } from '../numerics/complex.ts';
-import type { Factors } from './factorize.ts';
+import type { Factors, MemoryPlan } from './factorize.ts';
+import type { FrontKernels, FrontShape, SubstitutionKernels, SubstitutionTables } from './kernels/kernels.ts';
+import { substitutePlain } from './substitute.ts';
 
 /** A x = b for `columns` right-hand sides, column-major interleaved; `out` may be `rhs`. */
-export function solveFronts(factors: Factors, out: ComplexArray, rhs: ComplexArray, columns: number): ComplexArray {
-  const { fronts, panels, panelStarts, inversePivots: d, pivotOrder } = factors;
-  const { count, pivotStarts, boundaryStarts, boundary, unknownAt } = fronts;
-  const n = unknownAt.length;
+export function solveFronts(
+  factors: Factors,
+  plan: MemoryPlan,
+  kernels: FrontKernels,
+  out: ComplexArray,
+  rhs: ComplexArray,
+  columns: number,
+): ComplexArray {
+  const n = factors.fronts.unknownAt.length;
   if (!Number.isInteger(columns) || columns < 0) {
     throw new RangeError(`columns is ${columns}; expected a whole number ≥ 0`);
   }
@@ -16,108 +23,181 @@ export function solveFronts(factors: Factors, out: ComplexArray, rhs: ComplexArr
       `rhs holds ${rhs.length} and out ${out.length} numbers; expected at least 2 × ${n} unknowns × ${columns} columns`,
     );
   }
-  // x[place], planes
-  const xr = new Float64Array(n);
-  const xi = new Float64Array(n);
-  let largest = 0;
+  if (n === 0 || columns === 0) return out;
+  if (kernels.substitution === undefined) return substitutePlain(factors, out, rhs, columns);
+  return substituteCompiled(factors, plan, kernels, kernels.substitution, out, rhs, columns);
+}
+
+/** Numbers of L that are copied in at a time: they stay in the second-level cache while all columns pass. */
+const CHUNK = 32768;
+/** Right-hand sides that pass together, at most, and the memory they may take in numbers. */
+const GROUP_QUADS = 8;
+const GROUP_NUMBERS = 2 ** 27;
+
+/**
+ * Panels stream through the kernels' memory chunk by chunk, once forward and once backward for each group of
+ * right-hand sides.
+ */
+function substituteCompiled(
+  factors: Factors,
+  plan: MemoryPlan,
+  kernels: FrontKernels,
+  substitution: SubstitutionKernels,
+  out: ComplexArray,
+  rhs: ComplexArray,
+  columns: number,
+): ComplexArray {
+  const { fronts, panels, panelStarts, inversePivots, pivotOrder } = factors;
+  const { count, pivotStarts, boundaryStarts, boundary, unknownAt } = fronts;
+  const n = unknownAt.length;
+  const one = columns === 1;
+  const quadsAtOnce = Math.max(1, Math.min(GROUP_QUADS, Math.ceil(columns / 4), Math.floor(GROUP_NUMBERS / (8 * n))));
+
+  // Memory: tables, inverse pivots, right-hand sides, rows of one front for every quad, a chunk of L.
+  let top = 2 * kernels.base;
+  const integers = (length: number): number => (top += length) - length;
+  const startsAt = integers(count + 1);
+  const edgesAt = integers(count + 1);
+  const orderAt = integers(n);
+  const boundaryAt = integers(boundary.length);
+  let free = (top >> 1) + 2;
+  const numbers = (length: number): number => (free += length) - length;
+  const pivotsAt = numbers(4 * n);
+  const xAt = numbers(one ? 2 * n : 8 * n * quadsAtOnce);
+  const localNumbers = (one ? 2 : 8) * (plan.largestFront + 2);
+  const local = numbers(localNumbers * quadsAtOnce);
+  const chunkAt = numbers(Math.max(CHUNK, 2 * MIN_WIDTH * plan.largestFront) + 64);
+  kernels.reserve(free + 64);
+  const m = kernels.numbers;
+  const ints = kernels.integers;
+  ints.set(pivotStarts, startsAt);
+  for (let f = 0; f <= count; f++) ints[edgesAt + f] = boundaryStarts[f];
   for (let f = 0; f < count; f++) {
-    largest = Math.max(largest, pivotStarts[f + 1] - pivotStarts[f] + boundaryStarts[f + 1] - boundaryStarts[f]);
+    for (let p = pivotStarts[f]; p < pivotStarts[f + 1]; p++) ints[orderAt + p] = pivotStarts[f] + pivotOrder[p];
   }
-  const fr = new Float64Array(largest);
-  const fi = new Float64Array(largest);
-  for (let column = 0; column < columns; column++) {
-    const base = 2 * n * column;
-    for (let place = 0; place < n; place++) {
-      xr[place] = rhs[base + 2 * unknownAt[place]];
-      xi[place] = rhs[base + 2 * unknownAt[place] + 1];
-    }
-    for (let f = 0; f < count; f++) forward(f);
-    for (let f = count - 1; f >= 0; f--) backward(f);
-    for (let place = 0; place < n; place++) {
-      out[base + 2 * unknownAt[place]] = xr[place];
-      out[base + 2 * unknownAt[place] + 1] = xi[place];
-    }
+  ints.set(boundary, boundaryAt);
+  m.set(inversePivots, pivotsAt);
+  const tables: SubstitutionTables = {
+    pivotStarts: startsAt,
+    boundaryStarts: edgesAt,
+    order: orderAt,
+    boundary: boundaryAt,
+    pivots: pivotsAt,
+    local,
+    quadNumbers: 8 * n,
+  };
+  const chunks = cutIntoChunks(panelStarts, count);
+
+  for (let column = 0; column < columns; column += 4 * quadsAtOnce) {
+    const width = Math.min(4 * quadsAtOnce, columns - column);
+    const quads = Math.ceil(width / 4);
+    if (one) for (let p = 0; p < n; p++) copyOne(m, xAt + 2 * p, rhs, 2 * unknownAt[p]);
+    else for (let q = 0; q < quads; q++) readQuad(q, column + 4 * q, Math.min(4, width - 4 * q));
+    for (let c = 0; c + 1 < chunks.length; c++) passForward(chunks[c], chunks[c + 1], quads);
+    for (let c = chunks.length - 2; c >= 0; c--) passBackward(chunks[c], chunks[c + 1], quads);
+    if (one) for (let p = 0; p < n; p++) copyOne(out, 2 * unknownAt[p], m, xAt + 2 * p);
+    else for (let q = 0; q < quads; q++) writeQuad(q, column + 4 * q, Math.min(4, width - 4 * q));
   }
   return out;
 
-  function forward(f: number): void {
-    const first = pivotStarts[f];
-    const np = pivotStarts[f + 1] - first;
-    const from = boundaryStarts[f];
-    const nf = np + boundaryStarts[f + 1] - from;
-    const pi = nf * np;
-    for (let j = 0; j < np; j++) {
-      fr[j] = xr[first + pivotOrder[first + j]];
-      fi[j] = xi[first + pivotOrder[first + j]];
-    }
-    fr.fill(0, np, nf);
-    fi.fill(0, np, nf);
-    let at = panelStarts[f];
-    for (let j = 0; j < np; j++, at += nf) {
-      const br = fr[j];
-      const bi = fi[j];
-      if (br === 0 && bi === 0) continue;
-      for (let i = j + 1; i < nf; i++) {
-        const lr = panels[at + i];
-        const li = panels[at + i + pi];
-        fr[i] -= lr * br - li * bi;
-        fi[i] -= lr * bi + li * br;
-      }
-    }
-    for (let i = np; i < nf; i++) {
-      xr[boundary[from + i - np]] += fr[i];
-      xi[boundary[from + i - np]] += fi[i];
-    }
-    // Pivot values stay in pivot order from here on, already divided by D.
-    for (let j = 0; j < np; j++) {
-      const q = 4 * (first + j);
-      if (d[q + 2] !== 0 || d[q + 3] !== 0) {
-        const ar = fr[j];
-        const ai = fi[j];
-        const br = fr[j + 1];
-        const bi = fi[j + 1];
-        xr[first + j] = ar * d[q] - ai * d[q + 1] + br * d[q + 2] - bi * d[q + 3];
-        xi[first + j] = ar * d[q + 1] + ai * d[q] + br * d[q + 3] + bi * d[q + 2];
-        xr[first + j + 1] = ar * d[q + 2] - ai * d[q + 3] + br * d[q + 4] - bi * d[q + 5];
-        xi[first + j + 1] = ar * d[q + 3] + ai * d[q + 2] + br * d[q + 5] + bi * d[q + 4];
-        j++;
-      } else {
-        xr[first + j] = fr[j] * d[q] - fi[j] * d[q + 1];
-        xi[first + j] = fr[j] * d[q + 1] + fi[j] * d[q];
+  function readQuad(q: number, column: number, width: number): void {
+    const at = xAt + 8 * n * q;
+    for (let p = 0; p < n; p++) {
+      const u = 2 * unknownAt[p];
+      for (let c = 0; c < 4; c++) {
+        const from = 2 * n * (column + c) + u;
+        m[at + 8 * p + c] = c < width ? rhs[from] : 0;
+        m[at + 8 * p + 4 + c] = c < width ? rhs[from + 1] : 0;
       }
     }
   }
 
-  function backward(f: number): void {
-    const first = pivotStarts[f];
-    const np = pivotStarts[f + 1] - first;
-    const from = boundaryStarts[f];
-    const nf = np + boundaryStarts[f + 1] - from;
-    const pi = nf * np;
-    for (let j = 0; j < np; j++) {
-      fr[j] = xr[first + j];
-      fi[j] = xi[first + j];
-    }
-    for (let i = np; i < nf; i++) {
-      fr[i] = xr[boundary[from + i - np]];
-      fi[i] = xi[boundary[from + i - np]];
-    }
-    for (let j = np - 1; j >= 0; j--) {
-      const at = panelStarts[f] + j * nf;
-      let sr = fr[j];
-      let si = fi[j];
-      for (let i = j + 1; i < nf; i++) {
-        const lr = panels[at + i];
-        const li = panels[at + i + pi];
-        sr -= lr * fr[i] - li * fi[i];
-        si -= lr * fi[i] + li * fr[i];
+  function writeQuad(q: number, column: number, width: number): void {
+    const at = xAt + 8 * n * q;
+    for (let p = 0; p < n; p++) {
+      const u = 2 * unknownAt[p];
+      for (let c = 0; c < width; c++) {
+        const to = 2 * n * (column + c) + u;
+        out[to] = m[at + 8 * p + c];
+        out[to + 1] = m[at + 8 * p + 4 + c];
       }
-      fr[j] = sr;
-      fi[j] = si;
-    }
-    for (let j = 0; j < np; j++) {
-      xr[first + pivotOrder[first + j]] = fr[j];
-      xi[first + pivotOrder[first + j]] = fi[j];
     }
   }
+
+  function passForward(first: number, last: number, quads: number): void {
+    const length = panelStarts[last] - panelStarts[first];
+    if (length <= CHUNK) {
+      m.set(panels.subarray(panelStarts[first], panelStarts[last]), chunkAt);
+      if (one) substitution.forwardOne(first, last, chunkAt, tables, xAt);
+      else substitution.forwardQuads(first, last, chunkAt, tables, xAt, quads);
+      return;
+    }
+    const shape = shapeOf(first);
+    for (let q = 0; q < quads; q++)
+      substitution.gatherForward(!one, tables, xAt + 8 * n * q, shape, local + localNumbers * q);
+    eachColumns(first, shape, false, quads);
+    for (let q = 0; q < quads; q++)
+      substitution.scatterForward(!one, tables, xAt + 8 * n * q, shape, local + localNumbers * q);
+  }
+
+  function passBackward(first: number, last: number, quads: number): void {
+    const length = panelStarts[last] - panelStarts[first];
+    if (length <= CHUNK) {
+      m.set(panels.subarray(panelStarts[first], panelStarts[last]), chunkAt);
+      if (one) substitution.backwardOne(first, last, chunkAt + length, tables, xAt);
+      else substitution.backwardQuads(first, last, chunkAt + length, tables, xAt, quads);
+      return;
+    }
+    const shape = shapeOf(first);
+    for (let q = 0; q < quads; q++)
+      substitution.gatherBackward(!one, tables, xAt + 8 * n * q, shape, local + localNumbers * q);
+    eachColumns(first, shape, true, quads);
+    for (let q = 0; q < quads; q++)
+      substitution.scatterBackward(!one, tables, xAt + 8 * n * q, shape, local + localNumbers * q);
+  }
+
+  /** A front too large for one chunk, a few columns at a time. */
+  function eachColumns(f: number, { np, nb }: FrontShape, backward: boolean, quads: number): void {
+    const nf = np + nb;
+    const width = Math.max(MIN_WIDTH, 2 * Math.floor(CHUNK / (4 * nf)));
+    const pieces = Math.ceil(np / width);
+    for (let piece = 0; piece < pieces; piece++) {
+      const first = width * (backward ? pieces - 1 - piece : piece);
+      const last = Math.min(np, first + width);
+      const plane = (last - first) * nf;
+      const from = panelStarts[f] + first * nf;
+      m.set(panels.subarray(from, from + plane), chunkAt);
+      m.set(panels.subarray(from + nf * np, from + nf * np + plane), chunkAt + plane);
+      for (let q = 0; q < quads; q++) {
+        const rows = local + localNumbers * q;
+        if (backward) substitution.backwardColumns(!one, chunkAt, plane, nf, first, last, rows);
+        else substitution.forwardColumns(!one, chunkAt, plane, nf, first, last, rows);
+      }
+    }
+  }
+
+  function shapeOf(f: number): FrontShape {
+    const place = pivotStarts[f];
+    const edge = boundaryStarts[f];
+    return { place, np: pivotStarts[f + 1] - place, edge, nb: boundaryStarts[f + 1] - edge };
+  }
+}
+
+/** A front too large for a chunk passes at least this many columns at a time. */
+const MIN_WIDTH = 8;
+
+function copyOne(to: Float64Array, t: number, from: Float64Array, f: number): void {
+  to[t] = from[f];
+  to[t + 1] = from[f + 1];
+}
+
+/** Runs of fronts whose panels fit in a chunk together; one that does not fit stands alone. */
+function cutIntoChunks(panelStarts: Float64Array, count: number): number[] {
+  const chunks = [0];
+  for (let f = 0; f < count; f++) {
+    const first = chunks[chunks.length - 1];
+    if (f > first && panelStarts[f + 1] - panelStarts[first] > CHUNK) chunks.push(f);
+  }
+  if (count > 0) chunks.push(count);
+  return chunks;
 }

@@ -16,6 +16,8 @@
  */
 export interface FrontKernels {
   readonly kind: 'typescript' | 'wasm';
+  /** Absent in the twin, which solves on the stored panels. */
+  readonly substitution?: SubstitutionKernels;
   readonly numbers: Float64Array;
   /** First position that callers may use. */
   readonly base: number;
@@ -45,6 +47,55 @@ export interface FrontKernels {
   ): number;
   /** Lower triangle of S, column by column: nb(nb+1)/2 real parts, then the imaginary ones. `to` may be ≤ s and overlap. */
   packContribution(s: number, nb: number, to: number): void;
+}
+
+/**
+ * Substitution on panels that were copied into the memory. Positions as in FrontKernels; `order`, `boundary` and the two
+ * tables of starts index `integers`. A quad is four right-hand sides: 8 numbers a place, 4 real parts then 4 imaginary.
+ * `local` has room for the rows of a front. Columns of one front can be passed in parts (gather, columns…, scatter).
+ */
+export interface SubstitutionKernels {
+  /** Fronts first..last, panels one after the other from l. */
+  forwardQuads(first: number, last: number, l: number, tables: SubstitutionTables, x: number, quads: number): void;
+  /** The same fronts backwards; l points behind the last panel. */
+  backwardQuads(first: number, last: number, l: number, tables: SubstitutionTables, x: number, quads: number): void;
+  forwardOne(first: number, last: number, l: number, tables: SubstitutionTables, x: number): void;
+  backwardOne(first: number, last: number, l: number, tables: SubstitutionTables, x: number): void;
+  /** Columns first..last of one front whose rows stand in `local`; column `first` is at l, its imaginary part at l + plane. */
+  forwardColumns(quad: boolean, l: number, plane: number, nf: number, first: number, last: number, local: number): void;
+  backwardColumns(
+    quad: boolean,
+    l: number,
+    plane: number,
+    nf: number,
+    first: number,
+    last: number,
+    local: number,
+  ): void;
+  /** Rows of a front from x to `local` and back; np pivots from `place` on, nb boundary rows listed from `edge` on. */
+  gatherForward(quad: boolean, tables: SubstitutionTables, x: number, f: FrontShape, local: number): void;
+  scatterForward(quad: boolean, tables: SubstitutionTables, x: number, f: FrontShape, local: number): void;
+  gatherBackward(quad: boolean, tables: SubstitutionTables, x: number, f: FrontShape, local: number): void;
+  scatterBackward(quad: boolean, tables: SubstitutionTables, x: number, f: FrontShape, local: number): void;
+}
+
+/** Positions of what describes the fronts; quadNumbers: numbers between two quads of x. */
+export interface SubstitutionTables {
+  readonly pivotStarts: number;
+  readonly boundaryStarts: number;
+  readonly order: number;
+  readonly boundary: number;
+  readonly pivots: number;
+  readonly local: number;
+  readonly quadNumbers: number;
+}
+
+export interface FrontShape {
+  readonly place: number;
+  readonly np: number;
+  readonly nb: number;
+  /** Start of its boundary in the list of boundaries. */
+  readonly edge: number;
 }
 
 /** Numbers of work space that factorFront wants for fronts up to this size. */

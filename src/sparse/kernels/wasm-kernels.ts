@@ -1,10 +1,26 @@
 // How are the compiled kernels loaded?
 
 import { readFileSync } from 'node:fs';
-import type { FrontKernels } from './kernels.ts';
+import type { FrontKernels, SubstitutionKernels } from './kernels.ts';
 
 /** What front.wasm exports; pointers in bytes. */
 interface FrontExports {
+  forwardQuads(...numbers: number[]): void;
+  backwardQuads(...numbers: number[]): void;
+  forwardOne(...numbers: number[]): void;
+  backwardOne(...numbers: number[]): void;
+  forwardColumns(l: number, plane: number, nf: number, first: number, last: number, local: number): void;
+  forwardColumnsOne(l: number, plane: number, nf: number, first: number, last: number, local: number): void;
+  backwardColumns(l: number, plane: number, nf: number, first: number, last: number, local: number): void;
+  backwardColumnsOne(l: number, plane: number, nf: number, first: number, last: number, local: number): void;
+  gatherForward(x: number, rows: number, np: number, nb: number, local: number): void;
+  gatherForwardOne(x: number, rows: number, np: number, nb: number, local: number): void;
+  scatterForward(x: number, place: number, edge: number, np: number, nb: number, local: number, d: number): void;
+  scatterForwardOne(x: number, place: number, edge: number, np: number, nb: number, local: number, d: number): void;
+  gatherBackward(x: number, place: number, edge: number, np: number, nb: number, local: number): void;
+  gatherBackwardOne(x: number, place: number, edge: number, np: number, nb: number, local: number): void;
+  scatterBackward(x: number, rows: number, np: number, local: number): void;
+  scatterBackwardOne(x: number, rows: number, np: number, nf: number, local: number): void;
   clear(p: number, s: number, nf: number, np: number): void;
   addElement(p: number, s: number, nf: number, np: number, element: number, nd: number, map: number): void;
   addContribution(p: number, s: number, nf: number, np: number, from: number, n: number, map: number): void;
@@ -68,6 +84,47 @@ function bindKernels(module: WebAssembly.Module, memory: WebAssembly.Memory): Fr
     factorFront: (p, s, nf, np, d, perm, work, tiny) =>
       wasm.factorFront(8 * p, 8 * s, nf, np, 8 * d, 4 * perm, 8 * work, tiny),
     packContribution: (s, nb, to) => wasm.packContribution(8 * s, nb, 8 * to),
+    substitution: bindSubstitution(wasm),
+  };
+}
+
+function bindSubstitution(wasm: FrontExports): SubstitutionKernels {
+  return {
+    forwardQuads: (first, last, l, t, x, quads) =>
+      wasm.forwardQuads(
+        first, last, 8 * l, 4 * t.pivotStarts, 4 * t.boundaryStarts, 4 * t.order, 4 * t.boundary, 8 * t.pivots,
+        8 * x, 8 * t.quadNumbers, quads, 8 * t.local,
+      ), // prettier-ignore
+    backwardQuads: (first, last, l, t, x, quads) =>
+      wasm.backwardQuads(
+        first, last, 8 * l, 4 * t.pivotStarts, 4 * t.boundaryStarts, 4 * t.order, 4 * t.boundary,
+        8 * x, 8 * t.quadNumbers, quads, 8 * t.local,
+      ), // prettier-ignore
+    forwardOne: (first, last, l, t, x) =>
+      wasm.forwardOne(
+        first, last, 8 * l, 4 * t.pivotStarts, 4 * t.boundaryStarts, 4 * t.order, 4 * t.boundary, 8 * t.pivots,
+        8 * x, 8 * t.local,
+      ), // prettier-ignore
+    backwardOne: (first, last, l, t, x) =>
+      wasm.backwardOne(
+        first, last, 8 * l, 4 * t.pivotStarts, 4 * t.boundaryStarts, 4 * t.order, 4 * t.boundary, 8 * x, 8 * t.local,
+      ), // prettier-ignore
+    forwardColumns: (quad, l, plane, nf, first, last, local) =>
+      (quad ? wasm.forwardColumns : wasm.forwardColumnsOne)(8 * l, 8 * plane, nf, first, last, 8 * local),
+    backwardColumns: (quad, l, plane, nf, first, last, local) =>
+      (quad ? wasm.backwardColumns : wasm.backwardColumnsOne)(8 * l, 8 * plane, nf, first, last, 8 * local),
+    gatherForward: (quad, t, x, { place, np, nb }, local) =>
+      (quad ? wasm.gatherForward : wasm.gatherForwardOne)(8 * x, 4 * (t.order + place), np, nb, 8 * local),
+    scatterForward: (quad, t, x, { place, np, nb, edge }, local) =>
+      (quad ? wasm.scatterForward : wasm.scatterForwardOne)(
+        8 * x, place, 4 * (t.boundary + edge), np, nb, 8 * local, 8 * (t.pivots + 4 * place),
+      ), // prettier-ignore
+    gatherBackward: (quad, t, x, { place, np, nb, edge }, local) =>
+      (quad ? wasm.gatherBackward : wasm.gatherBackwardOne)(8 * x, place, 4 * (t.boundary + edge), np, nb, 8 * local),
+    scatterBackward: (quad, t, x, { place, np, nb }, local) =>
+      quad
+        ? wasm.scatterBackward(8 * x, 4 * (t.order + place), np, 8 * local)
+        : wasm.scatterBackwardOne(8 * x, 4 * (t.order + place), np, np + nb, 8 * local),
   };
 }
 

@@ -416,3 +416,6 @@ export function updateColumns(
 
 /** 4 × 4 complex scratch tile at the start of the memory. */
 const TILE: usize = 64;
+
+export * from './solve';
+export * from './solve-one';
