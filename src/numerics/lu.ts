@@ -182,7 +182,9 @@ export function checkMatrix(who: string, A: ComplexArray, rows: number, columns:
 function checkRightHandSide(out: ComplexArray, rhs: ComplexArray, n: number, columns: number): void {
   const length = 2 * n * columns;
   if (rhs.length < length || out.length < length)
-    throw new RangeError(`luSolve: ${rhs.length} in, ${out.length} out for ${columns} columns of ${n}; expected ${length}`);
+    throw new RangeError(
+      `luSolve: ${rhs.length} in, ${out.length} out for ${columns} columns of ${n}; expected ${length}`,
+    );
 }
 
 function columnNorm(a: ComplexArray, n: number): number {

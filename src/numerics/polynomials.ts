@@ -126,7 +126,8 @@ export function lagrangeBasis(nodes: Float64Array): LagrangeBasis {
   for (let j = 0; j < n; j++) {
     let product = 1;
     for (let k = 0; k < n; k++) if (k !== j) product *= nodes[j] - nodes[k];
-    if (product === 0) throw new RangeError(`lagrangeBasis: node ${j} (${nodes[j]}) comes twice; nodes must be distinct`);
+    if (product === 0)
+      throw new RangeError(`lagrangeBasis: node ${j} (${nodes[j]}) comes twice; nodes must be distinct`);
     weights[j] = 1 / product;
   }
   const differentiation = new Float64Array(n * n);
@@ -167,7 +168,11 @@ export function lagrangeInto(values: Float64Array, basis: LagrangeBasis, x: numb
  * Slopes ℓ_j′(x) into `slopes`: ℓ_j′ has a lower degree than the basis, so it is its own interpolant,
  * ℓ_j′(x) = Σ_i D_ij ℓ_i(x); no cancellation near nodes. `values` are those of `lagrangeInto` at the same x.
  */
-export function lagrangeDerivativesInto(slopes: Float64Array, values: Float64Array, basis: LagrangeBasis): Float64Array {
+export function lagrangeDerivativesInto(
+  slopes: Float64Array,
+  values: Float64Array,
+  basis: LagrangeBasis,
+): Float64Array {
   const n = basis.nodes.length;
   const d = basis.differentiation;
   for (let j = 0; j < n; j++) {

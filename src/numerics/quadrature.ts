@@ -1,5 +1,6 @@
 // At which points, with which weights, is a polynomial integrated exactly?
 
+import { diagonaliseTridiagonal } from './hermitian.ts';
 import { jacobiDerivativesInto, jacobiInto, legendreInto } from './polynomials.ts';
 
 /** Nodes in increasing order and their weights: ∫ f ≈ Σ weights[i] f(nodes[i]). */
@@ -149,30 +150,30 @@ function checkCount(who: string, n: number, least: number): void {
 }
 
 /**
- * Zeros of P_n^{(a,b)}, increasing: Newton with the zeros already found divided out, then without.
- * Source of the scheme: G. E. Karniadakis, S. J. Sherwin, Spectral/hp Element Methods, 2nd ed. (2005), appendix B.
+ * Zeros of P_n^{(a,b)}, increasing: eigenvalues of the recurrence's symmetric matrix, then two Newton steps.
+ * Source: G. H. Golub, J. H. Welsch, Math. Comp. 23, 221 (1969).
  */
 function jacobiZeros(n: number, a: number, b: number): Float64Array {
   const zeros = new Float64Array(n);
+  const couplings = new Float64Array(n);
+  for (let j = 0; j < n; j++) {
+    const s = 2 * j + a + b;
+    // j = 0, and j = 1 below, with the factor a + b (+ 1) that cancels taken out.
+    zeros[j] = j === 0 ? (b - a) / (a + b + 2) : ((b - a) * (b + a)) / (s * (s + 2));
+    const t = s + 2;
+    const common = (4 * (j + 1) * (j + 1 + a) * (j + 1 + b)) / (t * t * (t + 1));
+    couplings[j] = Math.sqrt(j === 0 ? common : (common * (j + 1 + a + b)) / (t - 1));
+  }
+  diagonaliseTridiagonal(zeros, couplings, new Float64Array(0), 0);
+  zeros.sort();
   const values = new Float64Array(n + 1);
   const slopes = new Float64Array(n + 1);
-  for (let k = 0; k < n; k++) {
-    let x = -Math.cos((Math.PI * (2 * k + 1)) / (2 * n));
-    if (k > 0) x = (x + zeros[k - 1]) / 2;
-    for (let turn = 0; turn < 200; turn++) {
-      let found = 0;
-      for (let i = 0; i < k; i++) found += 1 / (x - zeros[i]);
-      const p = jacobiInto(values, n, a, b, x)[n];
-      const step = p / (jacobiDerivativesInto(slopes, n, a, b, x)[n] - p * found);
-      x -= step;
-      if (Math.abs(step) < 1e-13) break;
-    }
-    for (let turn = 0; turn < 2; turn++) {
+  return zeros.map((start) => {
+    let x = start;
+    for (let turn = 0; turn < 2; turn++)
       x -= jacobiInto(values, n, a, b, x)[n] / jacobiDerivativesInto(slopes, n, a, b, x)[n];
-    }
-    zeros[k] = x;
-  }
-  return zeros;
+    return x;
+  });
 }
 
 /** Euler's beta function; a product where one argument is a whole number, else by `logGamma`. */
