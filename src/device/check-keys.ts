@@ -1,7 +1,7 @@
 // Does a read file have the keys and kinds of values of a device file?
 
 import type { z } from 'zod';
-import { DeviceError, formatPath, listNames, nearestName, showValue } from './findings.ts';
+import { DeviceError, MOST_FINDINGS, formatPath, listNames, nearestName, showValue } from './findings.ts';
 import type { Finding, Path } from './findings.ts';
 import { deviceJsonSchema, deviceSchema } from './schema.ts';
 import type { DeviceInput } from './schema.ts';
@@ -15,16 +15,42 @@ export function checkKeys(source: Source): DeviceInput {
   const result = deviceSchema.safeParse(source.value);
   if (result.success) return result.data;
   const root = deviceJsonSchema();
-  const findings = result.error.issues.flatMap((issue) => findingsOf(source, root, issue, []));
-  throw new DeviceError(findings.sort((a, b) => a.line - b.line || a.column - b.column));
+  const findings: Finding[] = [];
+  // Unknown keys first: a key that is missing because it is misspelt is told once, as misspelt.
+  const issues = result.error.issues.toSorted((a, b) => rank(a) - rank(b));
+  for (const issue of issues) {
+    if (findings.length >= MOST_FINDINGS) break;
+    for (const finding of findingsOf(source, root, issue, []))
+      if (!isMisspelt(finding, findings)) findings.push(finding);
+  }
+  findings.sort((a, b) => a.line - b.line || a.column - b.column);
+  throw new DeviceError(findings.slice(0, MOST_FINDINGS));
+}
+
+const rank = (issue: Issue): number => (issue.code === 'unrecognized_keys' ? 0 : 1);
+
+function isMisspelt(missing: Finding, findings: readonly Finding[]): boolean {
+  const key = /^no key "(.*)"$/.exec(missing.came)?.[1];
+  if (key === undefined) return false;
+  const holder = (path: string): string => path.slice(0, Math.max(0, path.lastIndexOf('.')));
+  return findings.some(
+    ({ path, mend }) => mend === `write ${JSON.stringify(key)} instead` && holder(path) === holder(missing.path),
+  );
 }
 
 function findingsOf(source: Source, root: JsonSchema, issue: Issue, above: Path): Finding[] {
   const path = [...above, ...(issue.path as (string | number)[])];
-  if (issue.code === 'unrecognized_keys') return issue.keys.map((key) => unknownKey(source, root, path, key));
+  if (issue.code === 'unrecognized_keys')
+    return issue.keys.slice(0, MOST_FINDINGS).map((key) => unknownKey(source, root, path, key));
   if (issue.code === 'invalid_union') {
     const nested = nearestOption(issue);
-    if (nested !== undefined) return nested.flatMap((inner) => findingsOf(source, root, inner, path));
+    if (nested !== undefined)
+      return nested
+        .toSorted((a, b) => rank(a) - rank(b))
+        .reduce<Finding[]>(
+          (all, inner) => [...all, ...findingsOf(source, root, inner, path).filter((one) => !isMisspelt(one, all))],
+          [],
+        );
   }
   if (issue.code === 'invalid_key') return [badName(source, path)];
   const value = valueAt(source.value, path);
@@ -40,7 +66,7 @@ function findingsOf(source: Source, root: JsonSchema, issue: Issue, above: Path)
     return [
       {
         ...where('value'),
-        came: missing ? `no ${typeof path.at(-1) === 'number' ? 'value' : `key "${key}"`}` : 'nothing (an empty value)',
+        came: missing ? `no key "${key}"` : 'nothing (an empty value)',
         expected: describe === '' ? expectation(issue, value) : `${expectation(issue, value)}: ${describe}`,
         mend: missing ? `add the key "${key}"${exampleOf(issue)}` : `give "${key}" a value${exampleOf(issue)}`,
       },
@@ -126,8 +152,21 @@ const KINDS: Readonly<Record<string, string>> = {
 };
 
 function exampleOf(issue: Issue): string {
-  return issue.code === 'invalid_value' ? `, for example ${String(issue.values[0])}` : '';
+  if (issue.code === 'invalid_value') return `, for example ${String(issue.values[0])}`;
+  const example = EXAMPLES[String(issue.path.at(-1))];
+  return example === undefined ? '' : `, for example ${example}`;
 }
+
+const EXAMPLES: Readonly<Record<string, string>> = {
+  band: 'band: { wavenumber: [1, 2] }',
+  bodies: 'bodies: [ { material: glass, disk: { center: [0, 0], radius: 1 } } ]',
+  center: 'center: [0, 0]',
+  material: 'material: glass',
+  pitch: 'pitch: [1, 1]',
+  points: 'points: [[0, 0], [1, 0], [0, 1]]',
+  radius: 'radius: 1',
+  seed: 'seed: 1',
+};
 
 function mendOf(issue: Issue, value: unknown): string {
   if (issue.code === 'invalid_value') {
@@ -137,7 +176,7 @@ function mendOf(issue: Issue, value: unknown): string {
   if (issue.code === 'too_small') return 'add what is missing';
   if (issue.code === 'too_big') return 'remove what is too much';
   if (issue.code === 'invalid_format') return 'rename it';
-  if (typeof value === 'number') return 'give a finite number of the kind expected';
+  if (typeof value === 'number' && !Number.isFinite(value)) return 'give a finite number';
   return 'replace the value by the kind expected';
 }
 

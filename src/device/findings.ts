@@ -16,19 +16,17 @@ export interface Finding {
   readonly mend: string;
 }
 
-/** More findings than this are not listed: the first ones usually cause the rest. */
-const MOST_FINDINGS = 20;
+/** More findings than this are not looked for: the first ones usually cause the rest. */
+export const MOST_FINDINGS = 20;
 
 /** A device file that cannot be used. The message gives four lines a finding: where, what came, what was expected, what to do. */
 export class DeviceError extends Error {
   readonly findings: readonly Finding[];
 
   constructor(findings: readonly Finding[]) {
-    const listed = findings.slice(0, MOST_FINDINGS);
-    const more = findings.length - listed.length;
-    super(listed.map(formatFinding).join('\n') + (more > 0 ? `\n… and ${more} more` : ''));
+    super(findings.map(formatFinding).join('\n'));
     this.name = 'DeviceError';
-    this.findings = listed;
+    this.findings = findings;
   }
 }
 

@@ -9,6 +9,9 @@ import { aboveZero, numberReader, reportExpression, unknownKnob } from './number
 import type { Log } from './numbers.ts';
 import type { KnobInput } from './schema.ts';
 
+/** Bounds the depth of knobs that depend on each other. */
+const MOST_KNOBS = 1000;
+
 /**
  * Knobs in file order, with expressions worked out whatever their order. `chosen` replaces values by name, and what
  * depends on them follows.
@@ -19,6 +22,10 @@ export function settleKnobs(
   log: Log,
 ): { readonly knobs: readonly Knob[]; readonly values: ReadonlyMap<string, number> } {
   const names = Object.keys(input);
+  if (names.length > MOST_KNOBS) {
+    log.report(['knobs'], `${names.length} knobs`, `at most ${MOST_KNOBS}`, 'use an array or a polygon', 'key');
+    log.throwIfAny();
+  }
   checkChosen(names, chosen, log);
   const values = settleValues(input, chosen, log);
   const numbers = numberReader(log, values);

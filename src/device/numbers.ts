@@ -1,7 +1,7 @@
 // Which number does a value of the file stand for, and is it one that can be used?
 
 import { ExpressionError, evaluateExpression, namesIn, parseExpression } from './expression.ts';
-import { DeviceError, formatPath, nearestName, showNumber, showValue } from './findings.ts';
+import { DeviceError, MOST_FINDINGS, formatPath, nearestName, showNumber, showValue } from './findings.ts';
 import type { Finding, Path } from './findings.ts';
 import type { Source } from './source.ts';
 
@@ -48,6 +48,7 @@ export function openLog(source: Source): Log {
     findings,
     report(path, came, expected, mend, part = 'value') {
       findings.push({ file: source.file, ...source.placeOf(path, part), path: formatPath(path), came, expected, mend });
+      if (findings.length >= MOST_FINDINGS) throw new DeviceError(findings);
     },
     throwIfAny() {
       if (findings.length > 0) throw new DeviceError(findings);

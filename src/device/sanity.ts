@@ -4,6 +4,7 @@ import { boundingCircle } from '../geometry/bounding-circle.ts';
 import type { Circle } from '../geometry/bounding-circle.ts';
 import { containsPoint } from '../geometry/inside.ts';
 import { pointAt } from '../geometry/curves.ts';
+import { thinPlaces } from '../geometry/thin-places.ts';
 import { divide, modulus, multiply, squareRoot } from '../numerics/complex.ts';
 import type { Complex } from '../numerics/complex.ts';
 import type { PlacedBody } from './bodies.ts';
@@ -17,13 +18,17 @@ import { deviceSize } from './size.ts';
 const MOST_WAVELENGTHS_ACROSS = 2000;
 /** Smaller devices are slips of the length unit: nothing resonates there. */
 const FEWEST_WAVELENGTHS_ACROSS = 1e-5;
-/** Bodies smaller than this part of the device cannot be meshed together with it. */
+/** Bodies, gaps and walls smaller than this part of the device cannot be meshed together with it. */
 const SMALLEST_PART = 1e-6;
+/** Boundaries nearer than this part of the device touch: sums of rounded numbers agree that well. */
+const TOUCHING = 1e-11;
 
 /** Refuses, with the figure, what would fail after long work. `placed` gives the file entry of each body. */
 export function checkSanity(device: Device, placed: readonly PlacedBody[], log: Log): void {
   checkSize(device, placed, log);
-  if (log.findings.length === 0) checkFlatResonance(device, placed, log);
+  if (log.findings.length > 0) return;
+  checkThinPlaces(device, placed, log);
+  checkFlatResonance(device, placed, log);
 }
 
 function checkSize(device: Device, placed: readonly PlacedBody[], log: Log): void {
@@ -70,6 +75,30 @@ function checkParts(circles: readonly Circle[], whole: Circle, placed: readonly 
     );
 }
 
+/** One finding for each pair of entries. */
+function checkThinPlaces(device: Device, placed: readonly PlacedBody[], log: Log): void {
+  const shapes = device.bodies.map((body) => body.shape);
+  const { radius } = boundingCircle(shapes);
+  const unit = device.lengthUnit === 'none' ? '' : ` ${device.lengthUnit}`;
+  const seen = new Set<string>();
+  for (const { first, second, width, place } of thinPlaces(shapes, TOUCHING * radius, SMALLEST_PART * radius)) {
+    const [a, b] = [placed[first]!, placed[second]!];
+    const pair = `${a.body.group} ${b.body.group}`;
+    if (seen.has(pair)) continue;
+    seen.add(pair);
+    // A coordinate that is zero but for rounding is shown as zero.
+    const where = `at [${place.map((v) => showNumber(Math.abs(v) < 1e-12 * radius ? 0 : v)).join(', ')}]`;
+    log.report(
+      b.path,
+      first === second
+        ? `${b.body.name} only ${showNumber(width)}${unit} thick ${where}`
+        : `a place ${showNumber(width)}${unit} wide between the boundaries of ${a.body.name} and ${b.body.name} ${where}`,
+      `at least ${showNumber(SMALLEST_PART * radius)}${unit}, or 0 (touching): thinner ones cannot be meshed in this device`,
+      first === second ? 'make it thicker, or remove it' : 'let them touch exactly, or move them apart',
+    );
+  }
+}
+
 /** Refractive index √(εμ). */
 const indexOf = (body: Body): Complex => squareRoot(multiply(body.permittivity, body.permeability));
 
@@ -89,12 +118,13 @@ function checkFlatResonance(device: Device, placed: readonly PlacedBody[], log: 
   const quantity = device.polarization === 'Hz' ? 'permittivity' : 'permeability';
   const valueOf = (body: Body): Complex => body[quantity];
   const outside: Complex = { re: device.background[quantity], im: 0 };
-  if (!device.bodies.some((body) => valueOf(body).re < 0)) return;
+  const kinds = new Map([outside, ...device.bodies.map(valueOf)].map((value) => [`${value.re} ${value.im}`, value]));
+  if (![...kinds.values()].some((a) => [...kinds.values()].some((b) => isOpposite(a, b)))) return;
   const reported = new Set<string>();
   const refuse = (i: number, value: Complex, other: Complex, neighbour: string): void => {
     const { body, path } = placed[i]!;
-    if (reported.has(body.group)) return;
-    reported.add(body.group);
+    if (reported.has(body.material)) return;
+    reported.add(body.material);
     log.report(
       [...path, 'material'],
       `${body.material} with ${quantity} ${show(value)} against ${neighbour} with ${show(other)}: their ratio is -1`,

@@ -24,6 +24,8 @@ const MOST_CHARACTERS = 16e6;
 /** Values in the file once aliases are written out: more is an accident or an attack. */
 const MOST_VALUES = 2e6;
 const DEEPEST = 40;
+const DEEPEST_BRACKETS = 200;
+const DEEPEST_COLUMN = 200;
 
 /**
  * Reads YAML 1.2 (of which JSON is a part): one document, text keys without duplicates, aliases written out.
@@ -70,7 +72,13 @@ type Targets = WeakMap<Alias, ParsedNode>;
 function parseText(text: string, fail: Fail): Document.Parsed {
   const deep = tooDeep(text);
   if (deep >= 0)
-    fail(deep, [], `brackets nested deeper than ${DEEPEST}`, 'a flat list of bodies', 'close the brackets before');
+    fail(
+      deep,
+      [],
+      'brackets or indentation nested deeper than 200',
+      'at most 8 levels in a device file',
+      'close the brackets, or indent less',
+    );
   try {
     // Duplicate keys are found by plainValue in linear time; the library compares each key with all others.
     return parseDocument(text, { prettyErrors: false, uniqueKeys: false, resolveKnownTags: false });
@@ -80,14 +88,33 @@ function parseText(text: string, fail: Fail): Document.Parsed {
   }
 }
 
-/** Offset where brackets nest deeper than any device does (quotes and comments disregarded), or -1. Keeps the parser's stack and time bounded. */
+/**
+ * Offset where the text nests deeper than any device file, or -1 (quotes and comments disregarded). The parser recurses: without
+ * this bound a hostile text exhausts the stack, which Node does not always survive. Levels of brackets are counted; levels of
+ * indentation are at most twice the column where the line's content begins, past leading "- ", "? " and ": ".
+ */
 function tooDeep(text: string): number {
   let depth = 0;
+  let column = 0;
+  let atStart = true;
   for (let i = 0; i < text.length; i++) {
-    const c = text.charCodeAt(i);
-    if (c === 0x5b || c === 0x7b) {
-      if (++depth > 25 * DEEPEST) return i;
-    } else if ((c === 0x5d || c === 0x7d) && depth > 0) depth--;
+    const c = text[i]!;
+    if (c === '\n') {
+      column = 0;
+      atStart = true;
+      continue;
+    }
+    if (atStart) {
+      const next = text[i + 1] ?? '\n';
+      const indicator = '-?:'.includes(c) && ' \t\n\r'.includes(next);
+      if (c !== ' ' && c !== '\t' && !indicator) atStart = false;
+      else if (indicator && column > DEEPEST_COLUMN) return i;
+      else if (c !== '\t') column++;
+      if (!atStart && column > DEEPEST_COLUMN && c !== '#') return i;
+    }
+    if (c === '[' || c === '{') {
+      if (++depth > DEEPEST_BRACKETS) return i;
+    } else if ((c === ']' || c === '}') && depth > 0) depth--;
   }
   return -1;
 }
