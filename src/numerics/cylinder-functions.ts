@@ -87,7 +87,7 @@ export const besselRatios = (M: number, z: Complex, reference: Complex): Complex
  * In the upper half plane H⁽¹⁾ decays and J ≈ H⁽²⁾/2 grows, so each sequence is built where it is stable:
  * J downward (Miller), normalised by e^{−iz} = J_0 + 2 Σ (−i)^m J_m whose terms do not cancel there;
  * H⁽¹⁾ upward from H⁽¹⁾_0 and H⁽¹⁾_1; H⁽²⁾ = 2J − H⁽¹⁾. The lower half plane follows by conjugation.
- * Source: W. Gautschi, SIAM Review 9, 24 (1967) for Miller's recurrence; DLMF 10.12.1, 10.6.1, 10.4.3.
+ * Source: W. Gautschi, SIAM Review 9, 24 (1967) for Miller's recurrence; DLMF 10.12.1, 10.6.1, 10.4.4.
  */
 export function scaledCylinderFunctions(M: number, z: Complex): ScaledCylinderFunctions {
   checkOrderAndArgument(M, z);

@@ -13,8 +13,8 @@ export interface HermitianPairs {
 
 /**
  * Eigenpairs of the Hermitian n × n matrix A (column-major interleaved; only its Hermitian part (A + Aᴴ)/2 counts).
- * Householder reduction, then implicit QL on the real tridiagonal matrix. Measured at n = 100: residual and
- * orthogonality below 2e-15 n^½ ‖A‖.
+ * Householder reduction, then implicit QL on the real tridiagonal matrix. Residual ‖A V − V Λ‖_F
+ * below 5e-15 √n ‖A‖_F, ‖Vᴴ V − 1‖_F below 5e-15 n (held by the tests to n = 100); n = 200 in about 0.5 s.
  *
  * Source: J. H. Wilkinson, C. Reinsch, Handbook for Automatic Computation II: Linear Algebra (1971), II/3 and II/4.
  */

@@ -21,7 +21,7 @@ export const legendreInto = (values: Float64Array, n: number, x: number): Float6
   scaledLegendreInto(values, n, x, 1);
 
 /**
- * Derivatives P_0′(x) … P_n′(x) into `slopes[0..n]`: P′_{j+1} = P′_{j−1} + (2j+1) P_j (DLMF 18.9.19 with λ = ½),
+ * Derivatives P_0′(x) … P_n′(x) into `slopes[0..n]`: P′_{j+1} = P′_{j−1} + (2j+1) P_j (DLMF 18.9.7 with 18.9.19, λ = ½),
  * which holds at the ends of the interval too. `values` are those of `legendreInto`.
  */
 export function legendreDerivativesInto(slopes: Float64Array, values: Float64Array, n: number): Float64Array {
@@ -49,7 +49,7 @@ export function integratedLegendreInto(values: Float64Array, slopes: Float64Arra
  *
  * For an edge between barycentric coordinates λa, λb of a triangle: x = λb − λa, t = λa + λb.
  * Entries 0 and 1 of every output (length ≥ n+1) are set to 0.
- * Source: S. Zaglmayr, High Order Finite Element Methods for Electromagnetic Field Computation, thesis, Linz 2006, §3.2.
+ * Source: S. Zaglmayr, High Order Finite Element Methods for Electromagnetic Field Computation, thesis, Linz 2006.
  */
 export function scaledIntegratedLegendreInto(
   values: Float64Array,

@@ -18,7 +18,14 @@ export interface TriangleRule {
 /**
  * Gauss–Legendre rule on [−1, 1]: n points, exact to degree 2n − 1. Memoised: do not write to the result.
  *
- * Measured against mpmath (40 digits), n ≤ 64: nodes within 1.2e-16, weights within 2e-16 absolute (`gauss-rules.py`).
+ * Largest absolute error against mpmath (60 digits; test/checks/gauss-rules.py), all rules of this file, n ≤ 64:
+ *
+ *     rule                       nodes    weights   weights, relative
+ *     Legendre                   2.3e-16  2.3e-16   1.4e-14
+ *     Lobatto                    1.2e-16  1.7e-16   3.8e-15
+ *     Jacobi, whole exponents    1.2e-16  2.3e-16   2.6e-14
+ *     Jacobi, broken exponents   1.2e-16  3.1e-15   6.4e-15
+ *
  * Formula: Newton on P_n from Tricomi's estimate; w = 2 / ((1 − x²) P_n′²) (DLMF 3.5.v).
  */
 export function gaussLegendre(n: number): LineRule {
