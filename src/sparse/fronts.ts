@@ -16,6 +16,7 @@ export interface Fronts {
   readonly pivotStarts: Int32Array;
   /** unknownAt[place]. */
   readonly unknownAt: Int32Array;
+  readonly placeOf: Int32Array;
   /** Places of the boundary of f, increasing: boundary[boundaryStarts[f]..boundaryStarts[f+1]). */
   readonly boundaryStarts: Float64Array;
   readonly boundary: Int32Array;
@@ -227,6 +228,7 @@ function layOut(pattern: ElementPattern, incidence: Incidence, tree: Tree): Fron
     parent,
     pivotStarts,
     unknownAt,
+    placeOf,
     boundaryStarts,
     boundary,
     childStarts,
