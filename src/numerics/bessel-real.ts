@@ -7,7 +7,7 @@
 export function besselJRealInto(out: Float64Array, M: number, x: number): Float64Array {
   if (!(x >= 0)) throw new RangeError(`besselJRealInto: x = ${x}; expected x ≥ 0`);
   out.fill(0, 0, M + 1);
-  if (x < 1e-150) {
+  if (x < 1e-50) {
     out[0] = 1;
     return out;
   }

@@ -10,8 +10,7 @@ import { type EigenGroup, gather, rayleighGroups } from '../eigen/rayleigh.ts';
 import { modesInWindow, ownGroups } from '../eigen/window.ts';
 import { type Complex, modulus } from '../numerics/complex.ts';
 import type { LevelSense } from '../operator/device-family.ts';
-import { modeMultipoles, multipoleOrder } from '../scattering/regular-waves.ts';
-import type { Multipoles } from '../scattering/amplitudes.ts';
+import { multipoleJumps, multipoleOrder, type Multipoles } from '../scattering/contrast.ts';
 import { modeLabel } from './label.ts';
 import { expectedModes } from './mode-count.ts';
 import { type Progress, wedgeFor } from './modes.ts';
@@ -189,8 +188,11 @@ function climbCrossing(
       const n = vectors.length / (2 * multiplicity);
       const members = Array.from({ length: multiplicity }, (_, i) => vectors.subarray(2 * n * i, 2 * n * (i + 1)));
       const M = multipoleOrder(device, prepared.bodyRadius, here.k);
-      const k = { re: here.k, im: 0 };
-      const multipoles = modeMultipoles(device, spaceOf(prepared, order), k, here.level, sense, M, members);
+      const multipoles = multipoleJumps(
+        { device, space: spaceOf(prepared, order), k: here.k, level: here.level, sense, order: M },
+        members,
+        null,
+      );
       // what the layer returns shifts k by about `returned` times the width the mode would have without level
       const boundary = layer.returned * Math.abs(slope.im) * here.level;
       return {

@@ -1,6 +1,6 @@
 // What symmetry does a mode show outside the device?
 
-import type { Multipoles } from '../scattering/amplitudes.ts';
+import type { Multipoles } from '../scattering/contrast.ts';
 
 /** Share of the power that one |m| must hold to name a mode by it. */
 const PURE = 0.999;

@@ -1,36 +1,11 @@
-// Which multipoles does a mode send out or take in, and what does a drive do?
+// What does a drive do to a device, and what do amplitudes tell?
 
 import { type Complex, complex, type ComplexArray, divide, modulus } from '../numerics/complex.ts';
 import type { Factorization } from '../sparse/pattern.ts';
-import type { RegularCoupling } from './regular-waves.ts';
-
-/** Amplitudes for m = −M … M, interleaved, length 2(2M+1). */
-export type Multipoles = ComplexArray;
-
-/** b_m − a_m of a field given by its coefficients: outgoing amplitudes of a pole's mode, minus the incoming of a zero's. */
-export function modeAmplitudes(coupling: RegularCoupling, field: ComplexArray): Multipoles {
-  const { order, functionals, background } = coupling;
-  const n = field.length / 2;
-  const out = new Float64Array(2 * (2 * order + 1));
-  for (let m = 0; m < 2 * order + 1; m++) {
-    let re = 0;
-    let im = 0;
-    const at = 2 * m * n;
-    for (let i = 0; i < 2 * n; i += 2) {
-      const a = functionals[at + i]!;
-      const b = functionals[at + i + 1]!;
-      re += a * field[i]! - b * field[i + 1]!;
-      im += a * field[i + 1]! + b * field[i]!;
-    }
-    // d / (4 i p_b)
-    out[2 * m] = im / (4 * background);
-    out[2 * m + 1] = -re / (4 * background);
-  }
-  return out;
-}
+import { type ContrastProblem, incidentLoads, multipoleJumps, type Multipoles } from './contrast.ts';
 
 export interface DrivenField {
-  /** Scattered field's coefficients; the total is this plus Σ a_m 2 J_m(κr) e^{imφ}. */
+  /** Scattered field's coefficients; the total is this plus Σ a_m 2J_m(κr) e^{imφ}. */
   readonly scattered: ComplexArray;
   readonly outgoing: Multipoles;
 }
@@ -38,44 +13,19 @@ export interface DrivenField {
 /**
  * Drives the outgoing problem with Σ a_m H⁽²⁾_m e^{imφ}, that is with the regular field Σ a_m 2J_m e^{imφ}, in
  * scattered-field form: A_out u_s = −d(u_inc, ·); then b_m = a_m + d(u_inc + u_s, w_m) / (4i p_b).
- * `coupling` must be at the k of the factorization.
+ * `outgoing` is A_out factored at the problem's k and level.
  */
-export function driveMultipoles(coupling: RegularCoupling, outgoing: Factorization, drive: Multipoles): DrivenField {
-  const { order, functionals, born, background } = coupling;
-  const width = 2 * order + 1;
-  const n = outgoing.unknowns;
-  const rhs = new Float64Array(2 * n);
-  for (let m = -order; m <= order; m++) {
-    // J_m e^{imφ} = (−1)^m w_{−m}
-    const sign = m % 2 === 0 ? -2 : 2;
-    const re = sign * drive[2 * (m + order)]!;
-    const im = sign * drive[2 * (m + order) + 1]!;
-    if (re === 0 && im === 0) continue;
-    const at = 2 * (order - m) * n;
-    for (let i = 0; i < 2 * n; i += 2) {
-      const a = functionals[at + i]!;
-      const b = functionals[at + i + 1]!;
-      rhs[i] = rhs[i]! + re * a - im * b;
-      rhs[i + 1] = rhs[i + 1]! + re * b + im * a;
-    }
-  }
-  const scattered = outgoing.solveInto(new Float64Array(2 * n), rhs, 1);
-  const change = modeAmplitudes(coupling, scattered);
-  const out = Float64Array.from(drive);
-  for (let m = 0; m < width; m++) {
-    let re = 0;
-    let im = 0;
-    for (let j = 0; j < width; j++) {
-      const b = 2 * (m + j * width);
-      const ar = 2 * drive[2 * j]!;
-      const ai = 2 * drive[2 * j + 1]!;
-      re += born[b]! * ar - born[b + 1]! * ai;
-      im += born[b]! * ai + born[b + 1]! * ar;
-    }
-    out[2 * m] = out[2 * m]! + change[2 * m]! + im / (4 * background);
-    out[2 * m + 1] = out[2 * m + 1]! + change[2 * m + 1]! - re / (4 * background);
-  }
-  return { scattered, outgoing: out };
+export function driveMultipoles(
+  problem: ContrastProblem,
+  outgoing: Factorization,
+  drives: readonly Multipoles[],
+): DrivenField[] {
+  const n = problem.space.unknowns;
+  const loads = incidentLoads(problem, drives);
+  const all = outgoing.solveInto(loads, loads, drives.length);
+  const fields = drives.map((_, j) => all.slice(2 * n * j, 2 * n * (j + 1)));
+  const jumps = multipoleJumps(problem, fields, drives);
+  return fields.map((scattered, j) => ({ scattered, outgoing: jumps[j]!.map((v, i) => v + drives[j]![i]!) }));
 }
 
 /** Σ |a_m|². */

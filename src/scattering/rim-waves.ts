@@ -8,7 +8,7 @@ import { hankel } from '../numerics/cylinder-functions.ts';
 import { type Complex, complex, type ComplexArray, divide, scale } from '../numerics/complex.ts';
 import { integratedLegendreInto } from '../numerics/polynomials.ts';
 import { gaussLegendre } from '../numerics/quadrature.ts';
-import type { Multipoles } from './amplitudes.ts';
+import type { Multipoles } from './contrast.ts';
 
 /**
  * Amplitudes of H⁽¹⁾_m (kind 1) or H⁽²⁾_m (kind 2), m = −M … M, of a field that holds only these outside:

@@ -1,0 +1,128 @@
+// Which loss, frequency and input wave make a device absorb everything, and is it so?
+
+import { resolutionFor } from '../accuracy/resolution.ts';
+import type { Device } from '../device/model.ts';
+import type { Complex } from '../numerics/complex.ts';
+import { driveMultipoles, normaliseDrive, power } from '../scattering/amplitudes.ts';
+import { absorbedPower, type ContrastProblem, type Multipoles } from '../scattering/contrast.ts';
+import { type AxisMode, type CrossingsAnswer, type CrossingsRequest, findCrossings } from './crossings.ts';
+import { familyOf, type Prepared, prepare, spaceOf } from './prepare.ts';
+
+/** Powers of one driven solve, as shares of the incoming power. */
+export interface PowerBalance {
+  readonly incoming: number;
+  readonly outgoing: number;
+  readonly absorbed: number;
+  /** incoming − outgoing − absorbed. */
+  readonly balance: number;
+}
+
+/** A drive of unit total power: incoming amplitudes a_m for m = −M … M, its largest real and positive. */
+export interface AbsorbingDrive {
+  readonly amplitudes: Multipoles;
+  /** Driven solve on the mesh of the crossing: proves the algebra. */
+  readonly sameMesh: PowerBalance;
+  /** Driven solve on a mesh of its own, one order higher: proves the device. */
+  readonly ownMesh: PowerBalance;
+}
+
+export interface AbsorbingMode extends AxisMode {
+  /** One orthonormal drive a member of the degenerate group. */
+  readonly drives: readonly AbsorbingDrive[];
+  /** Largest outgoing share to be expected on the own mesh from kError: (2Q δ/k)², Q and δ of the crossing's zero. */
+  readonly outgoingExpected: number;
+}
+
+export interface AbsorbAnswer extends Omit<CrossingsAnswer, 'crossings'> {
+  readonly crossings: readonly AbsorbingMode[];
+}
+
+/** Triangles of the own mesh are smaller by this factor. */
+const OWN_MESH_REFINEMENT = 0.83;
+
+/**
+ * All coherent-absorption points in the band with added loss D ≤ levelMax, lowest first: real k and real D ≥ 0 at which
+ * a zero of ε + iD·weight lies on the axis, with the drive and two forward checks of each.
+ *
+ * @throws RangeError when no body is active, or for digits out of range.
+ */
+export function findAbsorption(device: Device, request: CrossingsRequest = {}): AbsorbAnswer {
+  const answer = findCrossings(device, 'loss', request);
+  const resolution = resolutionFor(answer.digits);
+  const own = prepare(device, answer.prepared.scope, resolution, OWN_MESH_REFINEMENT);
+  const crossings = answer.crossings.map((mode, i) => {
+    request.progress?.('forward checks', i / answer.crossings.length);
+    return prove(answer.prepared, own, mode);
+  });
+  return { ...answer, crossings };
+}
+
+function prove(prepared: Prepared, own: Prepared, mode: AxisMode): AbsorbingMode {
+  // b − a of a field without outgoing waves: the drive is its negative
+  const incoming = mode.multipoles.map((a) => Float64Array.from(a, (v) => -v));
+  const drives = orthonormalDrives(incoming);
+  const same = forwardCheck(prepared, mode.order, mode, drives);
+  const other = forwardCheck(own, mode.order + 1, mode, drives);
+  // |S| near the zero z and its pole at about z − 2i|Im|: |δ| / |z − p|, with |z − p| = D |dk/dD| per unit of level
+  const width = Math.abs(mode.group.slope.im) * mode.level;
+  const off = mode.kError + Math.abs(mode.group.slope.im) * mode.levelError;
+  return {
+    ...mode,
+    drives: drives.map((amplitudes, i) => ({ amplitudes, sameMesh: same[i]!, ownMesh: other[i]! })),
+    outgoingExpected: (off / Math.max(width, 1e-300)) ** 2,
+  };
+}
+
+/** Gram–Schmidt on the members' incoming amplitudes; the first member of the group leads. */
+function orthonormalDrives(incoming: readonly Multipoles[]): Multipoles[] {
+  const out: Multipoles[] = [];
+  for (const a of incoming) {
+    const v = Float64Array.from(a);
+    for (let pass = 0; pass < 2; pass++) {
+      for (const u of out) {
+        const c = inner(u, v);
+        for (let i = 0; i < v.length; i += 2) {
+          v[i] = v[i]! - (c.re * u[i]! - c.im * u[i + 1]!);
+          v[i + 1] = v[i + 1]! - (c.re * u[i + 1]! + c.im * u[i]!);
+        }
+      }
+    }
+    out.push(normaliseDrive(v).drive);
+  }
+  return out;
+}
+
+function inner(a: Multipoles, b: Multipoles): Complex {
+  let re = 0;
+  let im = 0;
+  for (let i = 0; i < a.length; i += 2) {
+    re += a[i]! * b[i]! + a[i + 1]! * b[i + 1]!;
+    im += a[i]! * b[i + 1]! - a[i + 1]! * b[i]!;
+  }
+  return { re, im };
+}
+
+/** Drives the outgoing problem in scattered-field form and counts all power. */
+function forwardCheck(prepared: Prepared, order: number, mode: AxisMode, drives: readonly Multipoles[]): PowerBalance[] {
+  const problem: ContrastProblem = {
+    device: prepared.device,
+    space: spaceOf(prepared, order),
+    k: mode.k,
+    level: mode.level,
+    sense: 'loss',
+    order: (drives[0]!.length / 2 - 1) / 2,
+  };
+  const family = familyOf(prepared, order, 'outgoing', 'loss');
+  const driven = driveMultipoles(problem, family.factorize({ re: mode.k, im: 0 }, mode.level), drives);
+  const taken = absorbedPower(
+    problem,
+    driven.map((d) => d.scattered),
+    drives,
+  );
+  return driven.map(({ outgoing }, j) => {
+    const incoming = power(drives[j]!);
+    const out = power(outgoing) / incoming;
+    const absorbed = taken[j]!.reduce((a, b) => a + b, 0) / incoming;
+    return { incoming: 1, outgoing: out, absorbed, balance: 1 - out - absorbed };
+  });
+}
