@@ -25,32 +25,33 @@ export function readBodies(
   log: Log,
 ): readonly PlacedBody[] {
   checkNames(inputs, log);
-  const bodies: PlacedBody[] = [];
-  let total = 0;
-  inputs.forEach((input, i) => {
+  // First all entries are read and counted: nothing is built for a device with too many bodies.
+  const entries = inputs.map((input, i) => {
     const path: Path = ['bodies', i];
-    const material = findMaterial(input.material, [...path, 'material'], materials, log);
-    const copies = readCopies(input, path, numbers, log);
-    const shape = readShape(input, path, numbers, log);
-    total += copies === 'none' || copies === null ? 1 : copies.count;
-    if (total > MOST_BODIES) return;
-    if (material === null || copies === null || shape === null) return;
-    const group = nameOf(input, i);
-    const shapes = copies === 'none' ? [shape] : (copies.place(shape) ?? []);
-    shapes.forEach((member, n) => {
-      const name = copies === 'none' ? group : `${group}[${n}]`;
-      bodies.push({ body: makeBody(name, group, input.material, material, member), path });
-    });
+    return {
+      group: nameOf(input, i),
+      path,
+      materialName: input.material,
+      material: findMaterial(input.material, [...path, 'material'], materials, log),
+      copies: readCopies(input, path, numbers, log),
+      shape: readShape(input, path, numbers, log),
+    };
   });
-  if (total > MOST_BODIES)
-    log.report(
-      ['bodies'],
-      `${total} bodies in all`,
-      `at most ${MOST_BODIES} bodies in a device`,
-      'make arrays and scatters smaller',
-      'key',
-    );
-  return bodies;
+  const total = entries.reduce((sum, { copies }) => sum + (copies === null || copies === 'none' ? 1 : copies.count), 0);
+  if (total > MOST_BODIES) {
+    const limit = `at most ${MOST_BODIES} bodies in a device`;
+    log.report(['bodies'], `${total} bodies in all`, limit, 'make arrays and scatters smaller', 'key');
+    return [];
+  }
+  return entries.flatMap(({ group, path, materialName, material, copies, shape }): PlacedBody[] => {
+    if (material === null || copies === null || shape === null) return [];
+    if (copies === 'none') return [{ body: makeBody(group, group, materialName, material, shape), path }];
+    const members = copies.place(shape) ?? [];
+    return members.map((member, n) => ({
+      body: makeBody(`${group}[${n}]`, group, materialName, material, member),
+      path,
+    }));
+  });
 }
 
 const nameOf = (input: BodyInput, index: number): string => input.name ?? `body${index + 1}`;

@@ -5,7 +5,7 @@ import { pointAt } from './curves.ts';
 import type { ArcPiece, CurvePiece, Point, Shape } from './curves.ts';
 import { perpendiculars } from './distance.ts';
 import { containsPoint } from './inside.ts';
-import { boxOf, lengthOf, velocityAt } from './pieces.ts';
+import { boxOf, lengthOf, partOf, velocityAt } from './pieces.ts';
 
 /** A gap, an overlap, a wall or a side thinner than allowed. */
 export interface ThinPlace {
@@ -51,7 +51,7 @@ export function thinPlaces(shapes: readonly Shape[], touch: number, limit: numbe
     for (const j of index.search(x0 - limit, y0 - limit, x1 + limit, y1 + limit, (other) => other > i)) {
       const b = atoms[j]!;
       if (areNeighbours(a, b, shapes)) continue;
-      nearPairs(a, b, (p, q) => offer(a.shape, b.shape, Math.hypot(p[0] - q[0], p[1] - q[1]), middle(p, q)));
+      nearPairs(a, b, limit, (p, q) => offer(a.shape, b.shape, Math.hypot(p[0] - q[0], p[1] - q[1]), middle(p, q)));
     }
   });
   return [...found.values()];
@@ -95,7 +95,7 @@ const isCovered = (shapes: readonly Shape[], first: number, place: Point): boole
 };
 
 /** Calls `take` with pairs of points of the two pieces, one of which is the nearest of its surroundings. */
-function nearPairs(a: Atom, b: Atom, take: (p: Point, q: Point) => void): void {
+function nearPairs(a: Atom, b: Atom, limit: number, take: (p: Point, q: Point) => void): void {
   for (const p of a.corners) for (const q of feet(b.piece, p)) take(p, q);
   for (const q of b.corners) for (const p of feet(a.piece, q)) take(p, q);
   // Corner against corner: each corner also belongs to a neighbour, whose feet may miss it.
@@ -104,8 +104,14 @@ function nearPairs(a: Atom, b: Atom, take: (p: Point, q: Point) => void): void {
   const arc = (a.piece.kind === 'arc' ? a.piece : b.piece) as ArcPiece;
   const other = arc === a.piece ? b.piece : a.piece;
   if (isCircle(arc) && (other.kind === 'line' || isCircle(other))) perpendicularPairs(arc, other, take);
-  else alternate(arc, other, take);
+  else if (!isSameEllipse(arc, other)) stationaryPairs(arc, other, limit, take);
 }
+
+/** Two arcs of one ellipse are thin only where it is, which its radii tell. */
+const isSameEllipse = (a: ArcPiece, b: CurvePiece): boolean =>
+  b.kind === 'arc' &&
+  a.tilt === b.tilt &&
+  [0, 1].every((i) => a.center[i] === b.center[i] && a.radii[i] === b.radii[i]);
 
 const isCircle = (arc: ArcPiece): boolean => arc.radii[0] === arc.radii[1];
 
@@ -140,29 +146,68 @@ function perpendicularPairs(arc: ArcPiece, other: CurvePiece, take: (p: Point, q
   }
 }
 
-/** Ellipses: go to the nearest point of the other piece in turn, from eight starts, until the pair rests. */
-function alternate(arc: ArcPiece, other: CurvePiece, take: (p: Point, q: Point) => void): void {
-  for (let start = 0; start < 8; start++) {
-    let p = pointAt(arc, (start + 0.5) / 8);
-    for (let step = 0; step < 50; step++) {
-      const q = nearest(feet(other, p), p);
-      const next = q && nearest(feet(arc, q), q);
-      if (q === null || next === null) break;
-      const shift = Math.hypot(next[0] - p[0], next[1] - p[1]);
-      p = next;
-      // At a crossing the pair slides into it with steps as long as its distance: that is no thin place.
-      if (shift > 1e-3 * Math.hypot(p[0] - q[0], p[1] - q[1])) continue;
-      take(p, q);
-      break;
-    }
+/** Ellipses: stationary distances |A(s) − B(t)| by Newton's method, from every pair of small parts that come close. */
+function stationaryPairs(a: CurvePiece, b: CurvePiece, limit: number, take: (p: Point, q: Point) => void): void {
+  for (const [s, t] of closeParts(a, b, limit)) {
+    const end = restingPair(a, b, s, t);
+    if (end === null || !within(end[0])) continue;
+    // Where curves touch, s and t rest only to half the digits: the foot of one point on the other piece has them all.
+    const p = pointAt(a, end[0]);
+    for (const q of feet(b, p)) take(p, q);
   }
 }
 
-function nearest(points: readonly Point[], to: Point): Point | null {
-  let best: Point | null = null;
-  for (const p of points) {
-    if (best === null || Math.hypot(p[0] - to[0], p[1] - to[1]) < Math.hypot(best[0] - to[0], best[1] - to[1]))
-      best = p;
+/** Middles of the parts, 1/32 of each piece, whose boxes are nearer than the limit. */
+function closeParts(a: CurvePiece, b: CurvePiece, limit: number): [number, number][] {
+  let pairs: [number, number][] = [[0, 0]];
+  for (let parts = 2; parts <= 32; parts *= 2) {
+    const boxes = [a, b].map((piece) =>
+      Array.from({ length: parts }, (_, i) => boxOf(partOf(piece, i / parts, (i + 1) / parts))),
+    );
+    pairs = pairs.flatMap(([i, j]) =>
+      [0, 1, 2, 3]
+        .map((n): [number, number] => [2 * i + (n & 1), 2 * j + (n >> 1)])
+        .filter(([u, v]) => boxesMeet(boxes[0]![u]!, boxes[1]![v]!, limit)),
+    );
   }
-  return best;
+  return pairs.map(([i, j]) => [(i + 0.5) / 32, (j + 0.5) / 32]);
+}
+
+const boxesMeet = (p: readonly number[], q: readonly number[], limit: number): boolean =>
+  p[0]! - limit <= q[2]! && q[0]! - limit <= p[2]! && p[1]! - limit <= q[3]! && q[1]! - limit <= p[3]!;
+
+/**
+ * Newton's method on d = A(s) − B(t): d·A′ = 0 and d·B′ = 0. At a crossing it ends with d = 0, at a thin place with the common
+ * perpendicular; where the curves are nearly parallel it starts slowly. Null when it does not come to rest.
+ */
+function restingPair(a: CurvePiece, b: CurvePiece, s: number, t: number): [number, number] | null {
+  for (let step = 0; step < 100; step++) {
+    const p = pointAt(a, s);
+    const q = pointAt(b, t);
+    const d: Point = [p[0] - q[0], p[1] - q[1]];
+    const u = velocityAt(a, s);
+    const v = velocityAt(b, t);
+    const f = dot(d, u);
+    const g = -dot(d, v);
+    const ff = dot(u, u) + dot(d, accelerationAt(a, p));
+    const gg = dot(v, v) - dot(d, accelerationAt(b, q));
+    const fg = -dot(u, v);
+    const det = ff * gg - fg * fg;
+    const ds = (fg * g - gg * f) / det;
+    const dt = (fg * f - ff * g) / det;
+    if (!(Math.abs(ds) < 0.5 && Math.abs(dt) < 0.5)) return null;
+    s += ds;
+    t += dt;
+    if (Math.abs(ds) + Math.abs(dt) < 1e-13) return [s, t];
+  }
+  return null;
+}
+
+const dot = (p: Point, q: Point): number => p[0] * q[0] + p[1] * q[1];
+
+/** Second derivative of the point of a piece: an arc goes about its center. */
+function accelerationAt(piece: CurvePiece, p: Point): Point {
+  if (piece.kind === 'line') return [0, 0];
+  const w = -(piece.sweep ** 2);
+  return [w * (p[0] - piece.center[0]), w * (p[1] - piece.center[1])];
 }
