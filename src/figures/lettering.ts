@@ -151,6 +151,7 @@ const LETTERS: Readonly<Record<string, readonly [width: number, strokes: string]
   ],
   '→': [13, 'M0 6L13 6M8.6 10L13 6L8.6 2'],
   '…': [8, 'D0 .6D4 .6D8 .6'],
+  '○': [8, 'O4 5 4 4'],
 };
 
 /** Letters drawn as others, and figures raised or lowered at 0.62 of their size. */
@@ -201,7 +202,7 @@ export function letterLines(text: string, size: number): Lettering {
     x += width * scale + GAP;
     before = width * scale;
   }
-  return { lines, width: Math.max(0, x - GAP) * unit };
+  return { lines, width: letterWidth(text, size) };
 }
 
 /** Width of the text at the given em, without drawing it. */
@@ -268,7 +269,7 @@ function penLines(strokes: string): readonly (readonly number[])[] {
 
 function addCubic(pen: number[], [x1, y1, x2, y2, x3, y3]: number[]): void {
   const [x0, y0] = pen.slice(-2);
-  const steps = 8;
+  const steps = 12;
   for (let i = 1; i <= steps; i++) {
     const t = i / steps;
     const s = 1 - t;
@@ -280,7 +281,7 @@ function addCubic(pen: number[], [x1, y1, x2, y2, x3, y3]: number[]): void {
 }
 
 function addArc(pen: number[], [cx, cy, rx, ry]: number[], from: number, to: number): void {
-  const steps = Math.max(2, Math.ceil(Math.abs(to - from) / 15));
+  const steps = Math.max(2, Math.ceil(Math.abs(to - from) / 11));
   for (let i = 0; i <= steps; i++) {
     const angle = ((from + ((to - from) * i) / steps) * Math.PI) / 180;
     pen.push(cx + rx * Math.cos(angle), cy + ry * Math.sin(angle));

@@ -25,7 +25,7 @@ function paintText(canvas: Canvas, item: Drawing['items'][number] & { kind: 'tex
   const { lines, width } = letterLines(item.text, item.size);
   const left = item.x - { start: 0, middle: width / 2, end: width }[item.anchor];
   const placed = lines.map((line) => line.map((v, i) => (i % 2 === 0 ? left + v : item.y + v) * density));
-  const pen = item.size * (item.bold ? 0.098 : 0.07) * density;
+  const pen = item.size * (item.bold ? 0.1 : 0.074) * density;
   if (item.halo) paintLines(canvas, placed, false, pen + 3.2 * density, item.halo, 0.85);
   paintLines(canvas, placed, false, pen, item.colour, 1);
 }
@@ -62,7 +62,7 @@ export function encodePng(
   new DataView(physical.buffer).setUint32(0, perMetre);
   new DataView(physical.buffer).setUint32(4, perMetre);
   physical[8] = 1;
-  const data = deflateSync(filteredRows(width, height, channels, pixels), { level: 9 });
+  const data = deflateSync(filteredRows(width, height, channels, pixels), { level: 6 });
   const parts = [
     Uint8Array.of(0x89, 0x50, 0x4e, 0x47, 0x0d, 0x0a, 0x1a, 0x0a),
     chunk('IHDR', header),
@@ -83,7 +83,8 @@ export function encodePng(
 function filteredRows(width: number, height: number, channels: number, pixels: Uint8Array): Uint8Array {
   const bytes = width * channels;
   const out = new Uint8Array((bytes + 1) * height);
-  const tries = [0, 1, 2, 4].map((filter) => ({ filter, row: new Uint8Array(bytes) }));
+  // Of the five filters of the standard these three win on flat ground and smooth colour; "none" and "average" do not.
+  const tries = [1, 2, 4].map((filter) => ({ filter, row: new Uint8Array(bytes) }));
   for (let y = 0; y < height; y++) {
     let best = tries[0];
     let least = Infinity;
@@ -111,19 +112,21 @@ function filterRow(
   for (let i = 0; i < bytes; i++) {
     const a = i >= channels ? pixels[start + i - channels] : 0;
     const b = top ? 0 : pixels[start + i - bytes];
-    const c = top || i < channels ? 0 : pixels[start + i - bytes - channels];
-    const guess = filter === 0 ? 0 : filter === 1 ? a : filter === 2 ? b : paeth(a, b, c);
+    let guess = filter === 1 ? a : b;
+    if (filter === 4) {
+      // Paeth: whichever of left, above and corner is nearest to left + above − corner.
+      const c = top || i < channels ? 0 : pixels[start + i - bytes - channels];
+      const pa = b > c ? b - c : c - b;
+      const pb = a > c ? a - c : c - a;
+      const both = a + b - 2 * c;
+      const pc = both < 0 ? -both : both;
+      guess = pa <= pb && pa <= pc ? a : pb <= pc ? b : c;
+    }
     const value = (pixels[start + i] - guess) & 255;
     row[i] = value;
     sum += value < 128 ? value : 256 - value;
   }
   return sum;
-}
-
-function paeth(a: number, b: number, c: number): number {
-  const p = a + b - c;
-  const [pa, pb, pc] = [Math.abs(p - a), Math.abs(p - b), Math.abs(p - c)];
-  return pa <= pb && pa <= pc ? a : pb <= pc ? b : c;
 }
 
 function chunk(type: string, data: Uint8Array): Uint8Array {
