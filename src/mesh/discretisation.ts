@@ -8,6 +8,9 @@ import { boxOf, curvatureAt, lengthOf, velocityAt } from '../geometry/pieces.ts'
 /** How fast the wanted size may grow with distance. */
 export const GROWTH = 0.4;
 
+/** More segments than this are not made for the sake of separation: the refinement will refuse the drawing. */
+const MOST_SEGMENTS = 100_000;
+
 /** A piece of an arrangement edge between two mesh vertices: parameters s0 → s1 of the edge's curve. */
 export interface Segment {
   readonly a: number;
@@ -124,8 +127,8 @@ function tipsOf(
         sharp = true;
         reach = Math.min(reach, (0.6 * wedge) / (p.bend + q.bend));
       }
-      const { piece } = edges[p.index];
-      reach = Math.min(reach, wanted(edges[p.index], x, y), 0.45 * lengthOf(piece));
+      const edge = edges[p.index];
+      reach = Math.min(reach, wanted(edge, x, y), 0.45 * lengthOf(edge.piece), 0.45 * returnOf(edge, p.back, x, y));
     });
     if (!sharp) return;
     const own = new Set(around.map(({ index }) => index));
@@ -153,6 +156,21 @@ function tipsOf(
     }
   });
   return tips;
+}
+
+/** How near to its start an edge comes back, its far end included: the circle about the start cuts it once below that. */
+function returnOf(edge: ArrangementEdge, back: boolean, x: number, y: number): number {
+  const loop = edge.from === edge.to;
+  const samples = 64;
+  let before = 0;
+  let least = Infinity;
+  for (let i = 1; i <= (loop ? samples / 2 : samples); i++) {
+    const [px, py] = pointAt(edge.piece, back ? 1 - i / samples : i / samples);
+    const d = Math.hypot(px - x, py - y);
+    if (d < before || i === samples) least = Math.min(least, d);
+    before = d;
+  }
+  return least;
 }
 
 /** True corners: a tangent jump of more than 5°, or where three or more edges meet. */
@@ -284,10 +302,11 @@ function separate(
         if (!clash) continue;
         const longer = bulge[i] >= bulge[j] ? i : j;
         const chosen = segments[longer].fixed ? i + j - longer : longer;
-        if (!segments[chosen].fixed && bulge[chosen] > 0) split[chosen] = 1;
+        // Splitting the flatter of two helps no longer once it is flat.
+        if (!segments[chosen].fixed && 4 * bulge[chosen] > bulge[longer]) split[chosen] = 1;
       }
     }
-    if (!split.includes(1)) return segments;
+    if (!split.includes(1) || n > MOST_SEGMENTS) return segments;
     segments = segments.flatMap((segment, i) => {
       if (!split[i]) return [segment];
       const { a, b, edge, s0, s1, fixed } = segment;
