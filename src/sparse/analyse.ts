@@ -9,6 +9,11 @@ import { makeTwinKernels } from './kernels/twin.ts';
 import { loadWasmKernels } from './kernels/wasm-kernels.ts';
 import type { Analysis, ElementFill, ElementPattern, Factorization } from './pattern.ts';
 
+export interface AnalysisChoice {
+  /** Compiled kernels where there are any, else their twin in TypeScript. */
+  readonly kernels?: FrontKernels;
+}
+
 /**
  * Ordering, assembly tree and memory plan of a pattern; then factor any matrix on it, any number of times.
  *
@@ -18,7 +23,7 @@ import type { Analysis, ElementFill, ElementPattern, Factorization } from './pat
  * const factorization = analysis.factorize((element, into) => into.set([2, 0, 1, 0, 1, 0, 2, 0]));
  * const x = factorization.solveInto(new Float64Array(4), Float64Array.of(3, 0, 3, 0), 1); // [1, 0, 1, 0]
  */
-export function analyse(pattern: ElementPattern): Analysis {
+export function analyse(pattern: ElementPattern, { kernels = sharedKernels() }: AnalysisChoice = {}): Analysis {
   const incidence = findIncidence(pattern);
   const fronts = planFronts(pattern, incidence, dissect(pattern, incidence));
   const plan = planMemory(pattern, fronts);
@@ -26,15 +31,15 @@ export function analyse(pattern: ElementPattern): Analysis {
   return {
     pattern,
     factorize(fill: ElementFill): Factorization {
-      return factorFronts(pattern, fronts, plan, sharedKernels(), fill, spare);
+      return factorFronts(pattern, fronts, plan, kernels, fill, spare);
     },
   };
 }
 
-let kernels: FrontKernels | undefined;
+let shared: FrontKernels | undefined;
 
 /** One working memory for all factorizations: they run one after the other and keep their results elsewhere. */
 function sharedKernels(): FrontKernels {
-  kernels ??= loadWasmKernels() ?? makeTwinKernels();
-  return kernels;
+  shared ??= loadWasmKernels() ?? makeTwinKernels();
+  return shared;
 }

@@ -1,22 +1,11 @@
 // How is a matrix factored along a plan of fronts?
 
 import type { ComplexArray } from '../numerics/complex.ts';
+import { summarize, type Factors } from './factors.ts';
 import type { Fronts } from './fronts.ts';
-import { workNumbers, type FrontKernels } from './kernels/kernels.ts';
-import type { ElementFill, ElementPattern, Factorization, FactorReport } from './pattern.ts';
+import { MOST_DELAYED, workNumbers, type FrontKernels } from './kernels/kernels.ts';
+import type { ElementFill, ElementPattern, Factorization } from './pattern.ts';
 import { solveFronts } from './solve.ts';
-
-/** The numbers of a factorization: P A Pᵀ = L D Lᵀ front by front. */
-export interface Factors {
-  readonly fronts: Fronts;
-  /** L of front f from panelStarts[f]: nf × np column-major, real plane then imaginary plane; strictly below the diagonal. */
-  readonly panels: Float64Array;
-  readonly panelStarts: Float64Array;
-  /** Inverse diagonal blocks, four numbers a place: (a, b) and (c, 0) of [[a, b], [b, c]]; b = 0: single pivots. */
-  readonly inversePivots: Float64Array;
-  /** Row j of the pivot block of f belongs to place pivotStarts[f] + pivotOrder[pivotStarts[f] + j]. */
-  readonly pivotOrder: Int32Array;
-}
 
 /** Sizes that depend on the plan only. */
 export interface MemoryPlan {
@@ -24,7 +13,6 @@ export interface MemoryPlan {
   /** Largest front, largest element. */
   readonly largestFront: number;
   readonly largestElement: number;
-  readonly largestPivots: number;
   /** Numbers of the stack of contributions and fronts. */
   readonly stack: number;
 }
@@ -34,7 +22,6 @@ export function planMemory(pattern: ElementPattern, fronts: Fronts): MemoryPlan 
   const { count, pivotStarts, boundaryStarts, childStarts, children } = fronts;
   const panelStarts = new Float64Array(count + 1);
   let largestFront = 0;
-  let largestPivots = 0;
   let top = 0;
   let stack = 0;
   for (let f = 0; f < count; f++) {
@@ -43,7 +30,6 @@ export function planMemory(pattern: ElementPattern, fronts: Fronts): MemoryPlan 
     const nf = np + nb;
     panelStarts[f + 1] = panelStarts[f] + 2 * nf * np;
     largestFront = Math.max(largestFront, nf);
-    largestPivots = Math.max(largestPivots, np);
     stack = Math.max(stack, top + 2 * nf * np + 2 * nb * nb);
     for (let i = childStarts[f]; i < childStarts[f + 1]; i++) {
       const n = boundaryStarts[children[i] + 1] - boundaryStarts[children[i]];
@@ -56,7 +42,7 @@ export function planMemory(pattern: ElementPattern, fronts: Fronts): MemoryPlan 
   for (let e = 0; e + 1 < pattern.starts.length; e++) {
     largestElement = Math.max(largestElement, pattern.starts[e + 1] - pattern.starts[e]);
   }
-  return { panelStarts, largestFront, largestElement, largestPivots, stack };
+  return { panelStarts, largestFront, largestElement, stack };
 }
 
 /** Memory of released factorizations of one plan, for the next ones: touching new memory costs as much as factoring. */
@@ -78,7 +64,7 @@ export function makeSparePanels(): SparePanels {
   };
 }
 
-/** Pivots below this multiple of the largest entry met in the front so far are replaced: a rounding error's size. */
+/** Pivots that must be replaced get this multiple of the largest diagonal entry in their subtree: a rounding error. */
 const TINY = 2 ** -52;
 
 /** Numeric LDLᵀ, one front after the other, contributions on a stack. */
@@ -90,143 +76,189 @@ export function factorFronts(
   fill: ElementFill,
   spare: SparePanels,
 ): Factorization {
-  const { count, pivotStarts, boundaryStarts, childStarts, children, boundaryInParent } = fronts;
-  const { elementStarts, elements, listInFront } = fronts;
-  // Memory: integers for one map and one permutation, inverse pivots, an element, work, then the stack.
-  const mapAt = 2 * kernels.base;
-  const mapNumbers = Math.max(plan.largestFront, plan.largestElement) + 8;
-  const permAt = mapAt + 2 * mapNumbers;
-  const pivotsAt = kernels.base + 2 * mapNumbers;
-  const elementAt = pivotsAt + 4 * plan.largestPivots + 8;
-  const workAt = elementAt + 2 * plan.largestElement * plan.largestElement;
-  const stackAt = workAt + workNumbers(plan.largestFront);
-  kernels.reserve(stackAt + plan.stack + 64);
-  const m = kernels.numbers;
-  const ints = kernels.integers;
-
-  const panels = spare.take() ?? new Float64Array(plan.panelStarts[count]);
-  const inversePivots = new Float64Array(4 * pattern.unknowns);
-  const pivotOrder = new Int32Array(pattern.unknowns);
-  const largestChild = new Float64Array(count);
-  let perturbed = 0;
-  let top = stackAt;
-  const elementView = m.subarray(elementAt, elementAt + 2 * plan.largestElement * plan.largestElement);
-
-  for (let f = 0; f < count; f++) {
-    const np = pivotStarts[f + 1] - pivotStarts[f];
-    const nb = boundaryStarts[f + 1] - boundaryStarts[f];
-    const nf = np + nb;
-    const p = top;
-    const s = p + 2 * nf * np;
-    let scale = 0;
-    kernels.clear(p, s, nf, np);
-
-    for (let i = elementStarts[f]; i < elementStarts[f + 1]; i++) {
-      const e = elements[i];
-      const from = pattern.starts[e];
-      const nd = pattern.starts[e + 1] - from;
-      fill(e, elementView);
-      for (let j = 0; j < nd; j++) ints[mapAt + j] = listInFront[from + j];
-      for (let j = 0; j < nd; j++) {
-        const at = elementAt + 2 * (j * nd + j);
-        scale = Math.max(scale, Math.abs(m[at]), Math.abs(m[at + 1]));
-      }
-      kernels.addElement(p, s, nf, np, elementAt, nd, mapAt);
-    }
-    // The stack holds the contributions of the children in order, the last on top.
-    let bottom = top;
-    for (let i = childStarts[f + 1] - 1; i >= childStarts[f]; i--) {
-      const c = children[i];
-      const from = boundaryStarts[c];
-      const n = boundaryStarts[c + 1] - from;
-      bottom -= n * (n + 1);
-      for (let j = 0; j < n; j++) ints[mapAt + j] = boundaryInParent[from + j];
-      kernels.addContribution(p, s, nf, np, bottom, n, mapAt);
-      scale = Math.max(scale, largestChild[c]);
-    }
-    largestChild[f] = scale;
-
-    perturbed += kernels.factorFront(
-      p,
-      s,
-      nf,
-      np,
-      pivotsAt,
-      permAt,
-      workAt,
-      TINY * scale || Number.MIN_VALUE * 2 ** 60,
-    );
-    const place = pivotStarts[f];
-    panels.set(m.subarray(p, s), plan.panelStarts[f]);
-    for (let j = 0; j < 4 * np; j++) inversePivots[4 * place + j] = m[pivotsAt + j];
-    for (let j = 0; j < np; j++) pivotOrder[place + j] = ints[permAt + j];
-    kernels.packContribution(s, nb, bottom);
-    top = bottom + nb * (nb + 1);
+  let room: Room = { front: plan.largestFront, stack: plan.stack };
+  let factors = eliminate(pattern, fronts, plan, kernels, fill, spare, room);
+  while (factors === undefined) {
+    // Rows that were passed on made a front larger than planned: once more with more room.
+    room = { front: 2 * room.front + MOST_DELAYED, stack: 2 * room.stack + 8 * MOST_DELAYED * room.front };
+    factors = eliminate(pattern, fronts, plan, kernels, fill, spare, room);
   }
-
+  const done = factors;
   let released = false;
-  const factors: Factors = { fronts, panels, panelStarts: plan.panelStarts, inversePivots, pivotOrder };
   return {
     unknowns: pattern.unknowns,
-    ...summarize(fronts, factors, perturbed),
+    ...summarize(done),
     solveInto(out: ComplexArray, rhs: ComplexArray, columns: number): ComplexArray {
       if (released) throw new Error('this factorization was released: factor again, or release later');
-      return solveFronts(factors, plan, kernels, out, rhs, columns);
+      return solveFronts(done, kernels, out, rhs, columns);
     },
     release(): void {
-      if (!released) spare.give(panels);
+      if (!released) spare.give(done.panels);
       released = true;
     },
   };
 }
 
-function summarize(
-  fronts: Fronts,
-  factors: Factors,
-  perturbedPivots: number,
-): { report: FactorReport; logDeterminant: { re: number; im: number } } {
-  const { inversePivots: d } = factors;
-  let smallest = Infinity;
-  let largest = 0;
-  let re = 0;
-  let phase = 0;
-  for (let j = 0; 4 * j < d.length; j++) {
-    const at = 4 * j;
-    const x = d[at];
-    const y = d[at + 1];
-    if (d[at + 2] !== 0 || d[at + 3] !== 0) {
-      // det D⁻¹ of the pair, by its largest entry b: b² (ac/b² − 1).
-      const [br, bi] = [d[at + 2], d[at + 3]];
-      const [cr, ci] = [d[at + 4], d[at + 5]];
-      const s = Math.hypot(br, bi);
-      const [px, py] = [x / s, y / s];
-      const dx = px * (cr / s) - py * (ci / s) - ((br / s) * (br / s) - (bi / s) * (bi / s));
-      const dy = px * (ci / s) + py * (cr / s) - 2 * (br / s) * (bi / s);
-      const pair = Math.hypot(dx, dy);
-      re -= Math.log(pair) + 2 * Math.log(s);
-      phase -= Math.atan2(dy, dx);
-      // Moduli of the pair's two eigenvalues lie near these two; their product is the determinant.
-      const big = Math.max(s, Math.hypot(x, y), Math.hypot(cr, ci));
-      smallest = Math.min(smallest, 1 / big);
-      largest = Math.max(largest, big / (pair * s * s));
-      j++;
-      continue;
-    }
-    const modulus = Math.hypot(x, y);
-    re -= Math.log(modulus);
-    phase -= Math.atan2(y, x);
-    smallest = Math.min(smallest, 1 / modulus);
-    largest = Math.max(largest, 1 / modulus);
-  }
-  return {
-    report: {
-      fronts: fronts.count,
-      nonzeros: fronts.nonzeros,
-      flops: fronts.flops,
-      perturbedPivots,
-      smallestPivot: d.length === 0 ? 1 : smallest,
-      largestPivot: d.length === 0 ? 1 : largest,
-    },
-    logDeterminant: { re, im: Math.atan2(Math.sin(phase), Math.cos(phase)) },
-  };
+/** What the working memory must hold: rows of a front, numbers of the stack. */
+interface Room {
+  readonly front: number;
+  readonly stack: number;
 }
+
+/** One run through the fronts; undefined when the room does not suffice. */
+function eliminate(
+  pattern: ElementPattern,
+  fronts: Fronts,
+  plan: MemoryPlan,
+  kernels: FrontKernels,
+  fill: ElementFill,
+  spare: SparePanels,
+  room: Room,
+): Factors | undefined {
+  const { count, parent, pivotStarts, boundaryStarts, boundary, childStarts, children, boundaryInParent } = fronts;
+  const { elementStarts, elements, listInFront } = fronts;
+  // Memory: integers for one map and one permutation, inverse pivots, an element, work, then the stack.
+  const integers = Math.max(room.front, plan.largestElement) + 8;
+  const mapAt = 2 * kernels.base;
+  const permAt = mapAt + integers;
+  const pivotsAt = kernels.base + integers + 4;
+  const elementAt = pivotsAt + 4 * room.front + 8;
+  const workAt = elementAt + 2 * plan.largestElement * plan.largestElement;
+  const stackAt = workAt + workNumbers(room.front);
+  kernels.reserve(stackAt + room.stack + 64);
+  const m = kernels.numbers;
+  const ints = kernels.integers;
+  const elementView = m.subarray(elementAt, workAt);
+
+  let panels = spare.take() ?? new Float64Array(plan.panelStarts[count]);
+  const panelStarts = new Float64Array(count + 1);
+  const inversePivots = new Float64Array(4 * pattern.unknowns);
+  const order = new Int32Array(pattern.unknowns);
+  const actualStarts = new Int32Array(count + 1);
+  const largestDiagonal = new Float64Array(count);
+  /** Places that front f leaves to its parent; absent where there are none. */
+  const left = new Map<number, Int32Array>();
+  let perturbedPivots = 0;
+  let largestFront = 0;
+  let top = stackAt;
+
+  for (let f = 0; f < count; f++) {
+    // Rows: what the children left, in their order, then the planned pivots, then the boundary.
+    let late = 0;
+    if (left.size > 0)
+      for (let i = childStarts[f]; i < childStarts[f + 1]; i++) late += left.get(children[i])?.length ?? 0;
+    const np = pivotStarts[f + 1] - pivotStarts[f] + late;
+    const nb = boundaryStarts[f + 1] - boundaryStarts[f];
+    const nf = np + nb;
+    const p = top;
+    const s = p + 2 * nf * np;
+    if (nf > room.front || s + 2 * nb * nb > stackAt + room.stack) {
+      spare.give(panels);
+      return undefined;
+    }
+    largestFront = Math.max(largestFront, nf);
+    kernels.clear(p, s, nf, np);
+
+    let scale = 0;
+    for (let i = elementStarts[f]; i < elementStarts[f + 1]; i++) {
+      const e = elements[i];
+      const from = pattern.starts[e];
+      const nd = pattern.starts[e + 1] - from;
+      fill(e, elementView);
+      for (let j = 0; j < nd; j++) ints[mapAt + j] = listInFront[from + j] < 0 ? -1 : listInFront[from + j] + late;
+      for (let j = 0; j < nd; j++) {
+        const at = elementAt + 2 * (j * nd + j);
+        const size = Math.max(Math.abs(m[at]), Math.abs(m[at + 1]));
+        if (size > scale) scale = size;
+      }
+      kernels.addElement(p, s, nf, np, elementAt, nd, mapAt);
+    }
+    // The stack holds the contributions of the children in order, the last on top.
+    let bottom = top;
+    let offset = late;
+    for (let i = childStarts[f + 1] - 1; i >= childStarts[f]; i--) {
+      const c = children[i];
+      const from = boundaryStarts[c];
+      const planned = boundaryStarts[c + 1] - from;
+      const unfinished = left.size > 0 ? (left.get(c)?.length ?? 0) : 0;
+      const n = planned + unfinished;
+      offset -= unfinished;
+      for (let j = 0; j < unfinished; j++) ints[mapAt + j] = offset + j;
+      for (let j = 0; j < planned; j++) ints[mapAt + unfinished + j] = boundaryInParent[from + j] + late;
+      bottom -= n * (n + 1);
+      kernels.addContribution(p, s, nf, np, bottom, n, mapAt);
+      if (largestDiagonal[c] > scale) scale = largestDiagonal[c];
+    }
+    largestDiagonal[f] = scale;
+
+    const tiny = TINY * scale || SMALLEST;
+    const done = kernels.factorFront(p, s, nf, np, pivotsAt, permAt, workAt, tiny, parent[f] < 0);
+    perturbedPivots += m[pivotsAt + 4 * np];
+
+    const start = actualStarts[f];
+    actualStarts[f + 1] = start + done;
+    for (let j = 0; j < 4 * done; j++) inversePivots[4 * start + j] = m[pivotsAt + j];
+    const placeAt = (j: number): number => {
+      const row = ints[permAt + j];
+      return row < late ? latePlace(f, row) : pivotStarts[f] + row - late;
+    };
+    for (let j = 0; j < done; j++) order[start + j] = placeAt(j);
+    if (done < np)
+      left.set(
+        f,
+        Int32Array.from({ length: np - done }, (_, j) => placeAt(done + j)),
+      );
+
+    const at = panelStarts[f];
+    panelStarts[f + 1] = at + 2 * nf * done;
+    if (panelStarts[f + 1] > panels.length) {
+      const larger = new Float64Array(Math.ceil(1.25 * panelStarts[f + 1]));
+      larger.set(panels.subarray(0, at));
+      panels = larger;
+    }
+    if (done === np) panels.set(m.subarray(p, s), at);
+    else {
+      panels.set(m.subarray(p, p + nf * done), at);
+      panels.set(m.subarray(p + nf * np, p + nf * (np + done)), at + nf * done);
+    }
+    kernels.packContribution(p, s, nf, np, done, bottom, workAt);
+    top = bottom + (nf - done) * (nf - done + 1);
+  }
+
+  const common = {
+    count,
+    placeOf: fronts.placeOf,
+    order,
+    panels,
+    panelStarts,
+    inversePivots,
+    largestFront,
+    perturbedPivots,
+  };
+  if (left.size === 0) return { ...common, pivotStarts, edgeStarts: boundaryStarts, edges: boundary };
+  const edgeStarts = new Float64Array(count + 1);
+  for (let f = 0; f < count; f++) {
+    edgeStarts[f + 1] = edgeStarts[f] + (left.get(f)?.length ?? 0) + boundaryStarts[f + 1] - boundaryStarts[f];
+  }
+  const edges = new Int32Array(edgeStarts[count]);
+  for (let f = 0; f < count; f++) {
+    const late = left.get(f) ?? new Int32Array(0);
+    edges.set(late, edgeStarts[f]);
+    edges.set(boundary.subarray(boundaryStarts[f], boundaryStarts[f + 1]), edgeStarts[f] + late.length);
+  }
+  return { ...common, pivotStarts: actualStarts, edgeStarts, edges };
+
+  /** Place of the row-th of the rows that the children of f left. */
+  function latePlace(f: number, row: number): number {
+    for (let i = childStarts[f]; i < childStarts[f + 1]; i++) {
+      const places = left.get(children[i]);
+      if (places === undefined) continue;
+      if (row < places.length) return places[row];
+      row -= places.length;
+    }
+    return -1;
+  }
+}
+
+/** Replaces a pivot where everything is zero. */
+const SMALLEST = 1e-280;

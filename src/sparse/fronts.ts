@@ -1,6 +1,7 @@
 // Which dense fronts does the elimination consist of, and how do they hang together?
 
 import type { Dissection } from './dissection.ts';
+import { multiplyAdds } from './factors.ts';
 import type { Incidence } from './incidence.ts';
 import type { ElementPattern } from './pattern.ts';
 
@@ -135,17 +136,6 @@ function frontCost(pivots: number, boundary: number): number {
   const size = pivots + boundary;
   const slow = 1 + 6 / pivots;
   return CALL_COST + ENTRY_COST * size * size + slow * (multiplyAdds(pivots, boundary) + 4 * pivots * size);
-}
-
-/** Σ over the pivots of r(r+1)/2 + r, r the rows below: multiply-adds of the update and scalings of the column. */
-function multiplyAdds(pivots: number, boundary: number): number {
-  // Closed form of Σ_{r=boundary}^{boundary+pivots-1} (r² + 3r)/2.
-  const a = boundary;
-  const b = boundary + pivots - 1;
-  const squares = (n: number): number => (n * (n + 1) * (2 * n + 1)) / 6;
-  const firsts = (n: number): number => (n * (n + 1)) / 2;
-  const sum = squares(b) - (a > 0 ? squares(a - 1) : 0) + 3 * (firsts(b) - (a > 0 ? firsts(a - 1) : 0));
-  return sum / 2;
 }
 
 function layOut(pattern: ElementPattern, incidence: Incidence, tree: Tree): Fronts {

@@ -1,20 +1,19 @@
 // How are right-hand sides solved with the factors?
 
 import type { ComplexArray } from '../numerics/complex.ts';
-import type { Factors, MemoryPlan } from './factorize.ts';
+import type { Factors } from './factors.ts';
 import type { FrontKernels, FrontShape, SubstitutionKernels, SubstitutionTables } from './kernels/kernels.ts';
 import { substitutePlain } from './substitute.ts';
 
 /** A x = b for `columns` right-hand sides, column-major interleaved; `out` may be `rhs`. */
 export function solveFronts(
   factors: Factors,
-  plan: MemoryPlan,
   kernels: FrontKernels,
   out: ComplexArray,
   rhs: ComplexArray,
   columns: number,
 ): ComplexArray {
-  const n = factors.fronts.unknownAt.length;
+  const n = factors.placeOf.length;
   if (!Number.isInteger(columns) || columns < 0) {
     throw new RangeError(`columns is ${columns}; expected a whole number ≥ 0`);
   }
@@ -25,7 +24,7 @@ export function solveFronts(
   }
   if (n === 0 || columns === 0) return out;
   if (kernels.substitution === undefined) return substitutePlain(factors, out, rhs, columns);
-  return substituteCompiled(factors, plan, kernels, kernels.substitution, out, rhs, columns);
+  return substituteCompiled(factors, kernels, kernels.substitution, out, rhs, columns);
 }
 
 /** Numbers of L that are copied in at a time: they stay in the second-level cache while all columns pass. */
@@ -40,15 +39,14 @@ const GROUP_NUMBERS = 2 ** 27;
  */
 function substituteCompiled(
   factors: Factors,
-  plan: MemoryPlan,
   kernels: FrontKernels,
   substitution: SubstitutionKernels,
   out: ComplexArray,
   rhs: ComplexArray,
   columns: number,
 ): ComplexArray {
-  const { fronts, panels, panelStarts, inversePivots, pivotOrder } = factors;
-  const { count, pivotStarts, boundaryStarts, boundary, placeOf } = fronts;
+  const { count, placeOf, pivotStarts, order, edgeStarts, edges, panels, panelStarts, inversePivots } = factors;
+  const { largestFront } = factors;
   const n = placeOf.length;
   const one = columns === 1;
   const quadsAtOnce = Math.max(1, Math.min(GROUP_QUADS, Math.ceil(columns / 4), Math.floor(GROUP_NUMBERS / (8 * n))));
@@ -59,23 +57,21 @@ function substituteCompiled(
   const startsAt = integers(count + 1);
   const edgesAt = integers(count + 1);
   const orderAt = integers(n);
-  const boundaryAt = integers(boundary.length);
+  const boundaryAt = integers(edges.length);
   let free = (top >> 1) + 2;
   const numbers = (length: number): number => (free += length) - length;
   const pivotsAt = numbers(4 * n);
   const xAt = numbers(one ? 2 * n : 8 * n * quadsAtOnce);
-  const localNumbers = (one ? 2 : 8) * (plan.largestFront + 2);
+  const localNumbers = (one ? 2 : 8) * (largestFront + 2);
   const local = numbers(localNumbers * quadsAtOnce);
-  const chunkAt = numbers(Math.max(CHUNK, 2 * MIN_WIDTH * plan.largestFront) + 64);
+  const chunkAt = numbers(Math.max(CHUNK, 2 * MIN_WIDTH * largestFront) + 64);
   kernels.reserve(free + 64);
   const m = kernels.numbers;
   const ints = kernels.integers;
   ints.set(pivotStarts, startsAt);
-  for (let f = 0; f <= count; f++) ints[edgesAt + f] = boundaryStarts[f];
-  for (let f = 0; f < count; f++) {
-    for (let p = pivotStarts[f]; p < pivotStarts[f + 1]; p++) ints[orderAt + p] = pivotStarts[f] + pivotOrder[p];
-  }
-  ints.set(boundary, boundaryAt);
+  for (let f = 0; f <= count; f++) ints[edgesAt + f] = edgeStarts[f];
+  ints.set(order, orderAt);
+  ints.set(edges, boundaryAt);
   m.set(inversePivots, pivotsAt);
   const tables: SubstitutionTables = {
     pivotStarts: startsAt,
@@ -194,8 +190,8 @@ function substituteCompiled(
 
   function shapeOf(f: number): FrontShape {
     const place = pivotStarts[f];
-    const edge = boundaryStarts[f];
-    return { place, np: pivotStarts[f + 1] - place, edge, nb: boundaryStarts[f + 1] - edge };
+    const edge = edgeStarts[f];
+    return { place, np: pivotStarts[f + 1] - place, edge, nb: edgeStarts[f + 1] - edge };
   }
 }
 

@@ -31,9 +31,12 @@ export interface FrontKernels {
   /** Adds a packed contribution (see packContribution) of order n; map increases. */
   addContribution(p: number, s: number, nf: number, np: number, from: number, n: number, map: number): void;
   /**
-   * Eliminates the np pivots: P becomes L (unit diagonal and what lies above it not stored), S its Schur complement.
-   * Row j of L belongs to row perm[j] of the front as assembled. Inverse pivots go to d (4 numbers each).
-   * Pivots of modulus ≤ tiny are replaced by tiny; returns how many. `work` has room for 2·nf·panel numbers.
+   * Eliminates the pivots of P as far as they are safe: P becomes L (unit diagonal and what lies above it not stored),
+   * S its Schur complement. Row j of the front, j < np, is row perm[j] of the front as assembled. Returns the number e
+   * of pivots eliminated; rows e..np have no pivot larger than DELAY times the largest entry of their column and wait
+   * for the parent. Inverse pivots go to d (4 numbers each), the number of perturbed ones to d[4 np].
+   * With `force`, or when more than MOST_DELAYED rows would wait, all are eliminated, pivots of modulus ≤ tiny
+   * replaced by tiny. `work` has room for workNumbers(nf).
    */
   factorFront(
     p: number,
@@ -44,10 +47,19 @@ export interface FrontKernels {
     perm: number,
     work: number,
     tiny: number,
+    force: boolean,
   ): number;
-  /** Lower triangle of S, column by column: nb(nb+1)/2 real parts, then the imaginary ones. `to` may be ≤ s and overlap. */
-  packContribution(s: number, nb: number, to: number): void;
+  /**
+   * What the front passes on: the lower triangle of rows e..nf, column by column, all real parts, then all imaginary
+   * ones. `to` may be ≤ p and overlap.
+   */
+  packContribution(p: number, s: number, nf: number, np: number, e: number, to: number, work: number): void;
 }
+
+/** Largest growth of entries in one elimination is about 1/DELAY; a later refinement step gains what that loses. */
+export const DELAY = 1e-6;
+/** Rows that a front passes on unfinished, at most. */
+export const MOST_DELAYED = 128;
 
 /**
  * Substitution on panels that were copied into the memory. Positions as in FrontKernels; `order`, `boundary` and the two

@@ -1,6 +1,6 @@
 // The dense work on one front, in plain TypeScript.
 
-import type { FrontKernels } from './kernels.ts';
+import { DELAY, MOST_DELAYED, type FrontKernels } from './kernels.ts';
 
 /** Columns eliminated together; pivots are chosen inside such a panel. */
 const PANEL = 48;
@@ -89,11 +89,26 @@ export function makeTwinKernels(): FrontKernels {
     }
   }
 
-  function packContribution(s: number, nb: number, to: number): void {
-    const si = nb * nb;
+  function packContribution(p: number, s: number, nf: number, np: number, e: number, to: number, work: number): void {
+    const nb = nf - np;
+    // Imaginary parts of unfinished columns could be overwritten by real parts: put aside.
+    let aside = work;
+    for (let j = e; j < np; j++) {
+      const from = p + nf * np + j * nf;
+      m.copyWithin(aside, from + j, from + nf);
+      aside += nf - j;
+    }
+    for (let j = e; j < np; j++) {
+      m.copyWithin(to, p + j * nf + j, p + (j + 1) * nf);
+      to += nf - j;
+    }
     for (let plane = 0; plane < 2; plane++) {
+      if (plane === 1) {
+        m.copyWithin(to, work, aside);
+        to += aside - work;
+      }
       for (let j = 0; j < nb; j++) {
-        const from = s + plane * si + j * nb;
+        const from = s + plane * nb * nb + j * nb;
         m.copyWithin(to, from + j, from + nb);
         to += nb - j;
       }
@@ -109,67 +124,84 @@ export function makeTwinKernels(): FrontKernels {
     perm: number,
     work: number,
     tiny: number,
+    force: boolean,
   ): number {
     const nb = nf - np;
     const pi = nf * np;
-    let perturbed = 0;
     for (let j = 0; j < np; j++) ints[perm + j] = j;
-    for (let first = 0; first < np; first += PANEL) {
-      const last = Math.min(np, first + PANEL);
-      perturbed += factorDiagonal(p, nf, np, first, last, d, perm, tiny);
-      solveBelow(p, nf, np, first, last);
-      // Keep W = L D in work, columns of nf − last rows; scale the panel to L.
+    measureColumns(p, nf, np, d);
+    m[d + 4 * np] = 0;
+    let done = 0;
+    let limit = np; // rows limit..np were tried in vain
+    let forcing = false;
+    let progress = false;
+    for (;;) {
+      if (done === limit) {
+        if (limit === np) break;
+        if (!progress) {
+          if (!force && np - done <= MOST_DELAYED) break;
+          forcing = true;
+        }
+        limit = np;
+        progress = false;
+      }
+      const first = done;
+      const last = Math.min(limit, first + PANEL);
+      done = factorDiagonal(p, nf, np, first, last, d, perm, tiny, forcing);
+      if (done > first) progress = true;
       const rows = nf - last;
-      if (rows === 0) continue;
-      const plane = rows * (last - first);
-      for (let j = first; j < last; j++) {
-        const from = p + j * nf + last;
-        const to = work + (j - first) * rows;
-        m.copyWithin(to, from, from + rows);
-        m.copyWithin(to + plane, from + pi, from + pi + rows);
+      if (rows > 0 && done > first) {
+        solveBelow(p, nf, np, first, done, last);
+        // Keep W = L D in work, columns of nf − last rows; scale the panel to L.
+        const plane = rows * (done - first);
+        for (let j = first; j < done; j++) {
+          const from = p + j * nf + last;
+          const to = work + (j - first) * rows;
+          m.copyWithin(to, from, from + rows);
+          m.copyWithin(to + plane, from + pi, from + pi + rows);
+        }
+        scaleBelow(p, nf, np, first, done, last, d, work, plane);
+        // What is left of the fully summed columns, then the boundary block.
+        const n = done - first;
+        for (let j = last; j < np; j += 2) {
+          const width = Math.min(2, np - j);
+          update(p + j * nf + j, nf, pi, nf - j, width, p + first * nf + j, nf, pi, work + j - last, rows, plane, n);
+        }
+        for (let j = np; j < nf; j += 2) {
+          const c = s + (j - np) * nb + j - np;
+          const width = Math.min(2, nf - j);
+          update(c, nb, nb * nb, nf - j, width, p + first * nf + j, nf, pi, work + j - last, rows, plane, n);
+        }
       }
-      scaleBelow(p, nf, np, first, last, d, work, plane);
-      // What is left of the fully summed columns, then the boundary block.
-      for (let j = last; j < np; j += 2) {
-        update(
-          p + j * nf + j,
-          nf,
-          pi,
-          nf - j,
-          Math.min(2, np - j),
-          p + first * nf + j,
-          nf,
-          pi,
-          work + j - last,
-          rows,
-          plane,
-          last - first,
-        );
-      }
-      for (let j = np; j < nf; j += 2) {
-        update(
-          s + (j - np) * nb + j - np,
-          nb,
-          nb * nb,
-          nf - j,
-          Math.min(2, nf - j),
-          p + first * nf + j,
-          nf,
-          pi,
-          work + j - last,
-          rows,
-          plane,
-          last - first,
-        );
+      for (let j = last - 1; j >= done; j--) {
+        limit--;
+        if (limit > j) exchange(p, nf, np, j, limit, d, perm);
       }
     }
-    return perturbed;
+    return done;
+  }
+
+  /** Largest part of an entry in each pivot's row and column, to d[4j]. */
+  function measureColumns(p: number, nf: number, np: number, d: number): void {
+    const pi = nf * np;
+    for (let j = 0; j < np; j++) m[d + 4 * j] = 0;
+    for (let j = 0; j < np; j++) {
+      let largest = m[d + 4 * j];
+      for (let i = j; i < nf; i++) {
+        const v = Math.max(Math.abs(m[p + j * nf + i]), Math.abs(m[p + j * nf + i + pi]));
+        if (v > largest) largest = v;
+        if (i < np && v > m[d + 4 * i]) m[d + 4 * i] = v;
+      }
+      m[d + 4 * j] = largest;
+    }
   }
 
   /**
    * P L D Lᵀ Pᵀ of the diagonal block first..last of the panel (J. Bunch, L. Kaufman, Math. Comp. 31 (1977) 163).
    * Interchanges are applied to whole rows and columns of the front. Inverse diagonal blocks go to d, four numbers a
    * pivot: [[a, b], [b, c]] as (a, b) at the first and (c, 0) at the second; b = 0 marks single pivots.
+   * Unless forced, pivots too small for their columns (largest entries at d[4j]) go to the end of the block.
+   * Returns the first column that was not eliminated.
    */
   function factorDiagonal(
     p: number,
@@ -180,15 +212,16 @@ export function makeTwinKernels(): FrontKernels {
     d: number,
     perm: number,
     tiny: number,
+    forcing: boolean,
   ): number {
     const pi = nf * np;
     const size = (i: number, j: number): number => {
       const at = p + j * nf + i;
       return Math.abs(m[at]) + Math.abs(m[at + pi]);
     };
-    let perturbed = 0;
     let k = first;
-    while (k < last) {
+    let active = last; // rows active..last were refused
+    while (k < active) {
       const diagonal = size(k, k);
       let largest = 0;
       let row = k;
@@ -208,7 +241,12 @@ export function makeTwinKernels(): FrontKernels {
         else if (size(row, row) < GROWTH * across) double = true;
       } else row = k;
       const target = double ? k + 1 : k;
-      if (row !== target) exchange(p, nf, np, target, row, perm);
+      if (row !== target) exchange(p, nf, np, target, row, d, perm);
+      if (!forcing && !accepts(p + k * nf + k, pi, nf, double, d + 4 * k)) {
+        active--;
+        if (active > k) exchange(p, nf, np, k, active, d, perm);
+        continue;
+      }
       if (double) {
         eliminateDouble(p, nf, np, k, last, d);
         k += 2;
@@ -219,7 +257,7 @@ export function makeTwinKernels(): FrontKernels {
         const modulus = Math.hypot(re, im);
         if (modulus <= tiny) {
           // Keep the direction of the pivot where it has one.
-          perturbed++;
+          m[d + 4 * np]++;
           re = modulus > 0 ? (re / modulus) * tiny : tiny;
           im = modulus > 0 ? (im / modulus) * tiny : 0;
         }
@@ -227,11 +265,30 @@ export function makeTwinKernels(): FrontKernels {
         k++;
       }
     }
-    return perturbed;
+    return k;
   }
 
-  function exchange(p: number, nf: number, np: number, a: number, b: number, perm: number): void {
+  /** Whether the single or double pivot at `at` is large enough for its columns. */
+  function accepts(at: number, pi: number, nf: number, double: boolean, scale: number): boolean {
+    const ar = m[at];
+    const ai = m[at + pi];
+    if (!double) return Math.hypot(ar, ai) > DELAY * m[scale];
+    const br = m[at + 1];
+    const bi = m[at + 1 + pi];
+    const cr = m[at + nf + 1];
+    const ci = m[at + nf + 1 + pi];
+    // |det| over the largest entry is about the smaller singular value.
+    const detRe = ar * cr - ai * ci - (br * br - bi * bi);
+    const detIm = ar * ci + ai * cr - 2 * br * bi;
+    const largest = Math.max(Math.hypot(ar, ai), Math.hypot(br, bi), Math.hypot(cr, ci));
+    return Math.hypot(detRe, detIm) / largest > DELAY * Math.min(m[scale], m[scale + 4]);
+  }
+
+  function exchange(p: number, nf: number, np: number, a: number, b: number, d: number, perm: number): void {
     const pi = nf * np;
+    const scale = m[d + 4 * a];
+    m[d + 4 * a] = m[d + 4 * b];
+    m[d + 4 * b] = scale;
     const held = ints[perm + a];
     ints[perm + a] = ints[perm + b];
     ints[perm + b] = held;
@@ -336,12 +393,12 @@ export function makeTwinKernels(): FrontKernels {
     }
   }
 
-  /** Rows below the block: A ← W with W (unit L₁₁)ᵀ = A. */
-  function solveBelow(p: number, nf: number, np: number, first: number, last: number): void {
+  /** Rows below the block: A ← W with W (unit L₁₁)ᵀ = A; refused columns done..last only lose what was eliminated. */
+  function solveBelow(p: number, nf: number, np: number, first: number, done: number, last: number): void {
     const pi = nf * np;
     for (let j = first + 1; j < last; j++) {
       const to = p + j * nf;
-      for (let k = first; k < j; k++) {
+      for (let k = first; k < Math.min(j, done); k++) {
         const lr = m[p + k * nf + j];
         const li = m[p + k * nf + j + pi];
         if (lr === 0 && li === 0) continue;
@@ -362,6 +419,7 @@ export function makeTwinKernels(): FrontKernels {
     nf: number,
     np: number,
     first: number,
+    done: number,
     last: number,
     d: number,
     work: number,
@@ -369,7 +427,7 @@ export function makeTwinKernels(): FrontKernels {
   ): void {
     const pi = nf * np;
     const rows = nf - last;
-    for (let j = first; j < last; j++) {
+    for (let j = first; j < done; j++) {
       const at = d + 4 * j;
       const ar = m[at];
       const ai = m[at + 1];

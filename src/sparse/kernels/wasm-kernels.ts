@@ -5,36 +5,65 @@ import type { FrontKernels, SubstitutionKernels } from './kernels.ts';
 
 /** What front.wasm exports; pointers in bytes. */
 interface FrontExports {
-  forwardQuads(...numbers: number[]): void;
-  backwardQuads(...numbers: number[]): void;
-  forwardOne(...numbers: number[]): void;
-  backwardOne(...numbers: number[]): void;
-  forwardColumns(l: number, plane: number, nf: number, first: number, last: number, local: number): void;
-  forwardColumnsOne(l: number, plane: number, nf: number, first: number, last: number, local: number): void;
-  backwardColumns(l: number, plane: number, nf: number, first: number, last: number, local: number): void;
-  backwardColumnsOne(l: number, plane: number, nf: number, first: number, last: number, local: number): void;
-  gatherForward(x: number, rows: number, np: number, nb: number, local: number): void;
-  gatherForwardOne(x: number, rows: number, np: number, nb: number, local: number): void;
-  scatterForward(x: number, place: number, edge: number, np: number, nb: number, local: number, d: number): void;
-  scatterForwardOne(x: number, place: number, edge: number, np: number, nb: number, local: number, d: number): void;
-  gatherBackward(x: number, place: number, edge: number, np: number, nb: number, local: number): void;
-  gatherBackwardOne(x: number, place: number, edge: number, np: number, nb: number, local: number): void;
-  scatterBackward(x: number, rows: number, np: number, local: number): void;
-  scatterBackwardOne(x: number, rows: number, np: number, nf: number, local: number): void;
-  clear(p: number, s: number, nf: number, np: number): void;
-  addElement(p: number, s: number, nf: number, np: number, element: number, nd: number, map: number): void;
-  addContribution(p: number, s: number, nf: number, np: number, from: number, n: number, map: number): void;
-  factorFront(
+  readonly forwardQuads: (...numbers: number[]) => void;
+  readonly backwardQuads: (...numbers: number[]) => void;
+  readonly forwardOne: (...numbers: number[]) => void;
+  readonly backwardOne: (...numbers: number[]) => void;
+  readonly forwardColumns: (l: number, plane: number, nf: number, first: number, last: number, local: number) => void;
+  readonly forwardColumnsOne: (
+    l: number,
+    plane: number,
+    nf: number,
+    first: number,
+    last: number,
+    local: number,
+  ) => void;
+  readonly backwardColumns: (l: number, plane: number, nf: number, first: number, last: number, local: number) => void;
+  readonly backwardColumnsOne: (
+    l: number,
+    plane: number,
+    nf: number,
+    first: number,
+    last: number,
+    local: number,
+  ) => void;
+  readonly gatherForward: (x: number, rows: number, np: number, nb: number, local: number) => void;
+  readonly gatherForwardOne: (x: number, rows: number, np: number, nb: number, local: number) => void;
+  readonly scatterForward: (
+    x: number,
+    rows: number,
+    edge: number,
+    np: number,
+    nb: number,
+    local: number,
+    d: number,
+  ) => void;
+  readonly scatterForwardOne: (
+    x: number,
+    rows: number,
+    edge: number,
+    np: number,
+    nb: number,
+    local: number,
+    d: number,
+  ) => void;
+  readonly gatherBackward: (x: number, rows: number, edge: number, np: number, nb: number, local: number) => void;
+  readonly gatherBackwardOne: (x: number, rows: number, edge: number, np: number, nb: number, local: number) => void;
+  readonly scatterBackward: (x: number, rows: number, np: number, local: number) => void;
+  readonly scatterBackwardOne: (x: number, rows: number, np: number, nf: number, local: number) => void;
+  readonly clear: (p: number, s: number, nf: number, np: number) => void;
+  readonly addElement: (p: number, s: number, nf: number, np: number, element: number, nd: number, map: number) => void;
+  readonly addContribution: (
     p: number,
     s: number,
     nf: number,
     np: number,
-    d: number,
-    perm: number,
-    work: number,
-    tiny: number,
-  ): number;
-  packContribution(s: number, nb: number, to: number): void;
+    from: number,
+    n: number,
+    map: number,
+  ) => void;
+  readonly factorFront: (...numbers: number[]) => number;
+  readonly packContribution: (...numbers: number[]) => void;
 }
 
 /** Bytes that the module itself uses at the start of its memory. */
@@ -81,9 +110,9 @@ function bindKernels(module: WebAssembly.Module, memory: WebAssembly.Memory): Fr
     clear: (p, s, nf, np) => wasm.clear(8 * p, 8 * s, nf, np),
     addElement: (p, s, nf, np, element, nd, map) => wasm.addElement(8 * p, 8 * s, nf, np, 8 * element, nd, 4 * map),
     addContribution: (p, s, nf, np, from, n, map) => wasm.addContribution(8 * p, 8 * s, nf, np, 8 * from, n, 4 * map),
-    factorFront: (p, s, nf, np, d, perm, work, tiny) =>
-      wasm.factorFront(8 * p, 8 * s, nf, np, 8 * d, 4 * perm, 8 * work, tiny),
-    packContribution: (s, nb, to) => wasm.packContribution(8 * s, nb, 8 * to),
+    factorFront: (p, s, nf, np, d, perm, work, tiny, force) =>
+      wasm.factorFront(8 * p, 8 * s, nf, np, 8 * d, 4 * perm, 8 * work, tiny, force ? 1 : 0),
+    packContribution: (p, s, nf, np, e, to, work) => wasm.packContribution(8 * p, 8 * s, nf, np, e, 8 * to, 8 * work),
     substitution: bindSubstitution(wasm),
   };
 }
@@ -117,10 +146,23 @@ function bindSubstitution(wasm: FrontExports): SubstitutionKernels {
       (quad ? wasm.gatherForward : wasm.gatherForwardOne)(8 * x, 4 * (t.order + place), np, nb, 8 * local),
     scatterForward: (quad, t, x, { place, np, nb, edge }, local) =>
       (quad ? wasm.scatterForward : wasm.scatterForwardOne)(
-        8 * x, place, 4 * (t.boundary + edge), np, nb, 8 * local, 8 * (t.pivots + 4 * place),
-      ), // prettier-ignore
+        8 * x,
+        4 * (t.order + place),
+        4 * (t.boundary + edge),
+        np,
+        nb,
+        8 * local,
+        8 * (t.pivots + 4 * place),
+      ),
     gatherBackward: (quad, t, x, { place, np, nb, edge }, local) =>
-      (quad ? wasm.gatherBackward : wasm.gatherBackwardOne)(8 * x, place, 4 * (t.boundary + edge), np, nb, 8 * local),
+      (quad ? wasm.gatherBackward : wasm.gatherBackwardOne)(
+        8 * x,
+        4 * (t.order + place),
+        4 * (t.boundary + edge),
+        np,
+        nb,
+        8 * local,
+      ),
     scatterBackward: (quad, t, x, { place, np, nb }, local) =>
       quad
         ? wasm.scatterBackward(8 * x, 4 * (t.order + place), np, 8 * local)

@@ -2,6 +2,33 @@
 
 /** Bunch and Kaufman's bound on element growth, (1 + √17)/8. */
 const GROWTH: f64 = 0.6403882032022076;
+/** As in ../kernels.ts. */
+const DELAY: f64 = 1e-6;
+
+/** Largest part of an entry in each pivot's row and column, to d[4j]. */
+export function measureColumns(p: usize, nf: i32, np: i32, d: usize): void {
+  const plane = (<usize>(nf * np)) << 3;
+  for (let j = 0; j < np; j++) store<f64>(d + ((<usize>j) << 5), 0);
+  for (let j = 0; j < np; j++) {
+    const target = d + ((<usize>j) << 5);
+    let largest = load<f64>(target);
+    let at = p + ((<usize>(j * nf + j)) << 3);
+    for (let i = j; i < np; i++, at += 8) {
+      const v = max(abs(load<f64>(at)), abs(load<f64>(at + plane)));
+      if (v > largest) largest = v;
+      const other = d + ((<usize>i) << 5);
+      if (v > load<f64>(other)) store<f64>(other, v);
+    }
+    let top = f64x2.splat(0);
+    const end = p + ((<usize>((j + 1) * nf)) << 3);
+    for (; at + 8 < end; at += 16) {
+      top = f64x2.pmax(top, f64x2.pmax(f64x2.abs(v128.load(at)), f64x2.abs(v128.load(at + plane))));
+    }
+    if (at < end) largest = max(largest, max(abs(load<f64>(at)), abs(load<f64>(at + plane))));
+    largest = max(largest, max(f64x2.extract_lane(top, 0), f64x2.extract_lane(top, 1)));
+    store<f64>(target, largest);
+  }
+}
 
 /**
  * P L D Lᵀ Pᵀ of the diagonal block first..last of the panel (J. Bunch, L. Kaufman, Math. Comp. 31 (1977) 163);
@@ -16,11 +43,12 @@ export function factorDiagonal(
   d: usize,
   perm: usize,
   tiny: f64,
+  forcing: bool,
 ): i32 {
   const plane = (<usize>(nf * np)) << 3;
-  let perturbed = 0;
   let k = first;
-  while (k < last) {
+  let active = last; // rows active..last were refused
+  while (k < active) {
     const at = p + ((<usize>(k * nf + k)) << 3);
     const diagonal = abs(load<f64>(at)) + abs(load<f64>(at + plane));
     let largest: f64 = 0;
@@ -43,7 +71,12 @@ export function factorDiagonal(
       else if (size(p, nf, plane, row, row) < GROWTH * across) double = true;
     } else row = k;
     const target = double ? k + 1 : k;
-    if (row != target) exchange(p, nf, np, target, row, perm);
+    if (row != target) exchange(p, nf, np, target, row, d, perm);
+    if (!forcing && !accepts(at, plane, (<usize>nf) << 3, double, d + ((<usize>k) << 5))) {
+      active--;
+      if (active > k) exchange(p, nf, np, k, active, d, perm);
+      continue;
+    }
     if (double) {
       eliminateDouble(p, nf, np, k, last, d);
       k += 2;
@@ -52,7 +85,8 @@ export function factorDiagonal(
       let im = load<f64>(at + plane);
       const modulus = hypot(re, im);
       if (modulus <= tiny) {
-        perturbed++;
+        const count = d + ((<usize>np) << 5);
+        store<f64>(count, load<f64>(count) + 1);
         re = modulus > 0 ? (re / modulus) * tiny : tiny;
         im = modulus > 0 ? (im / modulus) * tiny : 0;
       }
@@ -60,7 +94,23 @@ export function factorDiagonal(
       k++;
     }
   }
-  return perturbed;
+  return k;
+}
+
+/** Whether the single or double pivot at `at` is large enough for its columns. */
+function accepts(at: usize, plane: usize, ld: usize, double: bool, scale: usize): bool {
+  const ar = load<f64>(at);
+  const ai = load<f64>(at + plane);
+  if (!double) return hypot(ar, ai) > DELAY * load<f64>(scale);
+  const br = load<f64>(at, 8);
+  const bi = load<f64>(at + plane, 8);
+  const cr = load<f64>(at + ld, 8);
+  const ci = load<f64>(at + ld + plane, 8);
+  // |det| over the largest entry is about the smaller singular value.
+  const detRe = ar * cr - ai * ci - (br * br - bi * bi);
+  const detIm = ar * ci + ai * cr - 2 * br * bi;
+  const largest = max(max(hypot(ar, ai), hypot(br, bi)), hypot(cr, ci));
+  return hypot(detRe, detIm) / largest > DELAY * min(load<f64>(scale), load<f64>(scale, 32));
 }
 
 // @ts-ignore: decorator of AssemblyScript
@@ -79,8 +129,13 @@ function hypot(a: f64, b: f64): f64 {
   return x * sqrt(1 + t * t);
 }
 
-export function exchange(p: usize, nf: i32, np: i32, a: i32, b: i32, perm: usize): void {
+export function exchange(p: usize, nf: i32, np: i32, a: i32, b: i32, d: usize, perm: usize): void {
   const plane = (<usize>(nf * np)) << 3;
+  const da = d + ((<usize>a) << 5);
+  const db = d + ((<usize>b) << 5);
+  const scale = load<f64>(da);
+  store<f64>(da, load<f64>(db));
+  store<f64>(db, scale);
   const pa = perm + ((<usize>a) << 2);
   const pb = perm + ((<usize>b) << 2);
   const held = load<i32>(pa);

@@ -3,11 +3,13 @@
 // Pointers are bytes. Layout of fronts, meaning of arguments: ../kernels.ts. The order of operations is that of
 // ../twin.ts in exact arithmetic; sums are grouped differently.
 
-import { factorDiagonal } from './diagonal';
+import { exchange, factorDiagonal, measureColumns } from './diagonal';
 import { clearTile, updateTile } from './tile';
 
 /** Columns eliminated together. */
 const PANEL: i32 = 48;
+/** As in ../kernels.ts. */
+const MOST_DELAYED: i32 = 128;
 /** Row slabs (of 4 rows) of L that stay in the second-level cache while all columns pass. */
 const SLAB_BLOCK: i32 = 32;
 
@@ -103,23 +105,38 @@ export function addContribution(p: usize, s: usize, nf: i32, np: i32, from: usiz
   }
 }
 
-export function packContribution(s: usize, nb: i32, to: usize): void {
+export function packContribution(p: usize, s: usize, nf: i32, np: i32, e: i32, to: usize, work: usize): void {
+  const nb = nf - np;
+  // Imaginary parts of unfinished columns could be overwritten by real parts: put aside.
+  const planeP = (<usize>(nf * np)) << 3;
+  let aside = work;
+  for (let j = e; j < np; j++) {
+    aside = copyDown(aside, p + planeP + ((<usize>(j * nf + j)) << 3), nf - j);
+  }
+  for (let j = e; j < np; j++) to = copyDown(to, p + ((<usize>(j * nf + j)) << 3), nf - j);
   for (let plane = 0; plane < 2; plane++) {
+    if (plane == 1) to = copyDown(to, work, <i32>((aside - work) >> 3));
     let from = s + ((<usize>(plane * nb * nb)) << 3);
     for (let j = 0; j < nb; j++) {
-      let at = from;
-      const end = from + ((<usize>(nb - j)) << 3);
-      // Loads run ahead of the stores, which go down: overlap is safe.
-      for (; at + 24 < end; at += 32, to += 32) {
-        const x = v128.load(at);
-        const y = v128.load(at, 16);
-        v128.store(to, x);
-        v128.store(to, y, 16);
-      }
-      for (; at < end; at += 8, to += 8) store<f64>(to, load<f64>(at));
+      to = copyDown(to, from, nb - j);
       from += (<usize>(nb + 1)) << 3;
     }
   }
+}
+
+/** Loads run ahead of the stores, which go down: overlap is safe. Returns the end. */
+// @ts-ignore: decorator of AssemblyScript
+@inline
+function copyDown(to: usize, at: usize, count: i32): usize {
+  const end = at + ((<usize>count) << 3);
+  for (; at + 24 < end; at += 32, to += 32) {
+    const x = v128.load(at);
+    const y = v128.load(at, 16);
+    v128.store(to, x);
+    v128.store(to, y, 16);
+  }
+  for (; at < end; at += 8, to += 8) store<f64>(to, load<f64>(at));
+  return to;
 }
 
 export function factorFront(
@@ -131,43 +148,75 @@ export function factorFront(
   perm: usize,
   work: usize,
   tiny: f64,
+  force: bool,
 ): i32 {
-  let perturbed = 0;
   for (let j = 0; j < np; j++) store<i32>(perm + ((<usize>j) << 2), j);
   const plane = (<usize>(nf * np)) << 3;
-  for (let first = 0; first < np; first += PANEL) {
-    const last = min(np, first + PANEL);
-    const width = last - first;
-    perturbed += factorDiagonal(p, nf, np, first, last, d, perm, tiny);
-    const rows = nf - last;
-    if (rows == 0) continue;
-    // work: rows of L₁₁ in pairs, then W and L as slabs of 4 rows: per column 4 real, 4 imaginary parts.
-    const triangle = work;
-    const slabs = (rows + 3) >> 2;
-    const stride = (<usize>width) << 6;
-    const w = triangle + ((<usize>((width + 1) * (width + 1))) << 4);
-    const l = w + <usize>slabs * stride;
-    packTriangle(p + ((<usize>(first * nf + first)) << 3), (<usize>nf) << 3, plane, width, triangle);
-    for (let slab = 0; slab < slabs; slab++) {
-      const row = last + 4 * slab;
-      const height = min(4, nf - row);
-      const ws = w + <usize>slab * stride;
-      const from = p + ((<usize>(first * nf + row)) << 3);
-      packSlab(from, (<usize>nf) << 3, plane, width, height, ws);
-      solveSlab(ws, triangle, width);
-      scaleSlab(ws, l + <usize>slab * stride, d + ((<usize>first) << 5), width);
-      unpackSlab(from, (<usize>nf) << 3, plane, width, height, l + <usize>slab * stride);
+  const ld = (<usize>nf) << 3;
+  measureColumns(p, nf, np, d);
+  store<f64>(d + ((<usize>np) << 5), 0);
+  let done = 0;
+  let limit = np; // rows limit..np were tried in vain
+  let forcing = false;
+  let progress = false;
+  for (;;) {
+    if (done == limit) {
+      if (limit == np) break;
+      if (!progress) {
+        if (!force && np - done <= MOST_DELAYED) break;
+        forcing = true;
+      }
+      limit = np;
+      progress = false;
     }
-    updateTrailing(p, s, nf, np, last, width, w, l, slabs, stride);
+    const first = done;
+    const last = min(limit, first + PANEL);
+    const width = last - first;
+    done = factorDiagonal(p, nf, np, first, last, d, perm, tiny, forcing);
+    if (done > first) progress = true;
+    const rows = nf - last;
+    if (rows > 0 && done > first) {
+      // work: rows of L₁₁ in pairs, then W and L as slabs of 4 rows: per column 4 real, 4 imaginary parts.
+      const slabs = (rows + 3) >> 2;
+      const stride = (<usize>width) << 6;
+      const w = work + ((<usize>((width + 1) * (width + 1))) << 4);
+      const l = w + <usize>slabs * stride;
+      packTriangle(p + ((<usize>(first * nf + first)) << 3), ld, plane, width, done - first, work);
+      for (let slab = 0; slab < slabs; slab++) {
+        const row = last + 4 * slab;
+        const height = min(4, nf - row);
+        const ws = w + <usize>slab * stride;
+        const ls = l + <usize>slab * stride;
+        const from = p + ((<usize>(first * nf + row)) << 3);
+        packSlab(from, ld, plane, width, height, ws);
+        solveSlab(ws, work, width);
+        scaleSlab(ws, ls, d + ((<usize>first) << 5), done - first, width);
+        unpackSlab(from, ld, plane, width, height, ls);
+      }
+      updateTrailing(p, s, nf, np, last, done - first, w, l, slabs, stride);
+    }
+    for (let j = last - 1; j >= done; j--) {
+      limit--;
+      if (limit > j) exchange(p, nf, np, j, limit, d, perm);
+    }
   }
-  return perturbed;
+  return done;
 }
 
-/** Rows j, j+1 of L₁₁ side by side: for k < j four numbers (re, im of row j, then of row j+1), then k = j likewise. */
-function packTriangle(from: usize, ld: usize, plane: usize, width: i32, to: usize): void {
+/**
+ * Rows j, j+1 of L₁₁ side by side: for k < j four numbers (re, im of row j, then of row j+1), then k = j likewise;
+ * zeros for the columns from `done` on, which were not eliminated.
+ */
+function packTriangle(from: usize, ld: usize, plane: usize, width: i32, done: i32, to: usize): void {
   for (let j = 0; j < width; j += 2) {
     const both = j + 1 < width;
     for (let k = 0; k <= j; k++) {
+      if (k >= done) {
+        v128.store(to, f64x2.splat(0));
+        v128.store(to, f64x2.splat(0), 16);
+        to += 32;
+        continue;
+      }
       const at = from + <usize>k * ld + ((<usize>j) << 3);
       store<f64>(to, load<f64>(at));
       store<f64>(to, load<f64>(at + plane), 8);
@@ -283,9 +332,16 @@ function solveSlab(ws: usize, triangle: usize, width: i32): void {
   }
 }
 
-/** L = W D⁻¹ for 4 rows. */
-function scaleSlab(from: usize, to: usize, d: usize, width: i32): void {
-  for (let k = 0; k < width; k++, from += 64, to += 64, d += 32) {
+/** L = W D⁻¹ for 4 rows; columns from `done` on are copied. */
+function scaleSlab(from: usize, to: usize, d: usize, done: i32, width: i32): void {
+  for (let k = done; k < width; k++) {
+    const step = (<usize>k) << 6;
+    v128.store(to + step, v128.load(from + step));
+    v128.store(to + step, v128.load(from + step, 16), 16);
+    v128.store(to + step, v128.load(from + step, 32), 32);
+    v128.store(to + step, v128.load(from + step, 48), 48);
+  }
+  for (let k = 0; k < done; k++, from += 64, to += 64, d += 32) {
     const pr = v128.load64_splat(d);
     const pi = v128.load64_splat(d, 8);
     const double = load<f64>(d, 16) != 0 || load<f64>(d, 24) != 0;

@@ -22,7 +22,7 @@ export function forwardOne(
     const plane = (<usize>((np + nb) * np)) << 3;
     gatherForwardOne(x, order + ((<usize>place) << 2), np, nb, local);
     forwardColumnsOne(l, plane, np + nb, 0, np, local);
-    scatterForwardOne(x, place, boundary + ((<usize>from) << 2), np, nb, local, d + ((<usize>place) << 5));
+    scatterForwardOne(x, order + ((<usize>place) << 2), boundary + ((<usize>from) << 2), np, nb, local, d + ((<usize>place) << 5));
     l += plane + plane;
   }
 }
@@ -45,7 +45,7 @@ export function backwardOne(
     const nb = load<i32>(boundaryStarts + ((<usize>f) << 2), 4) - from;
     const plane = (<usize>((np + nb) * np)) << 3;
     l -= plane + plane;
-    gatherBackwardOne(x, place, boundary + ((<usize>from) << 2), np, nb, local);
+    gatherBackwardOne(x, order + ((<usize>place) << 2), boundary + ((<usize>from) << 2), np, nb, local);
     backwardColumnsOne(l, plane, np + nb, 0, np, local);
     scatterBackwardOne(x, order + ((<usize>place) << 2), np, np + nb, local);
   }
@@ -64,7 +64,7 @@ export function gatherForwardOne(x: usize, rows: usize, np: i32, nb: i32, local:
   }
 }
 
-export function scatterForwardOne(x: usize, place: i32, edge: usize, np: i32, nb: i32, local: usize, d: usize): void {
+export function scatterForwardOne(x: usize, rows: usize, edge: usize, np: i32, nb: i32, local: usize, d: usize): void {
   const im = (<usize>(np + nb)) << 3;
   let from = local + ((<usize>np) << 3);
   for (let i = 0; i < nb; i++, from += 8) {
@@ -73,8 +73,8 @@ export function scatterForwardOne(x: usize, place: i32, edge: usize, np: i32, nb
     store<f64>(to, load<f64>(to, 8) + load<f64>(from + im), 8);
   }
   from = local;
-  let to = x + ((<usize>place) << 4);
-  for (let j = 0; j < np; j++, from += 8, to += 16, d += 32) {
+  for (let j = 0; j < np; j++, from += 8, d += 32) {
+    const to = x + ((<usize>load<i32>(rows + ((<usize>j) << 2))) << 4);
     const pr = load<f64>(d);
     const pi = load<f64>(d, 8);
     const qr = load<f64>(d, 16);
@@ -90,13 +90,13 @@ export function scatterForwardOne(x: usize, place: i32, edge: usize, np: i32, nb
       const bi = load<f64>(from + im, 8);
       ur = ur + br * qr - bi * qi;
       ui = ui + br * qi + bi * qr;
-      store<f64>(to, ar * qr - ai * qi + br * cr - bi * ci, 16);
-      store<f64>(to, ar * qi + ai * qr + br * ci + bi * cr, 24);
+      const next = x + ((<usize>load<i32>(rows + ((<usize>j) << 2), 4)) << 4);
+      store<f64>(next, ar * qr - ai * qi + br * cr - bi * ci);
+      store<f64>(next, ar * qi + ai * qr + br * ci + bi * cr, 8);
       store<f64>(to, ur);
       store<f64>(to, ui, 8);
       j++;
       from += 8;
-      to += 16;
       d += 32;
     } else {
       store<f64>(to, ur);
@@ -105,15 +105,15 @@ export function scatterForwardOne(x: usize, place: i32, edge: usize, np: i32, nb
   }
 }
 
-export function gatherBackwardOne(x: usize, place: i32, edge: usize, np: i32, nb: i32, local: usize): void {
+export function gatherBackwardOne(x: usize, rows: usize, edge: usize, np: i32, nb: i32, local: usize): void {
   const im = (<usize>(np + nb)) << 3;
-  let at = x + ((<usize>place) << 4);
-  for (let j = 0; j < np; j++, local += 8, at += 16) {
+  for (let j = 0; j < np; j++, local += 8) {
+    const at = x + ((<usize>load<i32>(rows + ((<usize>j) << 2))) << 4);
     store<f64>(local, load<f64>(at));
     store<f64>(local + im, load<f64>(at, 8));
   }
   for (let i = 0; i < nb; i++, local += 8) {
-    at = x + ((<usize>load<i32>(edge + ((<usize>i) << 2))) << 4);
+    const at = x + ((<usize>load<i32>(edge + ((<usize>i) << 2))) << 4);
     store<f64>(local, load<f64>(at));
     store<f64>(local + im, load<f64>(at, 8));
   }

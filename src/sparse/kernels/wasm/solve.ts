@@ -31,7 +31,7 @@ export function forwardQuads(
       const xq = x + <usize>q * quadBytes;
       gatherForward(xq, rows, np, nb, local);
       forwardColumns(l, plane, np + nb, 0, np, local);
-      scatterForward(xq, place, edge, np, nb, local, d + ((<usize>place) << 5));
+      scatterForward(xq, rows, edge, np, nb, local, d + ((<usize>place) << 5));
     }
     l += plane + plane;
   }
@@ -62,7 +62,7 @@ export function backwardQuads(
     l -= plane + plane;
     for (let q = 0; q < quads; q++) {
       const xq = x + <usize>q * quadBytes;
-      gatherBackward(xq, place, edge, np, nb, local);
+      gatherBackward(xq, rows, edge, np, nb, local);
       backwardColumns(l, plane, np + nb, 0, np, local);
       scatterBackward(xq, rows, np, local);
     }
@@ -85,8 +85,8 @@ export function gatherForward(x: usize, rows: usize, np: i32, nb: i32, local: us
   for (const end = to + ((<usize>nb) << 6); to < end; to += 16) v128.store(to, zero);
 }
 
-/** Boundary rows go to x by addition, pivot rows divided by D and in pivot order. */
-export function scatterForward(x: usize, place: i32, edge: usize, np: i32, nb: i32, local: usize, d: usize): void {
+/** Boundary rows go to x by addition, pivot rows divided by D. */
+export function scatterForward(x: usize, rows: usize, edge: usize, np: i32, nb: i32, local: usize, d: usize): void {
   let from = local + ((<usize>np) << 6);
   for (let i = 0; i < nb; i++, from += 64) {
     const to = x + ((<usize>load<i32>(edge + ((<usize>i) << 2))) << 6);
@@ -96,8 +96,8 @@ export function scatterForward(x: usize, place: i32, edge: usize, np: i32, nb: i
     v128.store(to, f64x2.add(v128.load(to, 48), v128.load(from, 48)), 48);
   }
   from = local;
-  let to = x + ((<usize>place) << 6);
-  for (let j = 0; j < np; j++, from += 64, to += 64, d += 32) {
+  for (let j = 0; j < np; j++, from += 64, d += 32) {
+    const to = x + ((<usize>load<i32>(rows + ((<usize>j) << 2))) << 6);
     const pr = v128.load64_splat(d);
     const pi = v128.load64_splat(d, 8);
     const double = load<f64>(d, 16) != 0 || load<f64>(d, 24) != 0;
@@ -115,21 +115,21 @@ export function scatterForward(x: usize, place: i32, edge: usize, np: i32, nb: i
         const bi = v128.load(from + h, 96);
         ur = f64x2.sub(f64x2.add(ur, f64x2.mul(br, qr)), f64x2.mul(bi, qi));
         ui = f64x2.add(f64x2.add(ui, f64x2.mul(br, qi)), f64x2.mul(bi, qr));
+        const next = x + ((<usize>load<i32>(rows + ((<usize>j) << 2), 4)) << 6);
         v128.store(
-          to + h,
+          next + h,
           f64x2.sub(
             f64x2.add(f64x2.sub(f64x2.mul(ar, qr), f64x2.mul(ai, qi)), f64x2.mul(br, cr)),
             f64x2.mul(bi, ci),
           ),
-          64,
         );
         v128.store(
-          to + h,
+          next + h,
           f64x2.add(
             f64x2.add(f64x2.add(f64x2.mul(ar, qi), f64x2.mul(ai, qr)), f64x2.mul(br, ci)),
             f64x2.mul(bi, cr),
           ),
-          96,
+          32,
         );
       }
       v128.store(to + h, ur);
@@ -138,16 +138,14 @@ export function scatterForward(x: usize, place: i32, edge: usize, np: i32, nb: i
     if (double) {
       j++;
       from += 64;
-      to += 64;
       d += 32;
     }
   }
 }
 
-export function gatherBackward(x: usize, place: i32, edge: usize, np: i32, nb: i32, local: usize): void {
+export function gatherBackward(x: usize, rows: usize, edge: usize, np: i32, nb: i32, local: usize): void {
   let to = local;
-  let from = x + ((<usize>place) << 6);
-  for (let j = 0; j < np; j++, to += 64, from += 64) copyRow(to, from);
+  for (let j = 0; j < np; j++, to += 64) copyRow(to, x + ((<usize>load<i32>(rows + ((<usize>j) << 2))) << 6));
   for (let i = 0; i < nb; i++, to += 64) copyRow(to, x + ((<usize>load<i32>(edge + ((<usize>i) << 2))) << 6));
 }
 
