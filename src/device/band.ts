@@ -20,7 +20,7 @@ export function readBand(
   const quantity = given[0];
   if (quantity === undefined || given.length > 1) {
     log.report(
-      given.length > 1 ? ['band', given[1]!] : ['band'],
+      given.length > 1 ? ['band', given[1]] : ['band'],
       given.length === 0 ? 'a band without a quantity' : `a band in ${given.length} quantities: ${given.join(', ')}`,
       `exactly one of ${listNames(BAND_KEYS)}`,
       given.length === 0 ? 'add one, such as wavelength: [1.5, 1.6]' : 'keep one of them',

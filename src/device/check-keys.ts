@@ -87,7 +87,7 @@ function nearestOption(issue: Extract<Issue, { code: 'invalid_union' }>): Issue[
   const fitting = issue.errors.filter(
     (issues) => !issues.some((i) => i.path.length === 0 && i.code === 'invalid_type'),
   );
-  return fitting.sort((a, b) => a.length - b.length)[0] as Issue[] | undefined;
+  return fitting.sort((a, b) => a.length - b.length)[0];
 }
 
 function unknownKey(source: Source, root: JsonSchema, path: Path, key: string): Finding {

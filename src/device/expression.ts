@@ -36,7 +36,7 @@ export function parseExpression(text: string): Expression {
     throw new ExpressionError(1, `${text.length} characters`, `at most ${MOST_CHARACTERS}`, 'use knobs for the parts');
   const tokens = tokenize(text);
   let next = 0;
-  const is = (symbol: string): boolean => tokens[next]!.text === symbol;
+  const is = (symbol: string): boolean => tokens[next].text === symbol;
 
   const sum = (): Expression => {
     let left = product();
@@ -49,7 +49,7 @@ export function parseExpression(text: string): Expression {
     return left;
   };
   const binary = (left: Expression, operand: () => Expression): Expression => {
-    const { text: name, at } = tokens[next++]!;
+    const { text: name, at } = tokens[next++];
     return { kind: 'call', name, at, terms: [left, operand()] };
   };
   const signed = (): Expression => {
@@ -58,7 +58,7 @@ export function parseExpression(text: string): Expression {
       return signed();
     }
     if (!is('-')) return power();
-    const { at } = tokens[next++]!;
+    const { at } = tokens[next++];
     return { kind: 'call', name: 'negate', at, terms: [signed()] };
   };
   const power = (): Expression => {
@@ -66,7 +66,7 @@ export function parseExpression(text: string): Expression {
     return is('^') ? binary(base, signed) : base;
   };
   const value = (): Expression => {
-    const token = tokens[next++]!;
+    const token = tokens[next++];
     if (token.kind === 'number') return { kind: 'number', at: token.at, value: Number(token.text) };
     if (token.kind === 'name') {
       if (is('(')) return call(token);
@@ -96,7 +96,7 @@ export function parseExpression(text: string): Expression {
         `one of ${Object.keys(FUNCTIONS).join(', ')}`,
         'use one of these; a product is written with *',
       );
-    const opened = tokens[next++]!.at;
+    const opened = tokens[next++].at;
     const terms = [sum()];
     while (is(',')) {
       next++;
@@ -115,7 +115,7 @@ export function parseExpression(text: string): Expression {
   const close = (opened: number): void => {
     if (!is(')'))
       throw new ExpressionError(
-        tokens[next]!.at,
+        tokens[next].at,
         `the ( of column ${opened} is not closed`,
         ')',
         'add the ); inside [ ] or { } of YAML an expression with a comma needs quotes',
@@ -124,7 +124,7 @@ export function parseExpression(text: string): Expression {
   };
 
   const result = sum();
-  const rest = tokens[next]!;
+  const rest = tokens[next];
   if (rest.kind !== 'end')
     throw new ExpressionError(
       rest.at,
@@ -162,7 +162,7 @@ export function evaluateExpression(expression: Expression, values: ReadonlyMap<s
       return -a;
     default:
       return finite(
-        FUNCTIONS[name]!.of(...terms),
+        FUNCTIONS[name].of(...terms),
         at,
         `${name} of ${terms.join(', ')}, which is not a finite real number`,
       );
@@ -224,7 +224,7 @@ function tokenize(text: string): Token[] {
       );
     }
     end = pattern.lastIndex;
-    const token = (match[1] ?? match[2] ?? match[3])!;
+    const token = match[1] ?? match[2] ?? match[3];
     const kind = match[1] !== undefined ? 'number' : match[2] !== undefined ? 'name' : 'symbol';
     tokens.push({ kind, text: token, at: end - token.length + 1 });
   }

@@ -94,13 +94,13 @@ function editDistance(a: string, b: string): number {
   for (let i = 1; i <= a.length; i++) {
     const row = [i];
     for (let j = 1; j <= b.length; j++) {
-      const change = last[j - 1]! + (a[i - 1] === b[j - 1] ? 0 : 1);
-      let d = Math.min(change, last[j]! + 1, row[j - 1]! + 1);
-      if (i > 1 && j > 1 && a[i - 1] === b[j - 2] && a[i - 2] === b[j - 1]) d = Math.min(d, before[j - 2]! + 1);
+      const change = last[j - 1] + (a[i - 1] === b[j - 1] ? 0 : 1);
+      let d = Math.min(change, last[j] + 1, row[j - 1] + 1);
+      if (i > 1 && j > 1 && a[i - 1] === b[j - 2] && a[i - 2] === b[j - 1]) d = Math.min(d, before[j - 2] + 1);
       row.push(d);
     }
     before = last;
     last = row;
   }
-  return last[b.length]!;
+  return last[b.length];
 }

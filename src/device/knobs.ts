@@ -30,7 +30,7 @@ export function settleKnobs(
   const values = settleValues(input, chosen, log);
   const numbers = numberReader(log, values);
   const knobs = names.map((name): Knob => {
-    const entry = input[name]!;
+    const entry = input[name];
     const value = values.get(name)!;
     if (typeof entry !== 'object') return { name, value };
     const range = entry.range && numbers.readPoint(entry.range, ['knobs', name, 'range']);
@@ -95,7 +95,7 @@ function settleValues(
 
   function settle(name: string): void {
     if (values.has(name)) return;
-    const entry = input[name]!;
+    const entry = input[name];
     const written = typeof entry === 'object' ? entry.value : entry;
     const path: Path = typeof entry === 'object' ? ['knobs', name, 'value'] : ['knobs', name];
     if (RESERVED_NAMES.has(name)) {
@@ -107,7 +107,7 @@ function settleValues(
         'key',
       );
       values.set(name, NaN);
-    } else if (Object.hasOwn(chosen, name)) values.set(name, chosen[name]!);
+    } else if (Object.hasOwn(chosen, name)) values.set(name, chosen[name]);
     else if (typeof written === 'number') values.set(name, written);
     else {
       open.push(name);

@@ -59,8 +59,12 @@ export function openLog(source: Source): Log {
 /** Reads numbers and expressions at given knob values. */
 export interface NumberReader {
   /** Value at a path; NaN (with a finding made) when it is no finite number or fails the demand. */
-  read(value: number | string, path: Path, demand?: Demand): number;
-  readPoint(value: readonly [number | string, number | string], path: Path, demand?: Demand): [number, number];
+  readonly read: (value: number | string, path: Path, demand?: Demand) => number;
+  readonly readPoint: (
+    value: readonly [number | string, number | string],
+    path: Path,
+    demand?: Demand,
+  ) => [number, number];
 }
 
 /** @param knobs values by name; NaN for a knob whose own finding is already made. */

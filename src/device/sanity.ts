@@ -40,7 +40,7 @@ function checkSize(device: Device, placed: readonly PlacedBody[], log: Log): voi
   let most = wavelengthsAcross;
   let least = wavelengthsAcross;
   device.bodies.forEach((body, i) => {
-    const across = (2 * circles[i]!.radius * modulus(indexOf(body))) / wavelength;
+    const across = (2 * circles[i].radius * modulus(indexOf(body))) / wavelength;
     most = Math.max(most, across);
     least = Math.max(least, (2 * circle.radius * modulus(indexOf(body))) / wavelength);
   });
@@ -65,7 +65,7 @@ function checkSize(device: Device, placed: readonly PlacedBody[], log: Log): voi
 
 /** One finding for each entry of the file that has a body too small. */
 function checkParts(circles: readonly Circle[], whole: Circle, placed: readonly PlacedBody[], log: Log): void {
-  const small = placed.filter((_, i) => circles[i]!.radius < SMALLEST_PART * whole.radius);
+  const small = placed.filter((_, i) => circles[i].radius < SMALLEST_PART * whole.radius);
   for (const { body, path } of new Map(small.map((one) => [one.body.group, one])).values())
     log.report(
       path,
@@ -82,7 +82,7 @@ function checkThinPlaces(device: Device, placed: readonly PlacedBody[], log: Log
   const unit = device.lengthUnit === 'none' ? '' : ` ${device.lengthUnit}`;
   const seen = new Set<string>();
   for (const { first, second, width, place } of thinPlaces(shapes, TOUCHING * radius, SMALLEST_PART * radius)) {
-    const [a, b] = [placed[first]!, placed[second]!];
+    const [a, b] = [placed[first], placed[second]];
     const pair = `${a.body.group} ${b.body.group}`;
     if (seen.has(pair)) continue;
     seen.add(pair);
@@ -122,7 +122,7 @@ function checkFlatResonance(device: Device, placed: readonly PlacedBody[], log: 
   if (![...kinds.values()].some((a) => [...kinds.values()].some((b) => isOpposite(a, b)))) return;
   const reported = new Set<string>();
   const refuse = (i: number, value: Complex, other: Complex, neighbour: string): void => {
-    const { body, path } = placed[i]!;
+    const { body, path } = placed[i];
     if (reported.has(body.material)) return;
     reported.add(body.material);
     log.report(
@@ -151,7 +151,7 @@ const isOpposite = (a: Complex, b: Complex): boolean => {
 
 /** Whether some sampled point of the body's boundary lies in no other body. */
 function meetsBackground(bodies: readonly Body[], i: number): boolean {
-  const samples = bodies[i]!.shape.flat().flatMap((piece) => [pointAt(piece, 0), pointAt(piece, 0.5)]);
+  const samples = bodies[i].shape.flat().flatMap((piece) => [pointAt(piece, 0), pointAt(piece, 0.5)]);
   return samples.some((p) => !bodies.some((other, j) => j !== i && containsPoint(other.shape, p)));
 }
 

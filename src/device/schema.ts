@@ -7,7 +7,7 @@ export const FORMAT_VERSION = 1;
 
 /** JSON Schema (draft 2020-12) of the device file, for editors. The check itself uses the same source. */
 export function deviceJsonSchema(): Record<string, unknown> {
-  return z.toJSONSchema(deviceSchema, { io: 'input', target: 'draft-2020-12' }) as Record<string, unknown>;
+  return z.toJSONSchema(deviceSchema, { io: 'input', target: 'draft-2020-12' });
 }
 
 export const NUMBER = 'a number, or an expression of knobs such as "2*radius + 0.1"';

@@ -20,7 +20,7 @@ export function readShape(input: ShapesInput, path: Path, numbers: NumberReader,
   const given = SHAPE_KEYS.filter((key) => input[key] !== undefined);
   if (given.length !== 1) {
     log.report(
-      given.length === 0 ? path : [...path, given[1]!],
+      given.length === 0 ? path : [...path, given[1]],
       given.length === 0 ? 'no shape' : `${given.length} shapes: ${given.join(', ')}`,
       `exactly one of ${listNames(SHAPE_KEYS)}`,
       given.length === 0
@@ -31,7 +31,7 @@ export function readShape(input: ShapesInput, path: Path, numbers: NumberReader,
     return null;
   }
   const before = log.findings.length;
-  const build = shapeBuilder(input, [...path, given[0]!], numbers, log);
+  const build = shapeBuilder(input, [...path, given[0]], numbers, log);
   return build === null || log.findings.length > before ? null : build();
 }
 

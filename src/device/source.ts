@@ -98,7 +98,7 @@ function tooDeep(text: string): number {
   let column = 0;
   let atStart = true;
   for (let i = 0; i < text.length; i++) {
-    const c = text[i]!;
+    const c = text[i];
     if (c === '\n') {
       column = 0;
       atStart = true;
@@ -152,8 +152,8 @@ function plainValue(root: ParsedNode, targets: Targets, fail: Fail): unknown {
           'the name of an anchor (&name) finished above it',
           'an expression that begins with * needs a left factor',
         );
-      targets.set(node as Alias, target as ParsedNode);
-      return convert(target as ParsedNode, path);
+      targets.set(node, target);
+      return convert(target, path);
     }
     if (node.anchor !== undefined) anchors.set(node.anchor, node);
     if (isScalar(node)) return typeof node.value === 'bigint' ? Number(node.value) : node.value;
@@ -161,7 +161,7 @@ function plainValue(root: ParsedNode, targets: Targets, fail: Fail): unknown {
     const value = isMap(node)
       ? convertMap(node, path)
       : isSeq(node)
-        ? node.items.map((item, i) => convert(item as ParsedNode, [...path, i]))
+        ? node.items.map((item, i) => convert(item, [...path, i]))
         : null;
     open.delete(node);
     return value;
@@ -189,7 +189,7 @@ function plainValue(root: ParsedNode, targets: Targets, fail: Fail): unknown {
           'each key once',
           'remove one of the two, or rename it',
         );
-      value[name] = convert(pair.value as ParsedNode | null, [...path, name]);
+      value[name] = convert(pair.value, [...path, name]);
     }
     return value;
   };
@@ -202,7 +202,9 @@ function locate(root: ParsedNode, targets: Targets, path: Path, part: 'key' | 'v
   let offset = start(root);
   for (let i = 0; i < path.length; i++) {
     if (isMap(node)) {
-      const pair = node.items.find((item) => isScalar(item.key) && String(item.key.value) === String(path[i]));
+      const pair: { key: unknown; value: unknown } | undefined = node.items.find(
+        (item) => isScalar(item.key) && String(item.key.value) === String(path[i]),
+      );
       if (pair === undefined) return { node: null, offset };
       const key = pair.key as ParsedNode;
       node = pair.value as ParsedNode | null;
@@ -214,7 +216,7 @@ function locate(root: ParsedNode, targets: Targets, path: Path, part: 'key' | 'v
       node = item;
       offset = start(item);
     } else return { node: null, offset };
-    while (isAlias(node)) node = targets.get(node as Alias) ?? null;
+    while (isAlias(node)) node = targets.get(node) ?? null;
   }
   return { node, offset };
 }
@@ -236,7 +238,7 @@ function placeAt(text: string, offset: number): Place {
 function excerpt(text: string, offset: number): string {
   const rest = text
     .slice(offset, offset + 80)
-    .split(/\r?\n/, 1)[0]!
+    .split(/\r?\n/, 1)[0]
     .trim();
   return rest === '' ? 'the end of a line' : showValue(rest);
 }

@@ -11,7 +11,7 @@ import { outlineContains } from './inside.ts';
 export function areaOf(shape: Shape): number {
   let area = 0;
   shape.forEach((outline, i) => {
-    const p = pointAt(outline[0]!, 0.5);
+    const p = pointAt(outline[0], 0.5);
     const depth = shape.filter((other, j) => j !== i && outlineContains(other, p)).length;
     area += (depth % 2 === 0 ? 1 : -1) * Math.abs(signedArea(outline));
   });
@@ -20,14 +20,14 @@ export function areaOf(shape: Shape): number {
 
 /** Area enclosed by the outline, positive when it runs counterclockwise. */
 export function signedArea(outline: Outline): number {
-  const [ox, oy] = pointAt(outline[0]!, 0);
+  const [ox, oy] = pointAt(outline[0], 0);
   // Half the cross product about the first point, so that far-away shapes lose no digits.
   const half = (p: Point, q: Point): number => ((p[0] - ox) * (q[1] - oy) - (q[0] - ox) * (p[1] - oy)) / 2;
   let area = 0;
   for (let i = 0; i < outline.length; i++) {
-    const piece = outline[i]!;
+    const piece = outline[i];
     const from = pointAt(piece, 0);
-    const to = pointAt(outline[(i + 1) % outline.length]!, 0);
+    const to = pointAt(outline[(i + 1) % outline.length], 0);
     area += half(from, to);
     // Segment between arc and chord: ½ rx ry (sweep − sin sweep), whatever the tilt.
     if (piece.kind === 'arc') area += (piece.radii[0] * piece.radii[1] * segment(piece.sweep)) / 2;

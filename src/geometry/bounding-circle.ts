@@ -17,8 +17,8 @@ export interface Circle {
 export function boundingCircle(shapes: readonly Shape[]): Circle {
   const pieces = shapes.flatMap((shape) => shape.flat());
   if (pieces.length === 0) throw new RangeError('expected one shape or more, got none');
-  const support: Point[] = [pointAt(pieces[0]!, 0)];
-  let circle: Circle = { center: support[0]!, radius: 0 };
+  const support: Point[] = [pointAt(pieces[0], 0)];
+  let circle: Circle = { center: support[0], radius: 0 };
   for (let round = 0; round < 200; round++) {
     const far = farthest(pieces, circle.center);
     if (far.distance <= circle.radius * (1 + 1e-12)) break;
@@ -59,16 +59,16 @@ function farthest(pieces: readonly CurvePiece[], from: Point): { point: Point; d
 
 /** Smallest circle around a few points (Welzl's incremental form, in the order given). */
 function circleAround(points: readonly Point[]): Circle {
-  let circle: Circle = { center: points[0]!, radius: 0 };
+  let circle: Circle = { center: points[0], radius: 0 };
   const outside = (p: Point): boolean =>
     Math.hypot(p[0] - circle.center[0], p[1] - circle.center[1]) > circle.radius * (1 + 1e-14);
   for (let i = 1; i < points.length; i++) {
-    if (!outside(points[i]!)) continue;
-    circle = { center: points[i]!, radius: 0 };
+    if (!outside(points[i])) continue;
+    circle = { center: points[i], radius: 0 };
     for (let j = 0; j < i; j++) {
-      if (!outside(points[j]!)) continue;
-      circle = circleOnTwo(points[i]!, points[j]!);
-      for (let k = 0; k < j; k++) if (outside(points[k]!)) circle = circleOnThree(points[i]!, points[j]!, points[k]!);
+      if (!outside(points[j])) continue;
+      circle = circleOnTwo(points[i], points[j]);
+      for (let k = 0; k < j; k++) if (outside(points[k])) circle = circleOnThree(points[i], points[j], points[k]);
     }
   }
   return circle;

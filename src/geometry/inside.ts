@@ -18,10 +18,10 @@ export function containsPoint(shape: Shape, point: Point): boolean {
 /** Parity of crossings of the outline with the ray from the point to x = +∞. */
 export function outlineContains(outline: Outline, point: Point): boolean {
   let inside = false;
-  let from = pointAt(outline[0]!, 0);
+  let from = pointAt(outline[0], 0);
   for (let i = 0; i < outline.length; i++) {
-    const piece = outline[i]!;
-    const to = pointAt(outline[(i + 1) % outline.length]!, 0);
+    const piece = outline[i];
+    const to = pointAt(outline[(i + 1) % outline.length], 0);
     const crossed = piece.kind === 'line' ? lineCrosses(from, to, point) : arcCrosses(piece, from, to, point);
     if (crossed) inside = !inside;
     from = to;

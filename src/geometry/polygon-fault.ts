@@ -20,8 +20,8 @@ export function polygonFault(points: readonly Point[]): PolygonFault | null {
   const n = points.length;
   const repeated = repeatedPoint(points);
   if (repeated !== null) return repeated;
-  const first = points[0]!;
-  if (n < 3 || points.every((p) => orientation(first, points[1]!, p) === 0))
+  const first = points[0];
+  if (n < 3 || points.every((p) => orientation(first, points[1], p) === 0))
     return { kind: 'no area', place: first, first: 0, second: n - 1 };
   const index = new Flatbush(n);
   for (let i = 0; i < n; i++) {
@@ -49,7 +49,7 @@ export function polygonFault(points: readonly Point[]): PolygonFault | null {
 function repeatedPoint(points: readonly Point[]): PolygonFault | null {
   const seen = new Map<string, number>();
   for (let i = 0; i < points.length; i++) {
-    const place = points[i]!;
+    const place = points[i];
     const key = `${place[0] + 0},${place[1] + 0}`;
     const first = seen.get(key);
     if (first !== undefined) return { kind: 'repeated point', place, first, second: i };
@@ -61,9 +61,9 @@ function repeatedPoint(points: readonly Point[]): PolygonFault | null {
 /** Neighbouring sides i and j overlap when the path turns straight back at their common corner. */
 function foldBack(points: readonly Point[], i: number, j: number): PolygonFault | null {
   const n = points.length;
-  const corner = points[j === i + 1 ? j : i]!;
-  const before = points[j === i + 1 ? i : j]!;
-  const after = points[((j === i + 1 ? j : i) + 1) % n]!;
+  const corner = points[j === i + 1 ? j : i];
+  const before = points[j === i + 1 ? i : j];
+  const after = points[((j === i + 1 ? j : i) + 1) % n];
   if (orientation(before, corner, after) !== 0) return null;
   const along = (before[0] - corner[0]) * (after[0] - corner[0]) + (before[1] - corner[1]) * (after[1] - corner[1]);
   return along > 0 ? { kind: 'touching sides', place: corner, first: i, second: j } : null;
@@ -97,7 +97,7 @@ function meeting(points: readonly Point[], i: number, j: number): PolygonFault |
   return touch === null ? null : { kind: 'touching sides', place: touch, first: i, second: j };
 }
 
-const side = (points: readonly Point[], i: number): [Point, Point] => [points[i]!, points[(i + 1) % points.length]!];
+const side = (points: readonly Point[], i: number): [Point, Point] => [points[i], points[(i + 1) % points.length]];
 
 const orientation = (p: Point, q: Point, r: Point): number => Math.sign(orient2d(p[0], p[1], q[0], q[1], r[0], r[1]));
 

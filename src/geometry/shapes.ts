@@ -10,8 +10,8 @@ export const disk = (center: Point, radius: number): Shape => ellipse(center, [r
 /** Disk of radius `outer` with a concentric hole of radius `inner`. */
 export function ring(center: Point, outer: number, inner: number): Shape {
   if (!(inner < outer)) throw new RangeError(`expected inner < outer, got ${inner} and ${outer}`);
-  const hole = disk(center, inner)[0]!;
-  return [disk(center, outer)[0]!, reversed(hole)];
+  const hole = disk(center, inner)[0];
+  return [disk(center, outer)[0], reversed(hole)];
 }
 
 /** Semi-axes `radii`, the first one turned counterclockwise from the x axis by `angle`. */
@@ -52,7 +52,7 @@ export function rectangle(center: Point, size: Point, angle: number, cornerRadiu
     const radii: Point = [cornerRadius, cornerRadius];
     const start = Math.PI + (i * Math.PI) / 2;
     pieces.push({ kind: 'arc', center: end.middle, radii, tilt: angle, start, sweep: Math.PI / 2 });
-    const next = ends[(i + 1) % 4]!;
+    const next = ends[(i + 1) % 4];
     const straight = i % 2 === 0 ? a > cornerRadius : b > cornerRadius;
     if (straight) pieces.push({ kind: 'line', from: end.to, to: next.from });
   });
@@ -63,10 +63,10 @@ export function rectangle(center: Point, size: Point, angle: number, cornerRadiu
 export function polygon(points: readonly Point[]): Shape {
   if (points.length < 3) throw new RangeError(`expected three points or more, got ${points.length}`);
   let twice = 0;
-  const [x0, y0] = points[0]!;
+  const [x0, y0] = points[0];
   for (let i = 1; i + 1 < points.length; i++) {
-    const [x1, y1] = points[i]!;
-    const [x2, y2] = points[i + 1]!;
+    const [x1, y1] = points[i];
+    const [x2, y2] = points[i + 1];
     twice += (x1 - x0) * (y2 - y0) - (x2 - x0) * (y1 - y0);
   }
   return [closedLines(twice < 0 ? [...points].reverse() : points)];
@@ -117,7 +117,7 @@ function reversed(outline: Outline): Outline {
 }
 
 const closedLines = (points: readonly Point[]): LinePiece[] =>
-  points.map((from, i) => ({ kind: 'line', from, to: points[(i + 1) % points.length]! }));
+  points.map((from, i) => ({ kind: 'line', from, to: points[(i + 1) % points.length] }));
 
 /** Turn by `angle` about the origin, then shift to `center`. */
 function placement(center: Point, angle: number): (p: Point) => Point {

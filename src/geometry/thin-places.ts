@@ -49,7 +49,7 @@ export function thinPlaces(shapes: readonly Shape[], touch: number, limit: numbe
     offer(a.shape, a.shape, size, pointAt(a.piece, 0.5));
     const [x0, y0, x1, y1] = a.box;
     for (const j of index.search(x0 - limit, y0 - limit, x1 + limit, y1 + limit, (other) => other > i)) {
-      const b = atoms[j]!;
+      const b = atoms[j];
       if (areNeighbours(a, b, shapes)) continue;
       nearPairs(a, b, limit, (p, q) => offer(a.shape, b.shape, Math.hypot(p[0] - q[0], p[1] - q[1]), middle(p, q)));
     }
@@ -61,8 +61,8 @@ function atomsOf(shapes: readonly Shape[]): Atom[] {
   return shapes.flatMap((shape, s) =>
     shape.flatMap((outline, o) =>
       outline.map((piece, index): Atom => {
-        const before = outline[(index + outline.length - 1) % outline.length]!;
-        const after = outline[(index + 1) % outline.length]!;
+        const before = outline[(index + outline.length - 1) % outline.length];
+        const after = outline[(index + 1) % outline.length];
         const corners: Point[] = [];
         if (!isSmooth(before, piece)) corners.push(pointAt(piece, 0));
         if (!isSmooth(piece, after)) corners.push(pointAt(piece, 1));
@@ -82,7 +82,7 @@ function isSmooth(piece: CurvePiece, next: CurvePiece): boolean {
 
 function areNeighbours(a: Atom, b: Atom, shapes: readonly Shape[]): boolean {
   if (a.shape !== b.shape || a.outline !== b.outline) return false;
-  const n = shapes[a.shape]![a.outline]!.length;
+  const n = shapes[a.shape][a.outline].length;
   return (a.index + 1) % n === b.index || (b.index + 1) % n === a.index;
 }
 
@@ -90,7 +90,7 @@ const middle = (p: Point, q: Point): Point => [(p[0] + q[0]) / 2, (p[1] + q[1]) 
 
 /** Whether a later shape than `first` covers the place, so that the earlier boundary is not seen there. */
 const isCovered = (shapes: readonly Shape[], first: number, place: Point): boolean => {
-  for (let i = first + 1; i < shapes.length; i++) if (containsPoint(shapes[i]!, place)) return true;
+  for (let i = first + 1; i < shapes.length; i++) if (containsPoint(shapes[i], place)) return true;
   return false;
 };
 
@@ -167,14 +167,14 @@ function closeParts(a: CurvePiece, b: CurvePiece, limit: number): [number, numbe
     pairs = pairs.flatMap(([i, j]) =>
       [0, 1, 2, 3]
         .map((n): [number, number] => [2 * i + (n & 1), 2 * j + (n >> 1)])
-        .filter(([u, v]) => boxesMeet(boxes[0]![u]!, boxes[1]![v]!, limit)),
+        .filter(([u, v]) => boxesMeet(boxes[0][u], boxes[1][v], limit)),
     );
   }
   return pairs.map(([i, j]) => [(i + 0.5) / 32, (j + 0.5) / 32]);
 }
 
 const boxesMeet = (p: readonly number[], q: readonly number[], limit: number): boolean =>
-  p[0]! - limit <= q[2]! && q[0]! - limit <= p[2]! && p[1]! - limit <= q[3]! && q[1]! - limit <= p[3]!;
+  p[0] - limit <= q[2] && q[0] - limit <= p[2] && p[1] - limit <= q[3] && q[1] - limit <= p[3];
 
 /**
  * Newton's method on d = A(s) − B(t): d·A′ = 0 and d·B′ = 0. At a crossing it ends with d = 0, at a thin place with the common

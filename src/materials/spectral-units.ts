@@ -46,5 +46,5 @@ function wavenumberPerUnit(quantity: 'frequency' | 'energy', unit: string, metre
   const units: Readonly<Record<string, number>> = quantity === 'frequency' ? FREQUENCY_UNITS : ENERGY_UNITS;
   if (!Object.hasOwn(units, unit))
     throw new RangeError(`expected one of ${Object.keys(units).join(', ')}, got ${unit}`);
-  return (2 * Math.PI * units[unit]! * metres) / (quantity === 'frequency' ? SPEED_OF_LIGHT : ELECTRONVOLT_METRES);
+  return (2 * Math.PI * units[unit] * metres) / (quantity === 'frequency' ? SPEED_OF_LIGHT : ELECTRONVOLT_METRES);
 }

@@ -88,8 +88,8 @@ bodies:
   - { material: glass, disk: { center: [0, 0], radius: twice } }
 `;
   expect(read(text, { knobs: { low: 3 } })).toMatchObject({ band: { kMin: 3, kMax: 6 } });
-  expect(read(text, { knobs: { low: 3 } }).bodies[0]!.shape).toEqual(disk([0, 0], 6));
-  expect(read(text, { knobs: { twice: 1 } }).bodies[0]!.shape).toEqual(disk([0, 0], 1));
+  expect(read(text, { knobs: { low: 3 } }).bodies[0].shape).toEqual(disk([0, 0], 6));
+  expect(read(text, { knobs: { twice: 1 } }).bodies[0].shape).toEqual(disk([0, 0], 1));
   expect(read(text, { band: [1.2, 1.3] }).band).toMatchObject({ limits: [1.2, 1.3], kMin: 1.2, kMax: 1.3 });
 });
 
@@ -173,7 +173,7 @@ describe('arrays', () => {
       [6, 0],
     ]);
     const height = (turn: string): number => {
-      const ys = wheel(turn)[0]!.shape[0]!.map((piece) => (piece.kind === 'line' ? piece.from[1] : 0));
+      const ys = wheel(turn)[0].shape[0].map((piece) => (piece.kind === 'line' ? piece.from[1] : 0));
       return Math.max(...ys) - Math.min(...ys);
     };
     expect(height('')).toBeCloseTo(2, 12);
@@ -214,14 +214,14 @@ test('negative permittivity is a metal, in both polarizations', () => {
     'glass: { index: 1.5 }',
     'metal: { permittivity: [-9, 0.3] }',
   );
-  expect(read(text).bodies[0]!.permittivity).toEqual({ re: -9, im: 0.3 });
-  expect(read(text.replace('Ez', 'Hz')).bodies[0]!.permittivity).toEqual({ re: -9, im: 0.3 });
+  expect(read(text).bodies[0].permittivity).toEqual({ re: -9, im: 0.3 });
+  expect(read(text.replace('Ez', 'Hz')).bodies[0].permittivity).toEqual({ re: -9, im: 0.3 });
 });
 
 test('gain is taken when it is marked', () => {
   const text = `${HEAD}bodies: [ { material: glass, disk: { center: [0, 0], radius: 1 } } ]\n`;
   const { bodies } = read(text.replace('{ index: 1.5 }', '{ index: [1.5, -0.1], gain: true }'));
-  expect(bodies[0]!.permittivity.im).toBeCloseTo(-0.3, 14);
+  expect(bodies[0].permittivity.im).toBeCloseTo(-0.3, 14);
 });
 
 test('ratio -1 against a background that the body never meets is taken', () => {
@@ -337,7 +337,7 @@ describe('random files', () => {
         expect(device.band.limits).toEqual(input.band.wavelength);
         expect(device.knobs).toEqual([{ name: 'half', value: input.knobs.half }]);
         expect(device.bodies.map(({ material }) => material)).toEqual(input.bodies.map(({ material }) => material));
-        expect(device.bodies[0]!.pumpWeight).toBe(input.pump.bodies.body1);
+        expect(device.bodies[0].pumpWeight).toBe(input.pump.bodies.body1);
         // Numbers as expressions say the same.
         const texts = JSON.stringify(input, (key, value: unknown) =>
           typeof value === 'number' && key !== 'wavewell' ? `(${value})` : value,

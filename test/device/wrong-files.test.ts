@@ -937,10 +937,10 @@ describe('wrong files', () => {
     const [finding, ...more] = findingsOf(text);
     expect(more).toEqual([]);
     expect(finding).toMatchObject({ file: 'a.yaml', line, column, path });
-    expect(finding!.came).toContain(came);
-    expect(finding!.expected).toContain(expected);
-    expect(finding!.mend).toContain(mend);
-    expect(finding!.mend.length).toBeGreaterThan(5);
+    expect(finding.came).toContain(came);
+    expect(finding.expected).toContain(expected);
+    expect(finding.mend).toContain(mend);
+    expect(finding.mend.length).toBeGreaterThan(5);
   });
 });
 

@@ -64,10 +64,10 @@ test('no curve leaves it, and each point of its rim is needed', () => {
       expect(Math.max(...reach)).toBeLessThanOrEqual(radius * (1 + 1e-13));
       // Smallest: no half of the rim is free of touching points (within the spacing of the samples).
       const rim = samples
-        .filter((_, i) => reach[i]! > radius * (1 - 1e-3))
+        .filter((_, i) => reach[i] > radius * (1 - 1e-3))
         .map(([x, y]) => Math.atan2(y - center[1], x - center[0]))
         .sort((a, b) => a - b);
-      const gaps = rim.map((a, i) => (i + 1 < rim.length ? rim[i + 1]! : rim[0]! + 2 * Math.PI) - a);
+      const gaps = rim.map((a, i) => (i + 1 < rim.length ? rim[i + 1] : rim[0] + 2 * Math.PI) - a);
       expect(Math.max(...gaps)).toBeLessThan(Math.PI + 0.1);
     }),
     { numRuns: 60 },

@@ -180,7 +180,7 @@ function isSimple(points: readonly Point[]): boolean {
     turn(p, q, r) === 0 && (r[0] - p[0]) * (r[0] - q[0]) + (r[1] - p[1]) * (r[1] - q[1]) <= 0;
   for (let i = 0; i < n; i++)
     for (let j = i + 1; j < n; j++) {
-      const [a, b, c, d] = [points[i]!, points[(i + 1) % n]!, points[j]!, points[(j + 1) % n]!];
+      const [a, b, c, d] = [points[i], points[(i + 1) % n], points[j], points[(j + 1) % n]];
       if (a[0] === c[0] && a[1] === c[1]) return false;
       if (j === i + 1) {
         if (on(a, b, d) || on(c, d, a)) return false;

@@ -37,8 +37,8 @@ describe('gaps', () => {
     const places = find(a, b);
     expect(places).toHaveLength(1);
     expect(places[0]).toMatchObject({ first: 0, second: 1 });
-    expect(places[0]!.width / G).toBeGreaterThan(0.99);
-    expect(places[0]!.width / G).toBeLessThan(1.5);
+    expect(places[0].width / G).toBeGreaterThan(0.99);
+    expect(places[0].width / G).toBeLessThan(1.5);
   });
 
   test.each(cases)('%s: none at all when wide, and none when covered', (_, a, b) => {
@@ -48,10 +48,10 @@ describe('gaps', () => {
 });
 
 test('walls, sides and roundings of one shape', () => {
-  expect(find(ring([0, 0], 1, 1 - G))[0]!.width / G).toBeCloseTo(1, 6);
-  expect(find(rectangle([0, 0], [1, G], 0.3, 0))[0]!.width / G).toBeCloseTo(1, 6);
-  expect(find(rectangle([0, 0], [1, 1], 0.3, G))[0]!.width / G).toBeCloseTo(1, 6);
-  expect(find(ellipse([0, 0], [1, G], 0.3))[0]!.width / G).toBeCloseTo(1, 6);
+  expect(find(ring([0, 0], 1, 1 - G))[0].width / G).toBeCloseTo(1, 6);
+  expect(find(rectangle([0, 0], [1, G], 0.3, 0))[0].width / G).toBeCloseTo(1, 6);
+  expect(find(rectangle([0, 0], [1, 1], 0.3, G))[0].width / G).toBeCloseTo(1, 6);
+  expect(find(ellipse([0, 0], [1, G], 0.3))[0].width / G).toBeCloseTo(1, 6);
   const neck = polygon([
     [0, 0],
     [1, 1 - G / 2],
@@ -60,7 +60,7 @@ test('walls, sides and roundings of one shape', () => {
     [1, 1 + G / 2],
     [0, 2],
   ]);
-  expect(find(neck)[0]!.width / G).toBeCloseTo(1, 6);
+  expect(find(neck)[0].width / G).toBeCloseTo(1, 6);
 });
 
 test('shapes by themselves, touching, overlapping and crossing are left alone', () => {
