@@ -9,22 +9,47 @@ export interface BenchMatrix {
   readonly values: Float64Array;
   readonly nodesPerElement: number;
   readonly fill: ElementFill;
-  multiplyInto(out: Float64Array, x: Float64Array, columns: number): Float64Array;
+  readonly multiplyInto: (out: Float64Array, x: Float64Array, columns: number) => Float64Array;
 }
+
+export interface SquareChoice {
+  readonly perWavelength?: number;
+  readonly jitter?: number;
+  readonly seed?: number;
+  /** Permittivity at a point. */
+  readonly epsilon?: (x: number, y: number) => Pair;
+  /** Ez: ε multiplies the mass; Hz: 1/ε the stiffness. */
+  readonly polarization?: 'Ez' | 'Hz';
+  /** k² instead of the one that follows from perWavelength. */
+  readonly k2?: Pair;
+  /** Leaves the rim free instead of fixing u = 0 there. */
+  readonly natural?: boolean;
+}
+
+/** (re, im) */
+type Pair = readonly [number, number];
+const ONE: Pair = [1, 0];
 
 /**
  * Unit square cut into cells × cells squares of two triangles, inner vertices moved by up to `jitter` of a cell;
  * equispaced Lagrange elements of the given order with u = 0 on the rim, `perWavelength` unknowns a wavelength along a
- * side, u_xx/s_x s_x … in the form ∫ (s_y/s_x) u_x v_x + (s_x/s_y) u_y v_y − k² ε s_x s_y u v with the stretches taken at
- * the centroids. `epsilon(x, y)` is the permittivity there.
+ * side: ∫ p (s_y/s_x) u_x v_x + p (s_x/s_y) u_y v_y − k² q s_x s_y u v, the stretches and ε taken at the centroids.
  */
 export function layeredSquare(
   cells: number,
   order: number,
-  { perWavelength = 8, jitter = 0.2, seed = 1, epsilon = (_x: number, _y: number): [number, number] => [1, 0] } = {},
+  {
+    perWavelength = 8,
+    jitter = 0.2,
+    seed = 1,
+    epsilon = () => [1, 0],
+    polarization = 'Ez',
+    k2,
+    natural = false,
+  }: SquareChoice = {},
 ): BenchMatrix {
   const h = 1 / cells;
-  const k = (2 * Math.PI * cells * order) / perWavelength;
+  const squared = k2 ?? [((2 * Math.PI * cells * order) / perWavelength) ** 2, 0];
   const random = mulberry(seed);
   const vx = new Float64Array((cells + 1) ** 2);
   const vy = new Float64Array((cells + 1) ** 2);
@@ -40,7 +65,9 @@ export function layeredSquare(
   const total = 2 * cells * cells;
   const numberAt = new Int32Array(side * side).fill(-1);
   let unknowns = 0;
-  for (let j = 1; j < side - 1; j++) for (let i = 1; i < side - 1; i++) numberAt[j * side + i] = unknowns++;
+  const margin = natural ? 0 : 1;
+  for (let j = margin; j < side - margin; j++)
+    for (let i = margin; i < side - margin; i++) numberAt[j * side + i] = unknowns++;
   const starts = Int32Array.from({ length: total + 1 }, (_, e) => e * nd);
   const list = new Int32Array(total * nd);
   const centroids = new Float64Array(2 * total);
@@ -69,17 +96,18 @@ export function layeredSquare(
         // ∇a = (by, −bx)/det, ∇b = (−ay, ax)/det
         const sx = stretch(cx);
         const sy = stretch(cy);
-        const ratio = divide(sy, sx); // for u_x v_x
-        const inverse = divide(sx, sy);
         const eps = epsilon(cx, cy);
-        const product = times(times(sx, sy), eps);
+        const p1 = polarization === 'Ez' ? ONE : divide(ONE, eps);
+        const ratio = times(p1, divide(sy, sx)); // for u_x v_x
+        const inverse = times(p1, divide(sx, sy));
+        const product = times(squared, times(times(sx, sy), polarization === 'Ez' ? eps : ONE));
         const aa = [by * by, bx * bx];
         const ab = [-by * ay, -bx * ax];
         const bb = [ay * ay, ax * ax];
         for (let t = 0; t < nd * nd; t++) {
           const gxx = (reference.aa[t] * aa[0] + reference.ab[t] * ab[0] + reference.bb[t] * bb[0]) / det;
           const gyy = (reference.aa[t] * aa[1] + reference.ab[t] * ab[1] + reference.bb[t] * bb[1]) / det;
-          const mass = k * k * reference.mass[t] * det;
+          const mass = reference.mass[t] * det;
           const to = 2 * (e * nd * nd + t);
           values[to] = gxx * ratio[0] + gyy * inverse[0] - mass * product[0];
           values[to + 1] = gxx * ratio[1] + gyy * inverse[1] - mass * product[1];
@@ -121,7 +149,7 @@ export function layeredSquare(
   };
 
   /** ds/dx: 1 inside, turning by up to 45° within a tenth of the side at the rim. */
-  function stretch(x: number): [number, number] {
+  function stretch(x: number): Pair {
     const depth = Math.max(0, 0.1 - x, x - 0.9) / 0.1;
     return [1, 3 * depth * depth];
   }
@@ -178,11 +206,8 @@ function invert(matrix: number[][]): number[][] {
 }
 
 const factorial = (n: number): number => (n <= 1 ? 1 : n * factorial(n - 1));
-const times = (a: [number, number], b: [number, number]): [number, number] => [
-  a[0] * b[0] - a[1] * b[1],
-  a[0] * b[1] + a[1] * b[0],
-];
-function divide(a: [number, number], b: [number, number]): [number, number] {
+const times = (a: Pair, b: Pair): Pair => [a[0] * b[0] - a[1] * b[1], a[0] * b[1] + a[1] * b[0]];
+function divide(a: Pair, b: Pair): Pair {
   const d = b[0] * b[0] + b[1] * b[1];
   return [(a[0] * b[0] + a[1] * b[1]) / d, (a[1] * b[0] - a[0] * b[1]) / d];
 }
