@@ -110,8 +110,7 @@ describe('time', () => {
   test('runs from the start, and two instants differ; a pause holds the picture still', async () => {
     await open('threshold');
     const first = await colours();
-    await page.waitForTimeout(400);
-    expect(await colours()).not.toEqual(first);
+    await expect.poll(colours).not.toEqual(first);
     await page.keyboard.press(' ');
     const held = await state();
     expect(held.playing).toBe(false);
@@ -120,8 +119,7 @@ describe('time', () => {
     expect(await colours()).toEqual(still);
     expect((await state()).phase).toBe(held.phase);
     await page.keyboard.press(' ');
-    await page.waitForTimeout(300);
-    expect((await state()).phase).not.toBe(held.phase);
+    await expect.poll(async () => (await state()).phase).not.toBe(held.phase);
   });
 
   test('stands still at first for those who want less motion', async () => {

@@ -38,13 +38,12 @@ function factsOf(record: RunRecord, field: RunField | null, mark: RunMark | null
   const im = onAxis ? 0 : (mark?.k[1] ?? field?.k[1] ?? 0);
   const wavelength = (2 * Math.PI) / k;
   const frequency = metres === null ? null : (k * SPEED_OF_LIGHT) / (2 * Math.PI * metres);
-  const digits = Math.min(12, Math.max(5, Math.ceil(Math.log10(k / (error || 1e-9 * k))) + 1));
   const name = lengthUnit === 'none' ? 'k' : `k (${perUnit(lengthUnit)})`;
   const facts: [string, string | null][] = [
     [name, withError(k, error)],
     ['Im k', im === 0 ? null : withError(im, error)],
     [`λ${unitName(lengthUnit) && ` (${unitName(lengthUnit)})`}`, withError(wavelength, (error / k) * wavelength)],
-    ['frequency', frequency === null ? null : hertz(frequency, digits)],
+    ['frequency', frequency === null ? null : hertz(frequency, (error / k) * frequency)],
     ['Q', !onAxis && mark && Number.isFinite(mark.q) ? withError(mark.q, qError(mark)) : null],
     ['symmetry', mark?.label ? mark.label : null],
     ['multiplicity', mark && mark.multiplicity > 1 ? String(mark.multiplicity) : null],

@@ -33,7 +33,7 @@ export const polar = ([re, im]: readonly [number, number]): { size: number; angl
 function driveStrip(record: RunRecord, field: RunField, drive: readonly DriveTerm[], all: () => void): Node[] {
   const answer = crossingAnswer(record, field.k[0]);
   const parts: Node[] = [html('h2', {}, 'Send in')];
-  const most = window.innerHeight < 700 ? 5 : window.innerHeight < 900 ? 7 : 12;
+  const most = window.innerHeight < 640 ? 3 : window.innerHeight < 900 ? 6 : 12;
   const strongest = [...drive].sort((a, b) => polar(b.amplitude).size - polar(a.amplitude).size);
   const kept = strongest.slice(0, most).sort((a, b) => a.m - b.m);
   const largest = polar(strongest[0]?.amplitude ?? [1, 0]).size;
@@ -60,7 +60,7 @@ function feedRow({ m, amplitude }: DriveTerm, largest: number): Node[] {
     html('span', { class: 'order' }, `m ${m < 0 ? '−' : '+'}${Math.abs(m)}`),
     svg(
       'svg',
-      { width, height: 18, 'aria-hidden': 'true' },
+      { viewBox: `0 0 ${width} 18`, preserveAspectRatio: 'none', class: 'amounts', 'aria-hidden': 'true' },
       svg('line', { class: 'slot', x1: 0, x2: width, y1: 9, y2: 9 }),
       svg('rect', { class: 'amount', x: 0, y: 6.5, width: Math.max(1, (width * size) / largest), height: 5 }),
     ),
@@ -99,16 +99,16 @@ function proof(forward: PowerCheck & { readonly ownMesh?: PowerCheck }): Node[] 
     two,
     rows([
       ['balance', small(Math.abs(forward.balance))],
-      ['own mesh: returned', own ? small(own.outgoing / own.incoming) : null],
-      ['own mesh: balance', own ? small(Math.abs(own.balance)) : null],
+      ['on its own mesh', own ? `${small(own.outgoing / own.incoming)} returned` : null],
     ]),
   ];
 }
 
-/** A share close to one in as many nines as it has. */
+/** A share in percent; one that is all but whole says so without a row of nines. */
 export function share(part: number, whole: number): string {
-  const missing = Math.abs(1 - part / whole);
-  const decimals = missing > 0 ? Math.min(10, Math.max(1, Math.ceil(-Math.log10(missing)) - 2)) : 6;
+  const missing = 1 - part / whole;
+  if (Math.abs(missing) < 1e-6) return missing > 0 ? '> 99.9999 %' : '100.0000 %';
+  const decimals = Math.min(4, Math.max(1, Math.ceil(-Math.log10(Math.abs(missing))) - 1));
   return `${((100 * part) / whole).toFixed(decimals)} %`;
 }
 
@@ -126,7 +126,7 @@ function rose(power: Float64Array): Node[] {
     return `${(r * Math.cos(a)).toFixed(2)} ${(-r * Math.sin(a)).toFixed(2)}`;
   };
   const curve = Array.from(power, (value, angle) => point(angle, (radius * value) / peak)).join('L');
-  const size = radius + 16;
+  const size = radius + 24;
   return [
     html('h2', {}, 'Far field'),
     svg(
@@ -141,6 +141,8 @@ function rose(power: Float64Array): Node[] {
       ...[0, 90, 180, 270].map((angle) =>
         svg('path', { class: 'tick', d: `M${point(angle, radius)}L${point(angle, radius + 5)}` }),
       ),
+      svg('text', { x: radius + 8, y: 4 }, '0°'),
+      svg('text', { x: 0, y: -radius - 8, 'text-anchor': 'middle' }, '90°'),
       svg('path', { class: 'petal', d: `M${curve}Z` }),
       svg('path', { class: 'peak', d: `M${point(at, radius + 1)}L${point(at, radius + 9)}` }),
     ),

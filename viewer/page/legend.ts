@@ -96,6 +96,6 @@ function endTexts(view: View, limit: number): string[] {
 function meaningOf(view: View, limit: number, { device: { polarization } }: RunRecord): string {
   const part = polarization === 'Ez' ? 'E' : 'H';
   if (view === 'phase') return `phase of ${part}z, turning with time`;
-  const what = view === 'wave' ? `${part}z now` : `|${part}z|², at all times`;
-  return limit === 1 ? `${what}, field, largest = 1` : `${what}, field, largest = 1, clipped`;
+  const what = view === 'wave' ? `field ${part}z now` : `intensity |${part}z|²`;
+  return `${what}, largest = 1${limit === 1 ? '' : ', clipped'}`;
 }

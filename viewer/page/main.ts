@@ -12,6 +12,7 @@ import { createPicture } from './picture.ts';
 import type { Picture } from './picture.ts';
 import { createReadout } from './readout.ts';
 import type { Readout } from './readout.ts';
+import type { RunMark } from '../../src/results/format.ts';
 import { loadRun } from './run.ts';
 import type { PageRun } from './run.ts';
 import { createSheet } from './sheet.ts';
@@ -30,7 +31,7 @@ async function start(): Promise<void> {
   const run = await loadRun();
   const { record } = run;
   document.title = `${record.device.title}, ${record.command} · Wavewell`;
-  byId('sentence').textContent = record.sentence;
+  byId('sentence').textContent = unbroken(record.sentence);
   byId('subject').textContent = `${record.device.title} · ${record.command} · ${record.device.polarization}`;
   const tracks = await loadTracks(run);
   const store = createStore(firstState(run));
@@ -54,9 +55,14 @@ async function start(): Promise<void> {
     outlines: outlines as Float64Array[],
   });
 
+  const markOf = (id: string | null): RunMark | undefined => record.marks.find((one) => one.id === id);
   const choose = (id: string): void => {
-    const mark = record.marks.find((one) => one.id === id)!;
-    store.set({ mark: id, field: fieldAtLevel(mark, store.get().level) });
+    const mark = markOf(id)!;
+    const { level: now, mark: before } = store.get();
+    // Who looks at a mark on the axis goes on to the next one there.
+    const onAxis = now === markOf(before)?.crossing?.level;
+    const level = onAxis && mark.crossing ? mark.crossing.level : now;
+    store.set({ mark: id, level, field: fieldAtLevel(mark, level) });
   };
   const sheet = createSheet(byId<HTMLDialogElement>('sheet'), record, store, choose);
   const readout = createReadout(byId('readout'), record, store, () => draw());
@@ -125,7 +131,7 @@ async function start(): Promise<void> {
   });
   store.on(['phase', 'playing', 'mark'], draw);
   store.on(['level'], ({ mark, level }) => {
-    const chosen = record.marks.find(({ id }) => id === mark);
+    const chosen = markOf(mark);
     if (chosen) store.set({ field: fieldAtLevel(chosen, level) });
     draw();
   });
@@ -150,6 +156,11 @@ async function start(): Promise<void> {
   };
 }
 
+/** Numbers stay with their signs and units when the line breaks. */
+function unbroken(sentence: string): string {
+  return sentence.replace(/ (?=[=±×%])|(?<=[=±×]) |(?<=\d) (?=[µnmk/TG])/g, '\u00a0');
+}
+
 function firstState({ record }: PageRun): State {
   const mark = firstMark(record.marks);
   const level = mark?.crossing?.level ?? 0;
@@ -171,8 +182,13 @@ const THEME_KEY = 'wavewell-theme';
 const systemTheme = (): Theme => (window.matchMedia('(prefers-color-scheme: dark)').matches ? 'dark' : 'light');
 
 function storedTheme(): Theme | null {
-  const kept = localStorage.getItem(THEME_KEY);
-  return kept === 'light' || kept === 'dark' ? kept : null;
+  try {
+    const kept = localStorage.getItem(THEME_KEY);
+    return kept === 'light' || kept === 'dark' ? kept : null;
+  } catch {
+    // A browser may be told to keep nothing.
+    return null;
+  }
 }
 
 /** The palette becomes the style sheet's variables; the system's choice is followed until the user makes one. */
@@ -192,8 +208,12 @@ function createWays(host: HTMLElement, cautioned: boolean, store: Store, sheet: 
   if (cautioned) host.append(wordButton('read first', () => sheet.open('cautions'), { class: 'word accent' }));
   const theme = wordButton('', () => {
     const next = store.get().theme === 'dark' ? 'light' : 'dark';
-    localStorage.setItem(THEME_KEY, next);
     store.set({ theme: next });
+    try {
+      localStorage.setItem(THEME_KEY, next);
+    } catch {
+      return;
+    }
   });
   store.on(['theme'], (state) => (theme.textContent = state.theme === 'dark' ? 'light' : 'dark'));
   host.append(
@@ -216,26 +236,38 @@ function drawOverlay(
   const r = rimRadius * picture.scale();
   const parts: SVGElement[] = [svg('circle', { class: 'rim', cx, cy, r })];
   const top = byId('water').getBoundingClientRect().top;
-  if (mark) {
-    // To the nearest point of the rim, or to the edge of the picture when the rim lies beyond the water.
-    const away = Math.hypot(mark[0] - cx, mark[1] - cy);
-    const end = [cx + ((mark[0] - cx) * r) / away, cy + ((mark[1] - cy) * r) / away] as const;
-    const seen = end[1] < top - 6;
-    const [x, y] = seen ? end : [mark[0] + (cx - mark[0]) * 0.1, top - 10];
-    const lift = mark[1] - (mark[1] - y) * 0.55;
-    parts.push(
-      svg('path', {
-        class: 'thread',
-        d: `M${mark[0]} ${mark[1] - 8}C${mark[0]} ${lift} ${x + (x - cx) * 0.25} ${y + (y - cy) * 0.3} ${x} ${y}`,
-      }),
-      svg('circle', { class: 'knot', cx: x, cy: y, r: 2.5 }),
-    );
-  }
+  if (mark) parts.push(...thread(mark, [cx, cy], r, top));
   if (pinned) {
     const [x, y] = picture.toPixel(...pinned);
     parts.push(svg('path', { class: 'pin', d: `M${x - 11} ${y}h7M${x + 4} ${y}h7M${x} ${y - 11}v7M${x} ${y + 4}v7` }));
   }
   overlay.replaceChildren(...parts);
+}
+
+/** Farther from straight below than this the thread does not meet the rim: it would cross the dial. */
+const WIDEST = (50 * Math.PI) / 180;
+
+/** From a mark to the rim above it; to the edge of the picture when the rim there lies below the water. */
+function thread(
+  [mx, my]: readonly [number, number],
+  [cx, cy]: readonly [number, number],
+  r: number,
+  waterTop: number,
+): SVGElement[] {
+  const angle = Math.max(-WIDEST, Math.min(WIDEST, Math.atan2(mx - cx, Math.max(1, my - cy))));
+  const [s, c] = [Math.sin(angle), Math.cos(angle)];
+  let [x, y] = [cx + r * s, cy + r * c];
+  let [bendX, bendY] = [x + 0.3 * r * s, y + 0.3 * r * c];
+  if (y > waterTop - 6) {
+    x = mx + (window.innerWidth / 2 - mx) * 0.06;
+    y = waterTop - 12;
+    [bendX, bendY] = [x, (y + my) / 2];
+  }
+  const lift = my - (my - y) * 0.5;
+  return [
+    svg('path', { class: 'thread', d: `M${mx} ${my - 8}C${mx} ${lift} ${bendX} ${Math.min(bendY, my)} ${x} ${y}` }),
+    svg('circle', { class: 'knot', cx: x, cy: y, r: 2.5 }),
+  ];
 }
 
 /** Drag moves, wheel and pinch zoom, resting reads, a click pins. */

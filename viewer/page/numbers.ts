@@ -53,11 +53,11 @@ export function seconds(value: number, digits = 3): string {
   return `${figure(value * 1000 ** step, digits)} ${steps[step]}`;
 }
 
-/** Hertz with a prefix. */
-export function hertz(value: number, digits = 5): string {
+/** Hertz with a prefix, and the uncertainty in the same unit. */
+export function hertz(value: number, error: number): string {
   const steps = ['Hz', 'kHz', 'MHz', 'GHz', 'THz', 'PHz'];
   const step = Math.min(steps.length - 1, Math.max(0, Math.floor(Math.log10(value) / 3 + 1e-9)));
-  return `${figure(value / 1000 ** step, digits)} ${steps[step]}`;
+  return `${withError(value / 1000 ** step, error / 1000 ** step)} ${steps[step]}`;
 }
 
 /** About `wanted` round numbers (1, 2, 5 × 10ⁿ apart) between two bounds, with the decimals they need. */
@@ -83,6 +83,12 @@ export function roundBelow(bound: number): number {
   const power = 10 ** Math.floor(Math.log10(bound));
   const lead = bound / power;
   return power * (lead >= 5 ? 5 : lead >= 2 ? 2 : 1);
+}
+
+/** "−10⁻⁶" for a whole power of ten. */
+export function decadeText(value: number): string {
+  const exponent = Math.round(Math.log10(Math.abs(value)));
+  return `${value < 0 ? MINUS : ''}10${superscript(exponent)}`;
 }
 
 function powerOfTen(value: number, digits: number, exponent: number): string {

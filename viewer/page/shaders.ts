@@ -29,13 +29,14 @@ in vec2 value;
 in vec2 place;
 out vec4 colour;
 
-float beyond(float distance, float margin) { return smoothstep(0.62 * margin, 1.0 * margin, distance); }
+float beyond(float distance, float margin, float soft) { return smoothstep(margin - 10.0, margin + soft, distance); }
 
 float presence() {
   vec2 p = gl_FragCoord.xy / ratio;
-  float open = beyond(p.x, quiet.x) * beyond(size.x - p.x, quiet.z) * beyond(p.y, quiet.w) * beyond(size.y - p.y, quiet.y);
+  float open = beyond(p.x, quiet.x, 26.0) * beyond(size.x - p.x, quiet.z, 26.0)
+    * beyond(p.y, quiet.w, 2.0) * beyond(size.y - p.y, quiet.y, 2.0);
   float rim = 1.0 - smoothstep(0.93, 1.0, length(place));
-  return mix(0.14, 1.0, open) * rim;
+  return mix(0.1, 1.0, open) * rim;
 }
 `;
 

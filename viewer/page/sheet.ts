@@ -59,7 +59,7 @@ function markTable(record: RunRecord, store: Store, choose: (id: string) => void
   const unit = (text: string): string => (text ? ` (${text})` : '');
   const crossing = record.marks.some((mark) => mark.crossing);
   const parameter = record.marks.find(({ path }) => path)?.path?.parameter ?? 'level';
-  const heads = ['', `Re k${unit(per)}`, 'Im k', `λ${unit(unitName(lengthUnit))}`, 'Q', 'label'];
+  const heads = ['', `Re k${unit(per)}`, `Im k${unit(per)}`, `λ${unit(unitName(lengthUnit))}`, 'Q', 'label'];
   if (crossing) heads.push(`on the axis at k`, `${parameter} D`);
   const body = html('tbody');
   for (const mark of [...record.marks].sort((a, b) => a.k[0] - b.k[0])) {

@@ -1,9 +1,9 @@
 // Where do poles and zeros stand, how do they move, and which one is looked at?
 
-import type { Pair, RunRecord } from '../../src/results/format.ts';
+import type { Pair, RunMark, RunRecord } from '../../src/results/format.ts';
 import { bandScale } from './band.ts';
 import { onDrag, svg } from './dom.ts';
-import { figure, perUnit, roundSteps, withError } from './numbers.ts';
+import { decadeText, figure, perUnit, roundSteps, withError } from './numbers.ts';
 import type { Store } from './state.ts';
 import { positionAt } from './tracks.ts';
 import type { Track } from './tracks.ts';
@@ -73,9 +73,10 @@ export function createWaterLine(
 
   const drawDepth = (): void => {
     const { width, surface, height } = place;
+    const ticks = spaced(depth.ticks, yOf);
     layers.depth.replaceChildren(
       svg('rect', { class: 'sea', x: 0, y: surface, width, height: Math.max(0, height - surface) }),
-      ...depth.ticks.map(({ im, text }) => depthTick(yOf(im), text)),
+      ...ticks.map(({ im, text }) => depthTick(yOf(im), text)),
       svg('line', { class: 'surface', x1: 0, x2: width, y1: surface, y2: surface }),
     );
     const { kMin, kMax } = record.device.band;
@@ -85,21 +86,23 @@ export function createWaterLine(
     }
     const above = depth.up === 0;
     const labelY = above ? surface - 9 : depth.down === 0 ? surface + 18 : height - 6;
+    const title = svg('text', { class: 'tick-text halo', x: 12, y: labelY }, scale.title);
+    layers.depth.append(title);
+    const free = 12 + title.getComputedTextLength() + 26;
     const wanted = Math.max(2, Math.round(width / 150));
     for (const { at, text } of roundSteps(scale.of(view.low), scale.of(view.high), wanted)) {
       const x = xOf(scale.back(at));
-      if (x < place.left || x > width - 30) continue;
-      layers.depth.append(
-        svg('line', { class: 'tick', x1: x, x2: x, y1: surface, y2: surface + (above ? -5 : 5) }),
-        svg('text', { class: 'tick-text', x, y: labelY, 'text-anchor': 'middle' }, text),
-      );
+      if (x < place.left || x > width - 24) continue;
+      layers.depth.append(svg('line', { class: 'tick', x1: x, x2: x, y1: surface, y2: surface + (above ? -5 : 5) }));
+      if (x > free)
+        layers.depth.append(svg('text', { class: 'tick-text', x, y: labelY, 'text-anchor': 'middle' }, text));
     }
-    const titleY = above ? surface - 9 : labelY;
-    layers.depth.append(svg('text', { class: 'tick-text halo', x: 12, y: titleY }, scale.title));
     const per = perUnit(record.device.lengthUnit);
-    const corner = depth.down > 0 ? height - 8 : 12;
-    if (depth.ticks.length > 0)
-      layers.depth.append(svg('text', { class: 'tick-text', x: 12, y: corner }, `Im k${per && ` (${per})`}`));
+    const outermost = ticks.reduce((a, b) => (Math.abs(b.im) > Math.abs(a.im) ? b : a), ticks[0]);
+    if (outermost) {
+      const text = `Im k${per && ` (${per})`}`;
+      layers.depth.append(svg('text', { class: 'tick-text halo', x: place.left + 4, y: yOf(outermost.im) + 4 }, text));
+    }
   };
 
   const depthTick = (y: number, text: string): SVGGElement =>
@@ -141,6 +144,9 @@ export function createWaterLine(
     const focused = document.activeElement?.getAttribute('data-mark');
     nodes.clear();
     layers.marks.replaceChildren();
+    // Labels only where they have room; the note of the hovered mark tells the rest.
+    const gaps = byRe.slice(1).map(({ mark }, i) => xOf(mark.k[0]) - xOf(byRe[i].mark.k[0]));
+    const labels = Math.min(Infinity, ...gaps) > 74;
     for (const { mark } of byRe) {
       const ex = Math.abs(xOf(mark.k[0] + mark.kError) - xOf(mark.k[0]));
       const node = svg(
@@ -153,7 +159,8 @@ export function createWaterLine(
           : svg('circle', { class: 'glyph', r: 5 }),
         svg('circle', { class: 'target', r: 12 }),
       );
-      if (mark.multiplicity > 1) node.append(svg('text', { class: 'count', x: 7, y: -5 }, String(mark.multiplicity)));
+      const text = markText(mark, labels);
+      if (text) node.append(svg('text', { class: 'count', x: 10, y: 4 }, text));
       node.addEventListener('click', () => {
         choose(mark.id);
       });
@@ -175,6 +182,9 @@ export function createWaterLine(
       const upright = node.querySelector('.upright')!;
       upright.setAttribute('y1', String(yOf(k[1] + mark.kError) - yOf(k[1])));
       upright.setAttribute('y2', String(yOf(k[1] - mark.kError) - yOf(k[1])));
+      // A label beside a mark on the surface would be struck through.
+      const onSurface = Math.abs(yOf(k[1]) - place.surface) < 9;
+      node.querySelector('.count')?.setAttribute('y', String(onSurface ? (depth.up > 0 && k[1] > 0 ? -9 : 17) : 4));
       node.classList.toggle('unknown', !known);
       node.classList.toggle('chosen', mark.id === chosen);
       node.setAttribute('aria-selected', String(mark.id === chosen));
@@ -239,22 +249,21 @@ export function createWaterLine(
     view.low = Math.min(Math.max(low, whole.low), whole.high - span);
     view.high = view.low + span;
     layout();
-    store.set({});
   };
   picture.addEventListener(
     'wheel',
     (event) => {
       event.preventDefault();
       magnify(event.offsetX, Math.exp(-event.deltaY * 0.002), event.deltaX);
-      moved?.();
+      moved();
     },
     { passive: false },
   );
-  onDrag(layers.depth, { move: (event, dx) => (magnify(event.offsetX, 1, dx), moved?.()) });
+  onDrag(layers.depth, { move: (event, dx) => (magnify(event.offsetX, 1, dx), moved()) });
   picture.addEventListener('dblclick', () => {
     Object.assign(view, whole);
     layout();
-    moved?.();
+    moved();
   });
   const moved = (): void => {
     host.dispatchEvent(new CustomEvent('moved'));
@@ -275,6 +284,12 @@ export function createWaterLine(
       return x < 0 || x > place.width ? null : [box.left + x, box.top + yOf(k[1])];
     },
   };
+}
+
+/** What stands beside a mark: its label and how many modes it stands for. */
+function markText({ label, multiplicity }: RunMark, labels: boolean): string {
+  const shown = labels ? label : '';
+  return multiplicity > 1 ? `${shown} ×${multiplicity}`.trim() : shown;
 }
 
 /** The numbers of a mark, a line each. */
@@ -319,7 +334,8 @@ function depthScale(tracks: readonly Track[]): DepthScale {
   for (const { mark, ks } of tracks) {
     const all = ks ? [mark.k[1], ...ks.filter((_, i) => i % 2 === 1)] : [mark.k[1]];
     for (const im of all) [top, bottom] = [Math.max(top, im), Math.min(bottom, im)];
-    if (mark.k[1] !== 0) least = Math.min(least, Math.abs(mark.k[1]));
+    // Nearer to the axis than its uncertainty a mark tells nothing about the scale.
+    if (mark.k[1] !== 0) least = Math.min(least, Math.max(Math.abs(mark.k[1]), mark.kError));
   }
   const most = Math.max(top, -bottom);
   if (most === 0) return { of: () => 0, up: 0, down: 0, ticks: [] };
@@ -332,9 +348,17 @@ function depthScale(tracks: readonly Track[]): DepthScale {
   const ticks = sides.flatMap((side) =>
     steps
       .filter((at) => at > 0 && at <= (side > 0 ? top : -bottom) * 1.0001 && of(at) > 0.12 * (up + down))
-      .map((at) => ({ im: side * at, text: figure(side * at, 1) })),
+      .map((at) => ({ im: side * at, text: linear ? figure(side * at, 1) : decadeText(side * at) })),
   );
   return { of, up, down, ticks };
+}
+
+/** Ticks that stand far enough from one another for their texts. */
+function spaced(ticks: DepthScale['ticks'], yOf: (im: number) => number): DepthScale['ticks'] {
+  const kept: { im: number; text: string }[] = [];
+  for (const tick of [...ticks].sort((a, b) => Math.abs(b.im) - Math.abs(a.im)))
+    if (kept.every(({ im }) => Math.abs(yOf(im) - yOf(tick.im)) > 17)) kept.push(tick);
+  return kept;
 }
 
 function decades(least: number, most: number): number[] {
