@@ -67,8 +67,9 @@ export function healCusps(
         .sort((a, b) => b - a)
         .slice(0, 2)
         .map((label) => names[label]);
-      const width = NECK * Math.min(scaleOf(right.edge.piece), scaleOf(left.edge.piece));
-      const cut = cutAt(right.edge, left.edge, width);
+      const wide = NECK * Math.min(scaleOf(right.edge.piece), scaleOf(left.edge.piece));
+      const cut = cutAt(right.edge, left.edge, wide);
+      const width = cut ? cut.width : wide;
       if (!cut)
         throw new GeometryError(
           `${quoted(bodies)} touch at (${place[0].toPrecision(8)}, ${place[1].toPrecision(8)}) and stay within ` +
@@ -153,12 +154,15 @@ function isCusp(spokes: readonly Spoke[], i: number): boolean {
 const scaleOf = (piece: CurvePiece): number =>
   piece.kind === 'line' ? lengthOf(piece) : Math.min(piece.radii[0], piece.radii[1]);
 
-/** Parameters on both edges where the gap between them, seen from their common start, reaches the width. */
+/**
+ * Parameters on both edges where the gap between them, seen from their common start, reaches the width; a smaller width,
+ * down to a hundredth, where the edges end before that. Null when not even that is reached.
+ */
 function cutAt(
   right: ArrangementEdge,
   left: ArrangementEdge,
-  width: number,
-): { s: number; t: number; from: Point; to: Point } | null {
+  wide: number,
+): { s: number; t: number; from: Point; to: Point; width: number } | null {
   const speedRight = Math.hypot(...velocityAt(right.piece, 0));
   const speedLeft = Math.hypot(...velocityAt(left.piece, 0));
   const longest =
@@ -168,7 +172,8 @@ function cutAt(
     const [qx, qy] = pointAt(left.piece, d / speedLeft);
     return Math.hypot(px - qx, py - qy);
   };
-  if (!(gapAt(longest) > width)) return null;
+  const width = Math.min(wide, 0.5 * gapAt(longest));
+  if (!(width >= 0.01 * wide)) return null;
   let low = 0;
   let high = longest;
   for (let step = 0; step < 60; step++) {
@@ -178,7 +183,7 @@ function cutAt(
   }
   const s = high / speedRight;
   const t = high / speedLeft;
-  return { s, t, from: pointAt(right.piece, s), to: pointAt(left.piece, t) };
+  return { s, t, from: pointAt(right.piece, s), to: pointAt(left.piece, t), width };
 }
 
 /** Around a vertex the region between neighbouring spokes must be one. */

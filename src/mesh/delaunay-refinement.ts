@@ -17,6 +17,7 @@ export const OUTSIDE = -1;
 /** Degree of the edge polynomials: on spans of 0.6 rad they equal the arc to rounding. */
 export const CURVE_ORDER = 10;
 
+const FRONT = 1.2;
 const UNKNOWN = -9;
 const degrees = Math.PI / 180;
 
@@ -34,6 +35,7 @@ export class Draft {
   readonly onCurve: number[] = [];
   private readonly arrangement: Arrangement;
   private readonly base: (label: number) => number;
+  private stretch = 1;
   private readonly floor: number;
   private readonly limit: number;
 
@@ -70,10 +72,12 @@ export class Draft {
   }
 
   /** Inserts points until every triangle has its size and angles ≥ `angle` degrees (or cannot be helped). */
-  refine(angle: number): void {
+  refine(angle: number, stretch = 1): void {
+    this.stretch = stretch;
     const t = this.triangulation;
     this.clearSegments();
-    for (let pass = 0; pass < 200; pass++) {
+    let sulking = false;
+    for (let pass = 0; pass < 400; pass++) {
       const bad: { key: number; e: number; a: number; b: number; c: number; large: boolean; slim: boolean }[] = [];
       for (let i = 0; i < t.triangles; i++) {
         const found = this.judge(i, angle);
@@ -87,14 +91,21 @@ export class Draft {
           });
       }
       bad.sort((p, q) => q.key - p.key || p.e - q.e);
+      const front = bad.filter(({ e, large }) => large && this.isFront(e / 3));
       let done = 0;
-      for (const { e, a, b, c, large, slim } of bad) {
+      for (const { e, a, b, c, large, slim } of front.length > 0 && !sulking ? front : bad) {
         if (t.start[e] !== a || t.start[e + 1] !== b || t.start[e + 2] !== c) continue;
         if (this.mend(e / 3, large, slim, angle)) done++;
         if (t.x.length > this.limit)
           throw this.failure(`more than ${this.limit} vertices would be needed`, [t.x[a], t.y[a]]);
       }
+      // Only the front was served: its failures must not hide the rest.
+      if (done === 0 && front.length > 0 && !sulking) {
+        sulking = true;
+        continue;
+      }
       if (done === 0) return;
+      sulking = false;
     }
   }
 
@@ -244,16 +255,25 @@ export class Draft {
       Math.hypot(x[b] - x[c], y[b] - y[c]),
       Math.hypot(x[c] - x[a], y[c] - y[a]),
     ];
-    const wanted = Math.min(this.base(label), (this.size[a] + this.size[b] + this.size[c]) / 3);
+    const wanted = this.wantedIn(i);
     const area = (x[b] - x[a]) * (y[c] - y[a]) - (y[b] - y[a]) * (x[c] - x[a]);
     const radius = (lengths[0] * lengths[1] * lengths[2]) / (2 * area);
-    const tooLarge = Math.max(radius / (0.66 * wanted), Math.max(...lengths) / (1.2 * wanted));
+    const tooLarge = Math.max(
+      radius / (0.7 * wanted * this.stretch),
+      Math.max(...lengths) / (1.2 * wanted * this.stretch),
+    );
     const shortest = Math.min(...lengths);
     // Smallest angle: sin = shortest / 2R.
     const sine = shortest / (2 * radius);
     const slim = sine < Math.sin(angle * degrees) && !this.isTip(i);
     if (tooLarge > 1) return { key: 1e6 * tooLarge, large: true, slim };
     return slim ? { key: 1 / sine, large: false, slim } : null;
+  }
+
+  private wantedIn(i: number): number {
+    const { start, region } = this.triangulation;
+    const { size } = this;
+    return Math.min(this.base(region[i]), (size[start[3 * i]] + size[start[3 * i + 1]] + size[start[3 * i + 2]]) / 3);
   }
 
   /** Whether two sides of the triangle are fixed segments: the tip of a sharp corner. */
@@ -269,9 +289,7 @@ export class Draft {
     const t = this.triangulation;
     const { x, y, start } = t;
     const label = t.region[i];
-    const target = large
-      ? this.circumcenter(start[3 * i], start[3 * i + 1], start[3 * i + 2])
-      : this.offcenter(i, angle);
+    const target = large ? this.frontPoint(i) : this.offcenter(i, angle);
     const { at, blockedBy } = this.walk(i, target);
     if (blockedBy >= 0) return this.trySplit(blockedBy, slim, label);
     // Segments on the border of the point's cavity.
@@ -425,6 +443,43 @@ export class Draft {
     const bb = bx * bx + by * by;
     const cc = cx * cx + cy * cy;
     return [x[a] + (cy * bb - by * cc) / d, y[a] + (bx * cc - cx * bb) / d];
+  }
+
+  private isFront(i: number): boolean {
+    const { twin, segment } = this.triangulation;
+    for (let e = 3 * i; e < 3 * i + 3; e++) if (segment[e] >= 0 || !this.judge(Math.floor(twin[e] / 3), 0)) return true;
+    return false;
+  }
+
+  /**
+   * Where the triangle of the wanted size on the shortest finished side has its apex, if the circumcircle has room for
+   * it, else the circumcentre (S. Rebay 1993: points of an advancing front, triangles of Delaunay).
+   */
+  private frontPoint(i: number): Point {
+    const t = this.triangulation;
+    const { x, y, start, twin, segment } = t;
+    const center = this.circumcenter(start[3 * i], start[3 * i + 1], start[3 * i + 2]);
+    const radius = Math.hypot(center[0] - x[start[3 * i]], center[1] - y[start[3 * i]]);
+    const wanted = this.wantedIn(i);
+    if (radius < FRONT * wanted) return center;
+    let best = -1;
+    let least = Infinity;
+    for (let e = 3 * i; e < 3 * i + 3; e++) {
+      if (segment[e] < 0 && this.judge(Math.floor(twin[e] / 3), 0)) continue;
+      const d = Math.hypot(x[start[e]] - x[start[nextOf(e)]], y[start[e]] - y[start[nextOf(e)]]);
+      if (d < least) [best, least] = [e, d];
+    }
+    if (best < 0) return center;
+    const a = start[best];
+    const b = start[nextOf(best)];
+    const mx = (x[a] + x[b]) / 2;
+    const my = (y[a] + y[b]) / 2;
+    // Up to the circumcentre only: nothing lies nearer than the triangle's own vertices.
+    const height = Math.max(wanted * wanted - (least * least) / 4, (wanted * wanted) / 4) ** 0.5;
+    const up = (x[b] - x[a]) * (center[1] - my) - (y[b] - y[a]) * (center[0] - mx);
+    const q = up > 0 ? Math.hypot(center[0] - mx, center[1] - my) : 0;
+    const share = Math.min(height, q) / least;
+    return [mx - (y[b] - y[a]) * share, my + (x[b] - x[a]) * share];
   }
 
   /** The point on the bisector of the shortest side that makes just the wanted angle, or the circumcentre if nearer. */

@@ -6,7 +6,7 @@ import { pointAt } from '../geometry/curves.ts';
 import { boxOf, curvatureAt, lengthOf, velocityAt } from '../geometry/pieces.ts';
 
 /** How fast the wanted size may grow with distance. */
-export const GROWTH = 0.4;
+export const GROWTH = 0.5;
 
 /** More segments than this are not made for the sake of separation: the refinement will refuse the drawing. */
 const MOST_SEGMENTS = 100_000;

@@ -51,8 +51,10 @@ export function meshDeviceWithNotes(bodies: readonly Body[], plan: MeshPlan): Me
   const { cornerGrading, largestArc } = plan;
   const discretisation = discretise(arrangement, { ofLabel: base, cornerGrading, largestArc });
   const draft = new Draft(arrangement, discretisation, base, center, endRadius, MOST_VERTICES);
-  draft.refine(20);
-  draft.smooth(4);
+  for (const stretch of [1.1]) {
+    draft.refine(24, stretch);
+    draft.smooth(4);
+  }
   draft.refine(28);
   draft.smooth(4);
   draft.refine(28);
