@@ -37,16 +37,18 @@ export function settle(options: FigureOptions): Settled {
 /** Heading in ink, a quieter line below it; `bottom` is where the picture may begin. */
 export function heading(title: string, below: string, { palette, width }: Settled): { items: Item[]; bottom: number } {
   const items: Item[] = [];
+  // The widest of the system faces an SVG may be shown in runs 7 % wider than our own letters.
+  const room = 0.93 * (width - 2 * MARGIN);
   let y = MARGIN - 10;
   if (title !== '') {
-    for (const line of wrapped(title, TITLE_SIZE, width - 2 * MARGIN)) {
+    for (const line of wrapped(title, TITLE_SIZE, room)) {
       y += TITLE_SIZE * 1.32;
       items.push(text(line, MARGIN, y - 4, TITLE_SIZE, palette.ink));
     }
   }
   if (below !== '') {
     y += 4;
-    for (const line of wrapped(below, LABEL_SIZE + 1, width - 2 * MARGIN)) {
+    for (const line of wrapped(below, LABEL_SIZE + 1, room)) {
       y += (LABEL_SIZE + 1) * 1.4;
       items.push(text(line, MARGIN, y - 4, LABEL_SIZE + 1, palette.muted));
     }
