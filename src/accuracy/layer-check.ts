@@ -23,7 +23,6 @@ export interface LayerCheck {
 export const LAYER_MODE_SENSITIVITY = 1e-2;
 
 const ANGLE_STEP = 1e-5;
-const EXTRA_DEGREE = 8;
 
 /**
  * First-order shift of k by turning the layer: dk/dθ = −(uᵀ ∂A/∂θ u)/(uᵀ A_k u), integrated point by point over the
@@ -40,7 +39,7 @@ export function checkLayer(
   const { space, elements } = family.operator;
   const { mesh, starts, list, functions, signs } = space;
   const n = space.unknowns;
-  const rule = triangleRule(2 * space.order + EXTRA_DEGREE);
+  const rule = triangleRule(2 * space.order);
   const basis = tabulateBasis(space.order, rule.points);
   const nb = basis.values.length / rule.weights.length;
   const table = tabulateMap(rule.points, mesh.curveOrder);

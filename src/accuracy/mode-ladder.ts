@@ -4,7 +4,7 @@ import { embed } from '../elements/space.ts';
 import { inverseStep } from '../eigen/improve.ts';
 import { type EigenGroup, rayleighGroups } from '../eigen/rayleigh.ts';
 import { modesInWindow, ownGroups, type Tile, type Wedge, wedgeHolds } from '../eigen/window.ts';
-import type { LayerPlan } from '../boundary/stretched-layer.ts';
+import { type LayerPlan, returnedAt } from '../boundary/stretched-layer.ts';
 import { type Complex, modulus, subtract } from '../numerics/complex.ts';
 import type { DeviceFamily } from '../operator/device-family.ts';
 import { checkLayer, LAYER_MODE_SENSITIVITY, type LayerCheck } from './layer-check.ts';
@@ -46,7 +46,7 @@ export interface ModeSearchRequest {
 }
 
 /** Modes of one tile seek; more make longer recurrences, fewer more factorizations. */
-const MODES_PER_TILE = 18;
+const MODES_PER_TILE = 22;
 
 /** Relative residual at which a Krylov pair counts as found; block Rayleigh squares it. */
 const KRYLOV_TOLERANCE = 1e-9;
@@ -69,8 +69,9 @@ export function climbModes(family: (order: number) => DeviceFamily, request: Mod
   const width = groupWidth(digits, wedge.kMax);
   let order = request.startOrder;
   let here = family(order);
-  const found = modesInWindow(here, {
-    wedge,
+  const search = family(Math.min(order, SEARCH_ORDER));
+  const found = modesInWindow(search, {
+    wedge: widened(wedge),
     level,
     expected: request.expected,
     perTile: MODES_PER_TILE,
@@ -79,13 +80,11 @@ export function climbModes(family: (order: number) => DeviceFamily, request: Mod
     progress: (done) => progress?.('searching', done),
   });
   let tiles: readonly Tile[] = found.tiles;
+  if (search !== here) tiles = liftAll(search, here, tiles, request, width);
   let groups = tiles.map((t) => rayleighGroups(here, t.shift, level, t.vectors, t.ks.length, width));
   for (;;) {
     const up = family(order + 1);
-    const higher = tiles.map((tile, i) => {
-      progress?.(`order ${order + 1}`, i / tiles.length);
-      return lift(here, up, tile, level);
-    });
+    const higher = liftAll(here, up, tiles, request, width);
     const groupsUp = higher.map((t) => rayleighGroups(up, t.shift, level, t.vectors, t.ks.length, width));
     const owned = ownGroups(tiles, groups, width).filter((o) => wedgeHolds(wedge, o.group.k));
     const errors = owned.map((o) => discretization(o.group, groupsUp[o.tile]!));
@@ -100,7 +99,7 @@ export function climbModes(family: (order: number) => DeviceFamily, request: Mod
           dropped.push({ k, reason: `moves with the layer's angle (|dk/dθ|/|k| = ${check.sensitivity.toExponential(1)})` });
           continue;
         }
-        modes.push({ group: o.group, layer: check, error: errorParts(o.group, errors[i]!, check, layer) });
+        modes.push({ group: o.group, layer: check, error: errorParts(o.group, errors[i]!, layer) });
       }
       return { modes, dropped, covered: found.covered, order, reached };
     }
@@ -111,12 +110,55 @@ export function climbModes(family: (order: number) => DeviceFamily, request: Mod
   }
 }
 
-/** The tile's space in the next order, improved there. */
-function lift(from: DeviceFamily, to: DeviceFamily, tile: Tile, level: number): Tile {
+/**
+ * Order of the search itself: low, since Krylov works on all unknowns, high enough that every mode shows and none is
+ * confused; the tile's space is then improved as a whole in the order wanted.
+ */
+const SEARCH_ORDER = 5;
+
+/** The search is coarse: a mode may enter the window as the order rises. */
+const widened = ({ kMin, kMax, low, high }: Wedge): Wedge => ({
+  kMin: kMin * (1 - 1e-3),
+  kMax: kMax * (1 + 1e-3),
+  low: low * 1.01,
+  high: high * 1.01,
+});
+
+function liftAll(
+  from: DeviceFamily,
+  to: DeviceFamily,
+  tiles: readonly Tile[],
+  request: ModeSearchRequest,
+  width: number,
+): Tile[] {
+  return tiles.map((tile, i) => {
+    request.progress?.(`order ${to.operator.space.order}`, i / tiles.length);
+    return lift(from, to, tile, request, width);
+  });
+}
+
+/** Most steps of inverse iteration a lift may take. */
+const LIFT_STEPS = 8;
+
+/** The tile's space in another order, improved there as one space until its eigenvalues in the window stand still. */
+function lift(from: DeviceFamily, to: DeviceFamily, tile: Tile, request: ModeSearchRequest, width: number): Tile {
+  const { level, digits, wedge } = request;
   const columns = tile.ks.length;
   const inverse = to.factorize(tile.shift, level);
   let vectors = embed(to.operator.space, from.operator.space, tile.vectors, columns);
-  for (let i = 0; i < 2; i++) vectors = inverseStep(to, inverse, tile.shift, level, vectors, columns);
+  let before: EigenGroup[] = [];
+  for (let step = 0; step < LIFT_STEPS; step++) {
+    vectors = inverseStep(to, inverse, tile.shift, level, vectors, columns);
+    if (step === 0) continue;
+    const groups = rayleighGroups(to, tile.shift, level, vectors, columns, width, false).filter((g) =>
+      wedgeHolds(wedge, g.k),
+    );
+    const still = groups.every((g) =>
+      before.some((b) => modulus(subtract(b.k, g.k)) <= 0.01 * 10 ** -digits * modulus(g.k)),
+    );
+    if (still) break;
+    before = groups;
+  }
   return { ...tile, inverse, vectors };
 }
 
@@ -134,15 +176,14 @@ function discretization(group: EigenGroup, higher: readonly EigenGroup[]): numbe
 }
 
 /**
- * Boundary: |dk/d ln L| / (2|k|L) estimates what the end of the layer sends back (dk/dθ = i dk/d ln L since only
- * L e^{iθ} matters). Algebra: rounding of the Rayleigh quotient, measured 1e-15 to 5e-15 of |k|.
+ * Boundary: what the end of the layer sends back, 2 exp(−2|k| n_b L sin(θ − |arg k|)), moves a pole by about that share
+ * of its distance from its zero, 2|Im k|. Algebra: rounding of the Rayleigh quotient, measured 1e-15 to 5e-15 of |k|.
  */
-function errorParts(group: EigenGroup, discretizationError: number, check: LayerCheck, layer: LayerPlan): ErrorParts {
+function errorParts(group: EigenGroup, discretizationError: number, layer: LayerPlan): ErrorParts {
   const k = modulus(group.k);
-  const length = layer.endRadius - layer.rimRadius;
   return {
     discretization: discretizationError,
-    boundary: (check.sensitivity * k) / (2 * k * length),
+    boundary: returnedAt(layer, group.k) * 2 * Math.abs(group.k.im),
     algebra: 1e-14 * k,
   };
 }

@@ -1,11 +1,15 @@
 // How does an open device end: where, how thick, and with which stretched coefficients?
 
+import { argument, type Complex, modulus } from '../numerics/complex.ts';
+
 /** A radial stretched layer R ≤ r ≤ R + L in which r̃ = R + (r − R) e^{iθ}: outgoing waves decay. */
 export interface LayerPlan {
   readonly rimRadius: number;
   readonly endRadius: number;
   /** θ, radians. */
   readonly angle: number;
+  /** n_b. */
+  readonly backgroundIndex: number;
   /** Relative amplitude of what the end sends back: 2 exp(−2 |k| n_b L sin(θ − |arg k|)) at the worst k of the plan. */
   readonly returned: number;
 }
@@ -42,7 +46,19 @@ export function planLayer(request: LayerRequest): LayerPlan {
   const rate = 2 * kMin * backgroundIndex * Math.sin(room);
   const length = Math.log(2 / tolerance) / rate;
   const rimRadius = bodyRadius + gap;
-  return { rimRadius, endRadius: rimRadius + length, angle: LAYER_ANGLE, returned: 2 * Math.exp(-rate * length) };
+  return {
+    rimRadius,
+    endRadius: rimRadius + length,
+    angle: LAYER_ANGLE,
+    backgroundIndex,
+    returned: 2 * Math.exp(-rate * length),
+  };
+}
+
+/** What the layer's end returns at one k, relative amplitude. */
+export function returnedAt(plan: LayerPlan, k: Complex): number {
+  const room = plan.angle - Math.abs(argument(k));
+  return 2 * Math.exp(-2 * modulus(k) * plan.backgroundIndex * (plan.endRadius - plan.rimRadius) * Math.sin(room));
 }
 
 /**

@@ -9,12 +9,24 @@ export interface Inverse {
   solveInto(out: ComplexArray, rhs: ComplexArray, columns: number): ComplexArray;
 }
 
+/** What a term of the family is multiplied by at k, and the derivative of that by k. */
+export interface TermFactor {
+  readonly value: Complex;
+  readonly byK: Complex;
+}
+
 /**
- * A family of complex symmetric matrices A(k, level) of one size, analytic in k and in a real level (pump, loss, knob).
- * Vectors are interleaved, columns column-major.
+ * A family of complex symmetric matrices of one size, A(k, level) = Σ_j f_j(k) A_j(level): analytic in k, smooth in a
+ * real level (pump, loss, knob), few terms, so that its projection on a small space is known at every k from one product
+ * a term. Vectors are interleaved, columns column-major.
  */
 export interface EigenProblem {
   readonly size: number;
+  readonly terms: number;
+  /** f_j and its derivative at k. */
+  termFactor(j: number, k: Complex): TermFactor;
+  /** out = A_j(level) x. */
+  multiplyTermInto(out: ComplexArray, j: number, level: number, x: ComplexArray, columns: number): ComplexArray;
   /** out = A x, ∂A/∂k x or ∂A/∂level x. */
   multiplyInto(out: ComplexArray, k: Complex, level: number, part: Part, x: ComplexArray, columns: number): ComplexArray;
   factorize(k: Complex, level: number): Inverse;

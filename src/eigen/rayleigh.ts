@@ -22,7 +22,7 @@ export interface EigenGroup {
 /**
  * Eigenvalues near k of the problem projected on the columns of U, by the block Rayleigh functional: eigenvalues δ of
  * UᵀA(k)U + δ UᵀA′(k)U. Complex symmetry makes the error quadratic in that of U. Repeated from the group's own mean
- * until it stands still, since A is not linear in k.
+ * until it stands still, since A is not linear in k; one product a term serves every k.
  *
  * @param near   where the cluster lies
  * @param columns of U, which is size × columns
@@ -38,25 +38,37 @@ export function rayleighGroups(
   withSlope = true,
 ): EigenGroup[] {
   const n = problem.size;
-  const first = smallPencil(problem, near, level, U, columns);
+  const projected = projectTerms(problem, level, U, columns);
+  const first = smallPencil(problem, projected, near, columns);
   if (!first) return [];
-  return gather(first.offsets, tolerance).map((members) => {
-    const y = new Float64Array(2 * columns * members.length);
+  return gather(first.offsets, tolerance).flatMap((members) => {
+    const count = members.length;
+    const y = new Float64Array(2 * columns * count);
     members.forEach((i, j) => y.set(first.vectors.subarray(2 * columns * i, 2 * columns * (i + 1)), 2 * columns * j));
-    const vectors = normaliseColumns(combine(U, columns, y, members.length, n), members.length, n);
+    const own = projected.map((p) => transposeProduct(y, count, combine(p, columns, y, count, columns), count, columns));
     let k = add(near, mean(members.map((i) => first.offsets[i]!)));
     let spread = 0;
-    for (let pass = 0; pass < 8; pass++) {
-      const again = smallPencil(problem, k, level, vectors, members.length);
-      if (!again) break;
+    for (let pass = 0; pass < 12; pass++) {
+      const again = smallPencil(problem, own, k, count);
+      if (!again) return [];
       const step = mean(again.offsets);
       spread = Math.max(...again.offsets.map((o) => modulus(subtract(o, step))));
       k = add(k, step);
       // Newton's next step is the square of this one
       if (modulus(step) <= 1e-8 * modulus(k)) break;
     }
-    const slope = withSlope ? groupSlope(problem, k, level, vectors, members.length) : complex(0);
-    return { k, spread, slope, multiplicity: members.length, vectors };
+    const vectors = normaliseColumns(combine(U, columns, y, count, n), count, n);
+    const slope = withSlope ? groupSlope(problem, k, level, vectors, count) : complex(0);
+    return [{ k, spread, slope, multiplicity: count, vectors }];
+  });
+}
+
+/** UᵀA_jU of every term. */
+function projectTerms(problem: EigenProblem, level: number, U: ComplexArray, columns: number): ComplexArray[] {
+  const work = new Float64Array(2 * problem.size * columns);
+  return Array.from({ length: problem.terms }, (_, j) => {
+    problem.multiplyTermInto(work, j, level, U, columns);
+    return transposeProduct(U, columns, work, columns, problem.size);
   });
 }
 
@@ -77,19 +89,26 @@ function groupSlope(problem: EigenProblem, k: Complex, level: number, U: Complex
   return scale(trace, -1 / columns);
 }
 
+/** Offsets δ and vectors of Σ f_j(k) P_j + δ Σ f_j′(k) P_j; null where the second matrix is singular. */
 function smallPencil(
   problem: EigenProblem,
+  projected: readonly ComplexArray[],
   k: Complex,
-  level: number,
-  U: ComplexArray,
   columns: number,
 ): { readonly offsets: readonly Complex[]; readonly vectors: ComplexArray } | null {
-  const n = problem.size;
-  const work = new Float64Array(2 * n * columns);
-  problem.multiplyInto(work, k, level, 'value', U, columns);
-  const g = transposeProduct(U, columns, work, columns, n);
-  problem.multiplyInto(work, k, level, 'byK', U, columns);
-  const slope = transposeProduct(U, columns, work, columns, n);
+  const g = new Float64Array(2 * columns * columns);
+  const slope = new Float64Array(2 * columns * columns);
+  projected.forEach((p, j) => {
+    const { value, byK } = problem.termFactor(j, k);
+    for (let s = 0; s < g.length; s += 2) {
+      const a = p[s]!;
+      const b = p[s + 1]!;
+      g[s] = g[s]! + value.re * a - value.im * b;
+      g[s + 1] = g[s + 1]! + value.re * b + value.im * a;
+      slope[s] = slope[s]! + byK.re * a - byK.im * b;
+      slope[s + 1] = slope[s + 1]! + byK.re * b + byK.im * a;
+    }
+  });
   if (columns === 1) {
     const d = complex(slope[0]!, slope[1]!);
     if (modulus(d) === 0) return null;

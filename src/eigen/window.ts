@@ -21,7 +21,7 @@ export interface WindowRequest {
   readonly level: number;
   /** Expected number of eigenvalues with real k in [a, b]: sets the size of the tiles. */
   readonly expected: (a: number, b: number) => number;
-  /** Modes wanted a tile. */
+  /** Largest number of modes expected in a tile's disc. */
   readonly perTile: number;
   readonly tolerance: number;
   readonly seed: number;
@@ -48,39 +48,47 @@ export interface WindowAnswer {
 }
 
 /**
- * Covers the wedge with discs about shifts and finds everything in each by block Arnoldi. A tile that cannot be covered
- * is halved, up to a depth of 6. Discs overlap: `ownGroups` tells which tile answers for which mode.
+ * Covers the wedge with discs about shifts and finds everything in each by block Arnoldi. The wedge is cut along its
+ * longer side until a disc is expected to hold few modes, and again where a disc could not be covered. Discs overlap:
+ * `ownGroups` tells which tile answers for which mode.
  */
 export function modesInWindow(problem: EigenProblem, request: WindowRequest): WindowAnswer {
-  const { wedge } = request;
-  const edges = tileEdges(request);
+  const { wedge, expected, perTile } = request;
   const tiles: Tile[] = [];
   let covered = true;
   let tries = 0;
-  const visit = (a: number, b: number, depth: number): void => {
-    const shift = tileShift(wedge, a, b);
-    const radius = tileRadius(wedge, a, b, shift) * 1.02;
+  const visit = (part: Wedge, depth: number): void => {
+    const shift = tileShift(part);
+    const radius = tileRadius(part, shift) * 1.02;
+    const center = shift.re * shift.re - shift.im * shift.im;
+    const count = expected(Math.sqrt(Math.max(0, center - radius)), Math.sqrt(center + radius));
+    if (count > perTile && depth < 10 && radius > 0.02 * center) {
+      for (const half of cut(part)) visit(half, depth + 1);
+      return;
+    }
     const nearby = modesNear(problem, {
       shift,
       level: request.level,
       radius,
-      block: 3,
-      largestDimension: 40 + 5 * request.perTile,
+      block: BLOCK,
+      largestDimension: 40 + 5 * perTile,
       tolerance: request.tolerance,
       seed: request.seed + tries++,
     });
-    if (!nearby.covered && nearby.dimension < problem.size && depth < 6) {
-      visit(a, (a + b) / 2, depth + 1);
-      visit((a + b) / 2, b, depth + 1);
+    if (!nearby.covered && nearby.dimension < problem.size && depth < 14) {
+      for (const half of cut(part)) visit(half, depth + 1);
       return;
     }
     covered &&= nearby.covered || nearby.dimension >= problem.size;
     tiles.push({ shift, radius, inverse: nearby.inverse, ks: nearby.ks, vectors: nearby.vectors });
-    request.progress?.((b - wedge.kMin) / (wedge.kMax - wedge.kMin));
+    request.progress?.((part.kMax - wedge.kMin) / (wedge.kMax - wedge.kMin));
   };
-  for (let i = 0; i + 1 < edges.length; i++) visit(edges[i]!, edges[i + 1]!, 0);
+  visit(wedge, 0);
   return { tiles, covered };
 }
+
+/** Columns that Arnoldi starts with: exact pairs and a third by accident are seen at once. */
+const BLOCK = 3;
 
 /** A group of modes and the tile it was taken from. */
 export interface OwnedGroup {
@@ -117,30 +125,34 @@ export function ownGroups(tiles: readonly Tile[], groups: readonly (readonly Eig
     .sort((a, b) => a.group.k.re - b.group.k.re);
 }
 
-/** Tiles of about `perTile` modes each, and no wider than 0.6 of their middle k. */
-function tileEdges(request: WindowRequest): number[] {
-  const { wedge, expected, perTile } = request;
-  const edges = [wedge.kMin];
-  while (edges[edges.length - 1]! < wedge.kMax * (1 - 1e-12)) {
-    const a = edges[edges.length - 1]!;
-    let b = Math.min(wedge.kMax, a * 1.8);
-    for (let step = 0; step < 30 && expected(a, b) > perTile; step++) b = a + (b - a) * 0.8;
-    edges.push(b > wedge.kMax - 0.3 * (b - a) ? wedge.kMax : b);
+/** Two halves of a wedge, cut along its longer side. */
+function cut(part: Wedge): Wedge[] {
+  const { kMin, kMax, low, high } = part;
+  if (kMax - kMin >= ((low + high) * (kMin + kMax)) / 2) {
+    const middle = (kMin + kMax) / 2;
+    return [
+      { ...part, kMax: middle },
+      { ...part, kMin: middle },
+    ];
   }
-  return edges;
+  const middle = (high - low) / 2;
+  return [
+    { ...part, low: -middle },
+    { ...part, high: middle },
+  ];
 }
 
-/** Middle of the tile's bounding box; nudged off the real axis so that the matrix is never singular on it. */
-function tileShift(wedge: Wedge, a: number, b: number): Complex {
-  const re = (a + b) / 2;
-  const im = ((wedge.high - wedge.low) * re) / 2;
+/** Middle of the tile; nudged so that a symmetric window does not put it on an eigenvalue. */
+function tileShift({ kMin, kMax, low, high }: Wedge): Complex {
+  const re = (kMin + kMax) / 2;
+  const im = ((high - low) * re) / 2;
   return complex(re * 1.0007, im === 0 ? 1e-4 * re : im);
 }
 
-function tileRadius(wedge: Wedge, a: number, b: number, shift: Complex): number {
+function tileRadius({ kMin, kMax, low, high }: Wedge, shift: Complex): number {
   let radius = 0;
-  for (const re of [a, b]) {
-    for (const slope of [-wedge.low, wedge.high]) {
+  for (const re of [kMin, kMax]) {
+    for (const slope of [-low, high]) {
       radius = Math.max(radius, squareDistance(complex(re, slope * re), shift));
     }
   }

@@ -16,6 +16,10 @@ export type Part = 'value' | 'byK' | 'byLevel';
 export interface DeviceFamily {
   readonly size: number;
   readonly operator: OpenOperator;
+  /** Two terms: stiffness with factor 1, mass with factor −k². */
+  readonly terms: number;
+  termFactor(j: number, k: Complex): { readonly value: Complex; readonly byK: Complex };
+  multiplyTermInto(out: ComplexArray, j: number, level: number, x: ComplexArray, columns: number): ComplexArray;
   weights(k: Complex, level: number, part: Part): RegionWeights;
   multiplyInto(out: ComplexArray, k: Complex, level: number, part: Part, x: ComplexArray, columns: number): ComplexArray;
   factorize(k: Complex, level: number): Factorization;
@@ -42,9 +46,24 @@ export function deviceFamily(device: Device, operator: OpenOperator, sense: Leve
     }
     return out;
   };
+  const termWeights = (j: number, level: number): RegionWeights => {
+    const out = zeroWeights(device.bodies.length);
+    for (let region = LAYER; region < device.bodies.length; region++) {
+      const { p, q } = regionMaterial(device, region, level, sense);
+      if (j === 0) setWeight(out.stiffness, region, p);
+      else setWeight(out.mass, region, q);
+    }
+    return out;
+  };
   return {
     size: operator.space.unknowns,
     operator,
+    terms: 2,
+    termFactor: (j, k) =>
+      j === 0
+        ? { value: complex(1), byK: complex(0) }
+        : { value: scale(multiply(k, k), -1), byK: scale(k, -2) },
+    multiplyTermInto: (out, j, level, x, columns) => operator.multiplyInto(out, termWeights(j, level), x, columns),
     weights,
     multiplyInto: (out, k, level, part, x, columns) =>
       operator.multiplyInto(out, weights(k, level, part), x, columns),

@@ -35,6 +35,12 @@ export interface Prepared {
 /** Largest angle an edge may span on its curve: there a degree-10 polynomial equals the arc to rounding. */
 const LARGEST_ARC = 0.6;
 
+/**
+ * Triangles in the layer may grow to this many times the background's: a wave at depth x matters by exp(−2kx sin θ) only,
+ * which pays for sides growing like exp(kx sin θ / p). The mesher lets them grow by 0.4 of the distance from the rim.
+ */
+const LAYER_COARSENING = 3;
+
 /** Meshes the device. `refine` < 1 asks for smaller triangles than the rule: an independent mesh for a forward check. */
 export function prepare(device: Device, scope: Scope, resolution: Resolution, refine = 1): Prepared {
   const index = Math.sqrt(device.background.permittivity * device.background.permeability);
@@ -56,7 +62,7 @@ export function prepare(device: Device, scope: Scope, resolution: Resolution, re
       size(Math.sqrt(Math.hypot(b.permittivity.re, b.permittivity.im) * Math.hypot(b.permeability.re, b.permeability.im))),
     ),
     backgroundSize: size(index),
-    layerSize: size(index),
+    layerSize: LAYER_COARSENING * size(index),
     cornerGrading: resolution.cornerGrading,
     largestArc: LARGEST_ARC * Math.min(1, refine),
   });
