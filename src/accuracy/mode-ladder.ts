@@ -87,8 +87,8 @@ export function climbModes(family: (order: number) => DeviceFamily, request: Mod
     const higher = liftAll(here, up, tiles, request, width);
     const groupsUp = higher.map((t) => rayleighGroups(up, t.shift, level, t.vectors, t.ks.length, width));
     const owned = ownGroups(tiles, groups, width).filter((o) => wedgeHolds(wedge, o.group.k));
-    const errors = owned.map((o) => discretization(o.group, groupsUp[o.tile]!));
-    const reached = owned.every((o, i) => errors[i]! <= 10 ** -digits * modulus(o.group.k));
+    const errors = owned.map((o) => discretization(o.group, groupsUp[o.tile]));
+    const reached = owned.every((o, i) => errors[i] <= 10 ** -digits * modulus(o.group.k));
     if (reached || order + 1 >= HIGHEST_ORDER) {
       const modes: FoundMode[] = [];
       const dropped: { k: Complex; reason: string }[] = [];
@@ -96,10 +96,13 @@ export function climbModes(family: (order: number) => DeviceFamily, request: Mod
         const { k, vectors, multiplicity } = o.group;
         const check = checkLayer(here, layer, k, level, vectors, multiplicity);
         if (check.sensitivity > LAYER_MODE_SENSITIVITY) {
-          dropped.push({ k, reason: `moves with the layer's angle (|dk/dθ|/|k| = ${check.sensitivity.toExponential(1)})` });
+          dropped.push({
+            k,
+            reason: `moves with the layer's angle (|dk/dθ|/|k| = ${check.sensitivity.toExponential(1)})`,
+          });
           continue;
         }
-        modes.push({ group: o.group, layer: check, error: errorParts(o.group, errors[i]!, layer) });
+        modes.push({ group: o.group, layer: check, error: errorParts(o.group, errors[i], layer) });
       }
       return { modes, dropped, covered: found.covered, order, reached };
     }

@@ -38,9 +38,11 @@ export const LAYER_ANGLE = (75 * Math.PI) / 180;
  */
 export function planLayer(request: LayerRequest): LayerPlan {
   const { bodyRadius, kMin, kMax, largestArgument, backgroundIndex, tolerance } = request;
-  if (!(kMin > 0 && kMax >= kMin)) throw new RangeError(`the band came as k = ${kMin} to ${kMax}; expected 0 < kMin ≤ kMax`);
+  if (!(kMin > 0 && kMax >= kMin))
+    throw new RangeError(`the band came as k = ${kMin} to ${kMax}; expected 0 < kMin ≤ kMax`);
   const room = LAYER_ANGLE - largestArgument;
-  if (!(room > 0.15)) throw new RangeError(`arg k came as ${largestArgument} rad; the layer sees less than ${LAYER_ANGLE - 0.15}`);
+  if (!(room > 0.15))
+    throw new RangeError(`arg k came as ${largestArgument} rad; the layer sees less than ${LAYER_ANGLE - 0.15}`);
   const wavelength = (2 * Math.PI) / (kMax * backgroundIndex);
   const gap = Math.min(Math.max(wavelength / 4, bodyRadius / 10), bodyRadius / 2);
   const rate = 2 * kMin * backgroundIndex * Math.sin(room);

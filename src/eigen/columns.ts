@@ -23,10 +23,10 @@ function product(x: ComplexArray, p: number, y: ComplexArray, q: number, n: numb
       let ri = 0;
       let ir = 0;
       for (let s = 0; s < 2 * n; s += 2) {
-        const a = xi[s]!;
-        const b = xi[s + 1]!;
-        const c = yj[s]!;
-        const d = yj[s + 1]!;
+        const a = xi[s];
+        const b = xi[s + 1];
+        const c = yj[s];
+        const d = yj[s + 1];
         rr += a * c;
         ii += b * d;
         ri += a * d;
@@ -52,15 +52,15 @@ export function addProduct(
   for (let j = 0; j < q; j++) {
     const oj = out.subarray(2 * j * n, 2 * (j + 1) * n);
     for (let i = 0; i < p; i++) {
-      const cr = factor * c[2 * (i + j * p)]!;
-      const ci = factor * c[2 * (i + j * p) + 1]!;
+      const cr = factor * c[2 * (i + j * p)];
+      const ci = factor * c[2 * (i + j * p) + 1];
       if (cr === 0 && ci === 0) continue;
       const xi = x.subarray(2 * i * n, 2 * (i + 1) * n);
       for (let s = 0; s < 2 * n; s += 2) {
-        const a = xi[s]!;
-        const b = xi[s + 1]!;
-        oj[s] = oj[s]! + cr * a - ci * b;
-        oj[s + 1] = oj[s + 1]! + cr * b + ci * a;
+        const a = xi[s];
+        const b = xi[s + 1];
+        oj[s] = oj[s] + cr * a - ci * b;
+        oj[s + 1] = oj[s + 1] + cr * b + ci * a;
       }
     }
   }
@@ -74,15 +74,15 @@ export const combine = (x: ComplexArray, p: number, c: ComplexArray, q: number, 
 /** Euclidean norm of column j. */
 export function columnNorm(x: ComplexArray, j: number, n: number): number {
   let sum = 0;
-  for (let s = 2 * j * n; s < 2 * (j + 1) * n; s++) sum += x[s]! * x[s]!;
+  for (let s = 2 * j * n; s < 2 * (j + 1) * n; s++) sum += x[s] * x[s];
   return Math.sqrt(sum);
 }
 
 /** Multiplies column j by a complex number. */
 export function scaleColumn(x: ComplexArray, j: number, n: number, re: number, im = 0): void {
   for (let s = 2 * j * n; s < 2 * (j + 1) * n; s += 2) {
-    const a = x[s]!;
-    const b = x[s + 1]!;
+    const a = x[s];
+    const b = x[s + 1];
     x[s] = re * a - im * b;
     x[s + 1] = re * b + im * a;
   }
@@ -115,7 +115,7 @@ export function orthonormalise(
     if (p === 0) break;
     const c = adjointProduct(v, p, w, q, n);
     addProduct(w, v, p, c, q, n, -1);
-    for (let s = 0; s < c.length; s++) h[s] = h[s]! + c[s]!;
+    for (let s = 0; s < c.length; s++) h[s] = h[s] + c[s];
   }
   const r = new Float64Array(2 * q * q);
   for (let j = 0; j < q; j++) {
@@ -125,12 +125,12 @@ export function orthonormalise(
       const c = adjointProduct(w, j, wj, 1, n);
       addProduct(wj, w, j, c, 1, n, -1);
       for (let i = 0; i < j; i++) {
-        r[2 * (i + j * q)] = r[2 * (i + j * q)]! + c[2 * i]!;
-        r[2 * (i + j * q) + 1] = r[2 * (i + j * q) + 1]! + c[2 * i + 1]!;
+        r[2 * (i + j * q)] = r[2 * (i + j * q)] + c[2 * i];
+        r[2 * (i + j * q) + 1] = r[2 * (i + j * q) + 1] + c[2 * i + 1];
       }
     }
     const norm = columnNorm(wj, 0, n);
-    if (norm <= 1e-12 * before[j]! || norm === 0) {
+    if (norm <= 1e-12 * before[j] || norm === 0) {
       wj.fill(0);
       continue;
     }

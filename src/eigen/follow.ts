@@ -63,13 +63,13 @@ function followBundle(
   bundle: readonly Strand[],
   out: ModePath[],
 ): Strand[][] {
-  const level = bundle[0]!.levels[bundle[0]!.levels.length - 1]!;
+  const level = bundle[0].levels[bundle[0].levels.length - 1];
   const lead = Math.min(...bundle.map((s) => levelOfAxis(s, level)));
   const room = request.levelMax - level;
-  const steps = bundle[0]!.levels.length;
+  const steps = bundle[0].levels.length;
   // straight to the axis when it is within reach of a good prediction, else half the way
   let step = Math.min(steps === 1 ? (lead - level) / 2 : lead - level, room);
-  if (steps > 1) step = Math.min(step, 4 * (level - bundle[0]!.levels[steps - 2]!));
+  if (steps > 1) step = Math.min(step, 4 * (level - bundle[0].levels[steps - 2]));
   if (!(room > 1e-9 * request.levelMax) || steps > LONGEST_PATH || !(lead - level < 1e3 * request.levelMax)) {
     for (const s of bundle) out.push(finish(s, null, 'range'));
     return [];
@@ -89,7 +89,7 @@ function followBundle(
       going.map((s) => s.group.k),
       request.clusterWidth * modulus(request.k),
     );
-    return parts.map((part) => part.map((i) => going[i]!));
+    return parts.map((part) => part.map((i) => going[i]));
   }
   for (const s of bundle) out.push(finish(s, null, 'lost'));
   return [];
@@ -144,10 +144,10 @@ function correct(
     const fits = groups.filter((g) => !used.has(g) && g.multiplicity === strand.group.multiplicity);
     if (fits.length === 0) return null;
     const group = fits.reduce((a, b) =>
-      modulus(subtract(a.k, predicted[i]!)) <= modulus(subtract(b.k, predicted[i]!)) ? a : b,
+      modulus(subtract(a.k, predicted[i])) <= modulus(subtract(b.k, predicted[i])) ? a : b,
     );
-    const miss = modulus(subtract(group.k, predicted[i]!));
-    const way = modulus(subtract(predicted[i]!, strand.group.k));
+    const miss = modulus(subtract(group.k, predicted[i]));
+    const way = modulus(subtract(predicted[i], strand.group.k));
     if (miss > 0.25 * way + 1e-6 * modulus(middle)) return null;
     used.add(group);
     moved.push({ group, levels: [...strand.levels, level], ks: [...strand.ks, group.k] });
@@ -161,8 +161,8 @@ function predict(strand: Strand, step: number): Complex {
   const tangent = add(k, scale(slope, step));
   const m = strand.levels.length;
   if (m < 2) return tangent;
-  const before = strand.levels[m - 1]! - strand.levels[m - 2]!;
-  const chord = scale(subtract(strand.ks[m - 1]!, strand.ks[m - 2]!), 1 / before);
+  const before = strand.levels[m - 1] - strand.levels[m - 2];
+  const chord = scale(subtract(strand.ks[m - 1], strand.ks[m - 2]), 1 / before);
   // slope changes from the chord's middle to here by slope − chord over before/2
   return add(tangent, scale(subtract(slope, chord), (step * step) / before));
 }
@@ -182,10 +182,10 @@ function crossingOf(
   strand: Strand,
 ): Crossing | null | 'not yet' {
   const { k } = strand.group;
-  const start = strand.ks[0]!;
+  const start = strand.ks[0];
   const met = Math.sign(k.im) !== Math.sign(start.im) || Math.abs(k.im) < 0.02 * Math.abs(start.im);
   if (!met) return 'not yet';
-  const level = strand.levels[strand.levels.length - 1]!;
+  const level = strand.levels[strand.levels.length - 1];
   const move = -k.im / strand.group.slope.im;
   const columns = bundle.reduce((sum, s) => sum + s.group.multiplicity, 0);
   const space = new Float64Array(2 * problem.size * columns);

@@ -44,7 +44,7 @@ export function residualStep(
   addProduct(residual, slope, columns, delta, columns, n, -1);
   inverse.solveInto(residual, residual, columns);
   const out = Float64Array.from(U);
-  for (let s = 0; s < out.length; s++) out[s] = out[s]! - residual[s]!;
+  for (let s = 0; s < out.length; s++) out[s] = out[s] - residual[s];
   return normaliseColumns(out, columns, n);
 }
 
@@ -66,8 +66,8 @@ export function relativeResidual(
     let a = 0;
     let b = 0;
     for (let i = 2 * j * n; i < 2 * (j + 1) * n; i++) {
-      a += r[i]! * r[i]!;
-      b += s[i]! * s[i]!;
+      a += r[i] * r[i];
+      b += s[i] * s[i];
     }
     worst = Math.max(worst, Math.sqrt(a / b) / Math.hypot(k.re, k.im));
   }

@@ -1,6 +1,16 @@
 // Which eigenvalues lie near a shift?
 
-import { type Complex, complex, type ComplexArray, divide, modulus, multiply, squareRoot, subtract, add } from '../numerics/complex.ts';
+import {
+  type Complex,
+  complex,
+  type ComplexArray,
+  divide,
+  modulus,
+  multiply,
+  squareRoot,
+  subtract,
+  add,
+} from '../numerics/complex.ts';
 import { eigenGeneral } from '../numerics/eigenvalues.ts';
 import { randomStream } from '../numerics/random.ts';
 import { combine, normaliseColumns, orthonormalise } from './columns.ts';
@@ -54,8 +64,8 @@ export function modesNear(problem: EigenProblem, request: NearbyRequest): Nearby
     problem.multiplyInto(w, shift, level, 'byK', last, block);
     inverse.solveInto(w, w, block);
     for (let s = 0; s < 2 * n * block; s += 2) {
-      const a = w[s]!;
-      const b = w[s + 1]!;
+      const a = w[s];
+      const b = w[s + 1];
       w[s] = minusHalf.re * a - minusHalf.im * b;
       w[s + 1] = minusHalf.re * b + minusHalf.im * a;
     }
@@ -78,7 +88,7 @@ export function modesNear(problem: EigenProblem, request: NearbyRequest): Nearby
   kept.forEach((i, j) => y.set(found.vectors.subarray(2 * m * i, 2 * m * (i + 1)), 2 * m * j));
   const vectors = normaliseColumns(combine(v, m, y, kept.length, n), kept.length, n);
   const s2 = multiply(shift, shift);
-  const ks = kept.map((i) => squareRoot(add(s2, found.offsets[i]!)));
+  const ks = kept.map((i) => squareRoot(add(s2, found.offsets[i])));
   return { ks, vectors, covered: found.covered, dimension: m, inverse };
 }
 
@@ -98,7 +108,7 @@ function ritzPairs(h: ComplexArray, m: number, lead: number, block: number, tole
   const offsets: Complex[] = [];
   const residuals: number[] = [];
   for (let i = 0; i < m; i++) {
-    const theta = complex(values[2 * i]!, values[2 * i + 1]!);
+    const theta = complex(values[2 * i], values[2 * i + 1]);
     offsets.push(modulus(theta) > 0 ? divide(complex(1), theta) : complex(Infinity));
     // residual of T x = θ x: the subdiagonal block times the last block of y
     let sum = 0;
@@ -107,22 +117,22 @@ function ritzPairs(h: ComplexArray, m: number, lead: number, block: number, tole
       let im = 0;
       for (let b = 0; b < block; b++) {
         const e = 2 * (m + a + (m - block + b) * lead);
-        const yr = vectors[2 * (m - block + b + i * m)]!;
-        const yi = vectors[2 * (m - block + b + i * m) + 1]!;
-        re += h[e]! * yr - h[e + 1]! * yi;
-        im += h[e]! * yi + h[e + 1]! * yr;
+        const yr = vectors[2 * (m - block + b + i * m)];
+        const yi = vectors[2 * (m - block + b + i * m) + 1];
+        re += h[e] * yr - h[e + 1] * yi;
+        im += h[e] * yi + h[e + 1] * yr;
       }
       sum += re * re + im * im;
     }
     residuals.push(Math.sqrt(sum) / modulus(theta));
   }
-  const order = offsets.map((_, i) => i).sort((a, b) => modulus(offsets[a]!) - modulus(offsets[b]!));
+  const order = offsets.map((_, i) => i).sort((a, b) => modulus(offsets[a]) - modulus(offsets[b]));
   const converged: number[] = [];
   let insideOpen = false;
   let beyond = 0;
   for (const i of order) {
-    const done = residuals[i]! <= tolerance;
-    const inside = modulus(offsets[i]!) <= radius;
+    const done = residuals[i] <= tolerance;
+    const inside = modulus(offsets[i]) <= radius;
     if (done) converged.push(i);
     if (inside && !done) insideOpen = true;
     if (!inside && done) beyond++;

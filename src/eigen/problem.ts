@@ -28,6 +28,13 @@ export interface EigenProblem {
   /** out = A_j(level) x. */
   multiplyTermInto(out: ComplexArray, j: number, level: number, x: ComplexArray, columns: number): ComplexArray;
   /** out = A x, ∂A/∂k x or ∂A/∂level x. */
-  multiplyInto(out: ComplexArray, k: Complex, level: number, part: Part, x: ComplexArray, columns: number): ComplexArray;
+  multiplyInto(
+    out: ComplexArray,
+    k: Complex,
+    level: number,
+    part: Part,
+    x: ComplexArray,
+    columns: number,
+  ): ComplexArray;
   factorize(k: Complex, level: number): Inverse;
 }

@@ -1,6 +1,15 @@
 // Given a space that holds a cluster of eigenvectors, what are its eigenvalues and how do they move?
 
-import { add, type Complex, complex, type ComplexArray, divide, modulus, scale, subtract } from '../numerics/complex.ts';
+import {
+  add,
+  type Complex,
+  complex,
+  type ComplexArray,
+  divide,
+  modulus,
+  scale,
+  subtract,
+} from '../numerics/complex.ts';
 import { eigenGeneral } from '../numerics/eigenvalues.ts';
 import { luFactor, luSolveInto } from '../numerics/lu.ts';
 import { combine, normaliseColumns, transposeProduct } from './columns.ts';
@@ -45,8 +54,10 @@ export function rayleighGroups(
     const count = members.length;
     const y = new Float64Array(2 * columns * count);
     members.forEach((i, j) => y.set(first.vectors.subarray(2 * columns * i, 2 * columns * (i + 1)), 2 * columns * j));
-    const own = projected.map((p) => transposeProduct(y, count, combine(p, columns, y, count, columns), count, columns));
-    let k = add(near, mean(members.map((i) => first.offsets[i]!)));
+    const own = projected.map((p) =>
+      transposeProduct(y, count, combine(p, columns, y, count, columns), count, columns),
+    );
+    let k = add(near, mean(members.map((i) => first.offsets[i])));
     let spread = 0;
     for (let pass = 0; pass < 12; pass++) {
       const again = smallPencil(problem, own, k, count);
@@ -84,7 +95,7 @@ function groupSlope(problem: EigenProblem, k: Complex, level: number, U: Complex
   luSolveInto(byLevel, lu, byLevel, columns);
   let trace = complex(0);
   for (let i = 0; i < columns; i++) {
-    trace = add(trace, complex(byLevel[2 * (i + i * columns)]!, byLevel[2 * (i + i * columns) + 1]!));
+    trace = add(trace, complex(byLevel[2 * (i + i * columns)], byLevel[2 * (i + i * columns) + 1]));
   }
   return scale(trace, -1 / columns);
 }
@@ -101,27 +112,27 @@ function smallPencil(
   projected.forEach((p, j) => {
     const { value, byK } = problem.termFactor(j, k);
     for (let s = 0; s < g.length; s += 2) {
-      const a = p[s]!;
-      const b = p[s + 1]!;
-      g[s] = g[s]! + value.re * a - value.im * b;
-      g[s + 1] = g[s + 1]! + value.re * b + value.im * a;
-      slope[s] = slope[s]! + byK.re * a - byK.im * b;
-      slope[s + 1] = slope[s + 1]! + byK.re * b + byK.im * a;
+      const a = p[s];
+      const b = p[s + 1];
+      g[s] = g[s] + value.re * a - value.im * b;
+      g[s + 1] = g[s + 1] + value.re * b + value.im * a;
+      slope[s] = slope[s] + byK.re * a - byK.im * b;
+      slope[s + 1] = slope[s + 1] + byK.re * b + byK.im * a;
     }
   });
   if (columns === 1) {
-    const d = complex(slope[0]!, slope[1]!);
+    const d = complex(slope[0], slope[1]);
     if (modulus(d) === 0) return null;
-    const offset = scale(divide(complex(g[0]!, g[1]!), d), -1);
+    const offset = scale(divide(complex(g[0], g[1]), d), -1);
     return { offsets: [offset], vectors: Float64Array.of(1, 0) };
   }
   const lu = luFactor(slope, columns);
   const matrix = luSolveInto(new Float64Array(g.length), lu, g, columns);
-  for (let s = 0; s < matrix.length; s++) matrix[s] = -matrix[s]!;
+  for (let s = 0; s < matrix.length; s++) matrix[s] = -matrix[s];
   if (!matrix.every(Number.isFinite)) return null;
   const { values, vectors } = eigenGeneral(matrix, columns);
   return {
-    offsets: Array.from({ length: columns }, (_, i) => complex(values[2 * i]!, values[2 * i + 1]!)),
+    offsets: Array.from({ length: columns }, (_, i) => complex(values[2 * i], values[2 * i + 1])),
     vectors,
   };
 }
@@ -136,7 +147,7 @@ export function gather(values: readonly Complex[], tolerance: number): number[][
     taken[i] = true;
     for (let at = 0; at < group.length; at++) {
       for (let j = 0; j < values.length; j++) {
-        if (!taken[j] && modulus(subtract(values[j]!, values[group[at]!]!)) <= tolerance) {
+        if (!taken[j] && modulus(subtract(values[j], values[group[at]])) <= tolerance) {
           taken[j] = true;
           group.push(j);
         }

@@ -100,10 +100,14 @@ export interface OwnedGroup {
  * One row for every group seen by any tile: where discs overlap, the tile that saw the highest multiplicity answers,
  * and among equals the one whose shift is nearest. `width` is the absolute distance within which groups are the same.
  */
-export function ownGroups(tiles: readonly Tile[], groups: readonly (readonly EigenGroup[])[], width: number): OwnedGroup[] {
+export function ownGroups(
+  tiles: readonly Tile[],
+  groups: readonly (readonly EigenGroup[])[],
+  width: number,
+): OwnedGroup[] {
   const all = groups.flatMap((list, tile) =>
     list
-      .filter((g) => squareDistance(g.k, tiles[tile]!.shift) <= 1.05 * tiles[tile]!.radius)
+      .filter((g) => squareDistance(g.k, tiles[tile].shift) <= 1.05 * tiles[tile].radius)
       .map((group) => ({ group, tile })),
   );
   const same = gather(
@@ -112,10 +116,10 @@ export function ownGroups(tiles: readonly Tile[], groups: readonly (readonly Eig
   );
   return same
     .flatMap((indices) => {
-      const members = indices.map((i) => all[i]!);
+      const members = indices.map((i) => all[i]);
       const count = (tile: number): number =>
         members.reduce((sum, g) => sum + (g.tile === tile ? g.group.multiplicity : 0), 0);
-      const distance = (g: OwnedGroup): number => squareDistance(g.group.k, tiles[g.tile]!.shift);
+      const distance = (g: OwnedGroup): number => squareDistance(g.group.k, tiles[g.tile].shift);
       const best = members.reduce((a, b) => {
         const more = count(b.tile) - count(a.tile);
         return more > 0 || (more === 0 && distance(b) < distance(a)) ? b : a;

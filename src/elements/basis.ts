@@ -45,44 +45,44 @@ export function tabulateBasis(
   const jacobiSlope = new Float64Array(order + 1);
   for (let q = 0; q < nq; q++) {
     const at = q * nd;
-    const x = points[2 * q]!;
-    const y = points[2 * q + 1]!;
+    const x = points[2 * q];
+    const y = points[2 * q + 1];
     const lambda = [1 - x - y, x, y];
     for (let i = 0; i < 3; i++) {
       values[at + i] = lambda[i]!;
-      dx[at + i] = GRADIENT[i]![0];
-      dy[at + i] = GRADIENT[i]![1];
+      dx[at + i] = GRADIENT[i][0];
+      dy[at + i] = GRADIENT[i][1];
     }
     for (let e = 2; e >= 0; e--) {
       // edge 0 comes last, so that its values serve the interior functions below
       const a = e;
       const b = (e + 1) % 3;
-      scaledIntegratedLegendreInto(bubble, byX, byT, order, lambda[b]! - lambda[a]!, lambda[a]! + lambda[b]!);
-      const sx = GRADIENT[b]![0] - GRADIENT[a]![0];
-      const sy = GRADIENT[b]![1] - GRADIENT[a]![1];
-      const tx = GRADIENT[b]![0] + GRADIENT[a]![0];
-      const ty = GRADIENT[b]![1] + GRADIENT[a]![1];
+      scaledIntegratedLegendreInto(bubble, byX, byT, order, lambda[b] - lambda[a], lambda[a] + lambda[b]);
+      const sx = GRADIENT[b][0] - GRADIENT[a][0];
+      const sy = GRADIENT[b][1] - GRADIENT[a][1];
+      const tx = GRADIENT[b][0] + GRADIENT[a][0];
+      const ty = GRADIENT[b][1] + GRADIENT[a][1];
       for (let j = 2; j <= order; j++) {
         const f = at + edgeFunction(e, j);
         const c = edgeScale(j);
-        values[f] = c * bubble[j]!;
-        dx[f] = c * (byX[j]! * sx + byT[j]! * tx);
-        dy[f] = c * (byX[j]! * sy + byT[j]! * ty);
+        values[f] = c * bubble[j];
+        dx[f] = c * (byX[j] * sx + byT[j] * tx);
+        dy[f] = c * (byX[j] * sy + byT[j] * ty);
       }
     }
     for (let i = 2; i < order; i++) {
       // g = L_i^S(λ1−λ0, λ0+λ1): λ1−λ0 = 2x+y−1, λ0+λ1 = 1−y
       const c = edgeScale(i);
-      const g = c * bubble[i]!;
-      const gx = c * 2 * byX[i]!;
-      const gy = c * (byX[i]! - byT[i]!);
+      const g = c * bubble[i];
+      const gx = c * 2 * byX[i];
+      const gy = c * (byX[i] - byT[i]);
       jacobiInto(jacobi, order - 1 - i, 2 * i - 2, 1, 2 * y - 1);
       jacobiDerivativesInto(jacobiSlope, order - 1 - i, 2 * i - 2, 1, 2 * y - 1);
       for (let l = 0; l <= order - 1 - i; l++) {
         const j = i + l + 1;
         const f = at + interiorFunction(j) + (i - 2);
-        const h = y * jacobi[l]!;
-        const hy = jacobi[l]! + 2 * y * jacobiSlope[l]!;
+        const h = y * jacobi[l];
+        const hy = jacobi[l] + 2 * y * jacobiSlope[l];
         values[f] = g * h;
         dx[f] = gx * h;
         dy[f] = gy * h + g * hy;

@@ -39,26 +39,26 @@ export function assembleElements(space: Space, layer: PointCoefficients): Elemen
   const table = tabulateMap(rule.points, mesh.curveOrder);
   const work = makeWork(rule, space.order);
   for (let t = 0; t < triangles; t++) {
-    const functions = space.functions.subarray(starts[t]!, starts[t + 1]!);
-    const signs = space.signs.subarray(starts[t]!, starts[t + 1]!);
+    const functions = space.functions.subarray(starts[t], starts[t + 1]);
+    const signs = space.signs.subarray(starts[t], starts[t + 1]);
     const nd = functions.length;
     if (mesh.regions[t] === LAYER) {
       complex[t] = 1;
       stiffness[t] = new Float64Array(2 * nd * nd);
       mass[t] = new Float64Array(2 * nd * nd);
       mapInto(work.map, mesh, t, table);
-      integrateLayer(stiffness[t]!, mass[t]!, functions, basis, rule.weights, work, layer);
-      applySigns(stiffness[t]!, signs, 2);
-      applySigns(mass[t]!, signs, 2);
+      integrateLayer(stiffness[t], mass[t], functions, basis, rule.weights, work, layer);
+      applySigns(stiffness[t], signs, 2);
+      applySigns(mass[t], signs, 2);
       continue;
     }
     stiffness[t] = new Float64Array(nd * nd);
     mass[t] = new Float64Array(nd * nd);
     mapInto(work.map, mesh, t, table);
-    if (isCurved(mesh, t)) integrateCurved(stiffness[t]!, mass[t]!, functions, basis, rule.weights, work);
-    else scaleReference(stiffness[t]!, mass[t]!, functions, reference, work.map);
-    applySigns(stiffness[t]!, signs, 1);
-    applySigns(mass[t]!, signs, 1);
+    if (isCurved(mesh, t)) integrateCurved(stiffness[t], mass[t], functions, basis, rule.weights, work);
+    else scaleReference(stiffness[t], mass[t], functions, reference, work.map);
+    applySigns(stiffness[t], signs, 1);
+    applySigns(mass[t], signs, 1);
   }
   return { stiffness, mass, complex };
 }
@@ -88,15 +88,15 @@ function planeGradients(functions: Int32Array, basis: Basis, q: number, work: Wo
   const { map, gx, gy, f } = work;
   const total = basis.values.length / (map.length / MAP_STRIDE);
   const at = MAP_STRIDE * q;
-  const a = map[at + 2]!;
-  const b = map[at + 3]!;
-  const c = map[at + 4]!;
-  const d = map[at + 5]!;
+  const a = map[at + 2];
+  const b = map[at + 3];
+  const c = map[at + 4];
+  const d = map[at + 5];
   const det = a * d - b * c;
   for (let i = 0; i < functions.length; i++) {
-    const n = total * q + functions[i]!;
-    const dx = basis.dx[n]!;
-    const dy = basis.dy[n]!;
+    const n = total * q + functions[i];
+    const dx = basis.dx[n];
+    const dy = basis.dy[n];
     gx[i] = (d * dx - c * dy) / det;
     gy[i] = (a * dy - b * dx) / det;
     f[i] = basis.values[n]!;
@@ -115,15 +115,15 @@ function integrateCurved(
   const nd = functions.length;
   const { gx, gy, f } = work;
   for (let q = 0; q < weights.length; q++) {
-    const w = weights[q]! * planeGradients(functions, basis, q, work);
+    const w = weights[q] * planeGradients(functions, basis, q, work);
     for (let j = 0; j < nd; j++) {
-      const wx = w * gx[j]!;
-      const wy = w * gy[j]!;
-      const wf = w * f[j]!;
+      const wx = w * gx[j];
+      const wy = w * gy[j];
+      const wf = w * f[j];
       const col = j * nd;
       for (let i = 0; i <= j; i++) {
-        k[col + i] = k[col + i]! + wx * gx[i]! + wy * gy[i]!;
-        m[col + i] = m[col + i]! + wf * f[i]!;
+        k[col + i] = k[col + i] + wx * gx[i] + wy * gy[i];
+        m[col + i] = m[col + i] + wf * f[i];
       }
     }
   }
@@ -144,26 +144,26 @@ function integrateLayer(
   const { gx, gy, hx, hy, f, map } = work;
   const c = new Float64Array(8);
   for (let q = 0; q < weights.length; q++) {
-    const w = weights[q]! * planeGradients(functions, basis, q, work);
-    coefficients(map[MAP_STRIDE * q]!, map[MAP_STRIDE * q + 1]!, c);
+    const w = weights[q] * planeGradients(functions, basis, q, work);
+    coefficients(map[MAP_STRIDE * q], map[MAP_STRIDE * q + 1], c);
     for (let i = 0; i < nd; i++) {
-      hx[2 * i] = c[0]! * gx[i]! + c[2]! * gy[i]!;
-      hx[2 * i + 1] = c[1]! * gx[i]! + c[3]! * gy[i]!;
-      hy[2 * i] = c[2]! * gx[i]! + c[4]! * gy[i]!;
-      hy[2 * i + 1] = c[3]! * gx[i]! + c[5]! * gy[i]!;
+      hx[2 * i] = c[0] * gx[i] + c[2] * gy[i];
+      hx[2 * i + 1] = c[1] * gx[i] + c[3] * gy[i];
+      hy[2 * i] = c[2] * gx[i] + c[4] * gy[i];
+      hy[2 * i + 1] = c[3] * gx[i] + c[5] * gy[i];
     }
     for (let j = 0; j < nd; j++) {
-      const wx = w * gx[j]!;
-      const wy = w * gy[j]!;
-      const mr = w * f[j]! * c[6]!;
-      const mi = w * f[j]! * c[7]!;
+      const wx = w * gx[j];
+      const wy = w * gy[j];
+      const mr = w * f[j] * c[6];
+      const mi = w * f[j] * c[7];
       const col = 2 * j * nd;
       for (let i = 0; i <= j; i++) {
         const n = col + 2 * i;
-        k[n] = k[n]! + wx * hx[2 * i]! + wy * hy[2 * i]!;
-        k[n + 1] = k[n + 1]! + wx * hx[2 * i + 1]! + wy * hy[2 * i + 1]!;
-        m[n] = m[n]! + mr * f[i]!;
-        m[n + 1] = m[n + 1]! + mi * f[i]!;
+        k[n] = k[n] + wx * hx[2 * i] + wy * hy[2 * i];
+        k[n + 1] = k[n + 1] + wx * hx[2 * i + 1] + wy * hy[2 * i + 1];
+        m[n] = m[n] + mr * f[i];
+        m[n + 1] = m[n + 1] + mi * f[i];
       }
     }
   }
@@ -193,15 +193,15 @@ function referenceMatrices(order: number): Reference {
   const yy = new Float64Array(nd * nd);
   const mass = new Float64Array(nd * nd);
   for (let q = 0; q < rule.weights.length; q++) {
-    const w = rule.weights[q]!;
+    const w = rule.weights[q];
     const at = q * nd;
     for (let j = 0; j < nd; j++) {
       for (let i = 0; i < nd; i++) {
         const n = j * nd + i;
-        xx[n] = xx[n]! + w * dx[at + i]! * dx[at + j]!;
-        yy[n] = yy[n]! + w * dy[at + i]! * dy[at + j]!;
-        xy[n] = xy[n]! + w * (dx[at + i]! * dy[at + j]! + dy[at + i]! * dx[at + j]!);
-        mass[n] = mass[n]! + w * values[at + i]! * values[at + j]!;
+        xx[n] = xx[n] + w * dx[at + i] * dx[at + j];
+        yy[n] = yy[n] + w * dy[at + i] * dy[at + j];
+        xy[n] = xy[n] + w * (dx[at + i] * dy[at + j] + dy[at + i] * dx[at + j]);
+        mass[n] = mass[n] + w * values[at + i] * values[at + j];
       }
     }
   }
@@ -217,10 +217,10 @@ function scaleReference(
   reference: Reference,
   map: Float64Array,
 ): void {
-  const a = map[2]!;
-  const b = map[3]!;
-  const c = map[4]!;
-  const d = map[5]!;
+  const a = map[2];
+  const b = map[3];
+  const c = map[4];
+  const d = map[5];
   const det = a * d - b * c;
   const g11 = (d * d + b * b) / det;
   const g12 = -(c * d + a * b) / det;
@@ -228,9 +228,9 @@ function scaleReference(
   const nd = functions.length;
   for (let j = 0; j < nd; j++) {
     for (let i = 0; i < nd; i++) {
-      const n = functions[j]! * reference.nd + functions[i]!;
-      k[j * nd + i] = g11 * reference.xx[n]! + g12 * reference.xy[n]! + g22 * reference.yy[n]!;
-      m[j * nd + i] = det * reference.mass[n]!;
+      const n = functions[j] * reference.nd + functions[i];
+      k[j * nd + i] = g11 * reference.xx[n] + g12 * reference.xy[n] + g22 * reference.yy[n];
+      m[j * nd + i] = det * reference.mass[n];
     }
   }
 }
@@ -249,7 +249,7 @@ function applySigns(a: Float64Array, signs: Int8Array, width: 1 | 2): void {
   for (let j = 0; j < nd; j++) {
     for (let i = 0; i < nd; i++) {
       if (signs[i] === signs[j]) continue;
-      for (let c = 0; c < width; c++) a[width * (j * nd + i) + c] = -a[width * (j * nd + i) + c]!;
+      for (let c = 0; c < width; c++) a[width * (j * nd + i) + c] = -a[width * (j * nd + i) + c];
     }
   }
 }

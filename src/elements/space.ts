@@ -27,7 +27,7 @@ export function buildSpace(mesh: Mesh, orders: number | Int32Array): Space {
   const triangles = mesh.triangles.length / 3;
   const order = typeof orders === 'number' ? orders : orders.reduce((a, b) => Math.max(a, b), 1);
   if (!(order >= 1 && order <= 20)) throw new RangeError(`the order came as ${order}; expected 1 to 20`);
-  const orderOf = (t: number): number => (typeof orders === 'number' ? orders : orders[t]!);
+  const orderOf = (t: number): number => (typeof orders === 'number' ? orders : orders[t]);
 
   // edge orders and fixed boundary
   const edges = mesh.edges.length / 2;
@@ -35,13 +35,13 @@ export function buildSpace(mesh: Mesh, orders: number | Int32Array): Space {
   const vertexFixed = new Uint8Array(mesh.vertices.length / 2);
   const edgeFixed = new Uint8Array(edges);
   for (let e = 0; e < edges; e++) {
-    const t0 = mesh.edgeTriangles[2 * e]!;
-    const t1 = mesh.edgeTriangles[2 * e + 1]!;
+    const t0 = mesh.edgeTriangles[2 * e];
+    const t1 = mesh.edgeTriangles[2 * e + 1];
     edgeOrder[e] = Math.max(t0 >= 0 ? orderOf(t0) : 1, t1 >= 0 ? orderOf(t1) : 1);
     if (t0 < 0 || t1 < 0) {
       edgeFixed[e] = 1;
-      vertexFixed[mesh.edges[2 * e]!] = 1;
-      vertexFixed[mesh.edges[2 * e + 1]!] = 1;
+      vertexFixed[mesh.edges[2 * e]] = 1;
+      vertexFixed[mesh.edges[2 * e + 1]] = 1;
     }
   }
 
@@ -51,31 +51,31 @@ export function buildSpace(mesh: Mesh, orders: number | Int32Array): Space {
   const edgeUnknown = new Int32Array(edges);
   for (let e = 0; e < edges; e++) {
     edgeUnknown[e] = edgeFixed[e] ? -1 : unknowns;
-    if (!edgeFixed[e]) unknowns += edgeOrder[e]! - 1;
+    if (!edgeFixed[e]) unknowns += edgeOrder[e] - 1;
   }
   const starts = new Int32Array(triangles + 1);
   for (let t = 0; t < triangles; t++) {
     const p = orderOf(t);
     let count = 3 + ((p - 1) * (p - 2)) / 2;
-    for (let i = 0; i < 3; i++) count += edgeOrder[mesh.triangleEdges[3 * t + i]!]! - 1;
-    starts[t + 1] = starts[t]! + count;
+    for (let i = 0; i < 3; i++) count += edgeOrder[mesh.triangleEdges[3 * t + i]] - 1;
+    starts[t + 1] = starts[t] + count;
   }
 
   // lists
-  const list = new Int32Array(starts[triangles]!);
+  const list = new Int32Array(starts[triangles]);
   const functions = new Int32Array(list.length);
   const signs = new Int8Array(list.length).fill(1);
   for (let t = 0; t < triangles; t++) {
-    let at = starts[t]!;
+    let at = starts[t];
     for (let i = 0; i < 3; i++) {
-      list[at] = vertexUnknown[mesh.triangles[3 * t + i]!]!;
+      list[at] = vertexUnknown[mesh.triangles[3 * t + i]]!;
       functions[at++] = i;
     }
     for (let i = 0; i < 3; i++) {
-      const e = mesh.triangleEdges[3 * t + i]!;
-      const backwards = mesh.triangles[3 * t + i]! !== mesh.edges[2 * e]!;
-      for (let j = 2; j <= edgeOrder[e]!; j++) {
-        list[at] = edgeUnknown[e]! < 0 ? -1 : edgeUnknown[e]! + j - 2;
+      const e = mesh.triangleEdges[3 * t + i];
+      const backwards = mesh.triangles[3 * t + i] !== mesh.edges[2 * e];
+      for (let j = 2; j <= edgeOrder[e]; j++) {
+        list[at] = edgeUnknown[e] < 0 ? -1 : edgeUnknown[e] + j - 2;
         functions[at] = edgeFunction(i, j);
         if (backwards && j % 2 === 1) signs[at] = -1;
         at++;
@@ -94,7 +94,7 @@ export function buildSpace(mesh: Mesh, orders: number | Int32Array): Space {
 /** Largest number of shape functions on any triangle of the space. */
 export function largestElement(space: Space): number {
   let largest = 0;
-  for (let t = 0; t + 1 < space.starts.length; t++) largest = Math.max(largest, space.starts[t + 1]! - space.starts[t]!);
+  for (let t = 0; t + 1 < space.starts.length; t++) largest = Math.max(largest, space.starts[t + 1] - space.starts[t]);
   return largest;
 }
 
@@ -108,14 +108,14 @@ export function embed(to: Space, from: Space, x: Float64Array, columns = 1): Flo
   const target = new Int32Array(from.unknowns).fill(-1);
   for (let t = 0; t + 1 < to.starts.length; t++) {
     where.fill(-1);
-    for (let i = to.starts[t]!; i < to.starts[t + 1]!; i++) where[to.functions[i]!] = to.list[i]!;
-    for (let i = from.starts[t]!; i < from.starts[t + 1]!; i++) {
-      if (from.list[i]! >= 0) target[from.list[i]!] = where[from.functions[i]!]!;
+    for (let i = to.starts[t]; i < to.starts[t + 1]; i++) where[to.functions[i]] = to.list[i]!;
+    for (let i = from.starts[t]; i < from.starts[t + 1]; i++) {
+      if (from.list[i] >= 0) target[from.list[i]] = where[from.functions[i]]!;
     }
   }
   for (let c = 0; c < columns; c++) {
     for (let i = 0; i < from.unknowns; i++) {
-      const j = target[i]!;
+      const j = target[i];
       if (j < 0) continue;
       out[2 * (c * to.unknowns + j)] = x[2 * (c * from.unknowns + i)]!;
       out[2 * (c * to.unknowns + j) + 1] = x[2 * (c * from.unknowns + i) + 1]!;

@@ -28,10 +28,10 @@ export function besselJRealInto(out: Float64Array, M: number, x: number): Float6
       here *= 1e-250;
       above *= 1e-250;
       sum *= 1e-250;
-      for (let i = m - 1; i <= M; i++) out[i] = out[i]! * 1e-250;
+      for (let i = m - 1; i <= M; i++) out[i] = out[i] * 1e-250;
     }
   }
   const scale = 1 / (here + 2 * sum);
-  for (let i = 0; i <= M; i++) out[i] = out[i]! * scale;
+  for (let i = 0; i <= M; i++) out[i] = out[i] * scale;
   return out;
 }

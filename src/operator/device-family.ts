@@ -21,7 +21,14 @@ export interface DeviceFamily {
   termFactor(j: number, k: Complex): { readonly value: Complex; readonly byK: Complex };
   multiplyTermInto(out: ComplexArray, j: number, level: number, x: ComplexArray, columns: number): ComplexArray;
   weights(k: Complex, level: number, part: Part): RegionWeights;
-  multiplyInto(out: ComplexArray, k: Complex, level: number, part: Part, x: ComplexArray, columns: number): ComplexArray;
+  multiplyInto(
+    out: ComplexArray,
+    k: Complex,
+    level: number,
+    part: Part,
+    x: ComplexArray,
+    columns: number,
+  ): ComplexArray;
   factorize(k: Complex, level: number): Factorization;
 }
 
@@ -60,13 +67,10 @@ export function deviceFamily(device: Device, operator: OpenOperator, sense: Leve
     operator,
     terms: 2,
     termFactor: (j, k) =>
-      j === 0
-        ? { value: complex(1), byK: complex(0) }
-        : { value: scale(multiply(k, k), -1), byK: scale(k, -2) },
+      j === 0 ? { value: complex(1), byK: complex(0) } : { value: scale(multiply(k, k), -1), byK: scale(k, -2) },
     multiplyTermInto: (out, j, level, x, columns) => operator.multiplyInto(out, termWeights(j, level), x, columns),
     weights,
-    multiplyInto: (out, k, level, part, x, columns) =>
-      operator.multiplyInto(out, weights(k, level, part), x, columns),
+    multiplyInto: (out, k, level, part, x, columns) => operator.multiplyInto(out, weights(k, level, part), x, columns),
     factorize: (k, level) => operator.factorize(weights(k, level, 'value')),
   };
 }
@@ -86,7 +90,7 @@ export function regionMaterial(
       ? { p: complex(1 / permeability), q: complex(permittivity), pSlope: zero, qSlope: zero }
       : { p: complex(1 / permittivity), q: complex(permeability), pSlope: zero, qSlope: zero };
   }
-  const body = device.bodies[region]!;
+  const body = device.bodies[region];
   const slope = complex(0, (sense === 'gain' ? -1 : 1) * body.pumpWeight);
   const permittivity = add(body.permittivity, scale(slope, level));
   if (device.polarization === 'Ez') {

@@ -36,9 +36,9 @@ export function assembleOpen(space: Space, layer: PointCoefficients, direction: 
   const centroids = new Float64Array(2 * triangles);
   for (let t = 0; t < triangles; t++) {
     for (let i = 0; i < 3; i++) {
-      const v = mesh.triangles[3 * t + i]!;
-      centroids[2 * t] = centroids[2 * t]! + mesh.vertices[2 * v]! / 3;
-      centroids[2 * t + 1] = centroids[2 * t + 1]! + mesh.vertices[2 * v + 1]! / 3;
+      const v = mesh.triangles[3 * t + i];
+      centroids[2 * t] = centroids[2 * t] + mesh.vertices[2 * v] / 3;
+      centroids[2 * t + 1] = centroids[2 * t + 1] + mesh.vertices[2 * v + 1] / 3;
     }
   }
   const analysis = analyse({ unknowns: space.unknowns, starts: space.starts, list: space.list, centroids });
@@ -62,12 +62,7 @@ export function setWeight(array: ComplexArray, region: number, value: Complex): 
   array[2 * (region + 2) + 1] = value.im;
 }
 
-function makeOperator(
-  space: Space,
-  elements: ElementMatrices,
-  analysis: Analysis,
-  direction: Direction,
-): OpenOperator {
+function makeOperator(space: Space, elements: ElementMatrices, analysis: Analysis, direction: Direction): OpenOperator {
   return {
     space,
     direction,
@@ -75,7 +70,7 @@ function makeOperator(
     analysis,
     multiplyInto: (out, weights, x, columns) => multiplyElements(out, space, elements, direction, weights, x, columns),
     factorize: (weights) =>
-      analysis.factorize((t, into) => fillElement(into, t, space.mesh.regions[t]!, elements, direction, weights)),
+      analysis.factorize((t, into) => fillElement(into, t, space.mesh.regions[t], elements, direction, weights)),
   };
 }
 
@@ -87,26 +82,26 @@ function fillElement(
   direction: Direction,
   weights: RegionWeights,
 ): void {
-  const k = elements.stiffness[t]!;
-  const m = elements.mass[t]!;
+  const k = elements.stiffness[t];
+  const m = elements.mass[t];
   const at = 2 * (region + 2);
-  const kr = weights.stiffness[at]!;
-  const ki = weights.stiffness[at + 1]!;
-  const mr = weights.mass[at]!;
-  const mi = weights.mass[at + 1]!;
+  const kr = weights.stiffness[at];
+  const ki = weights.stiffness[at + 1];
+  const mr = weights.mass[at];
+  const mi = weights.mass[at + 1];
   if (region !== LAYER) {
     for (let n = 0; n < k.length; n++) {
-      into[2 * n] = kr * k[n]! + mr * m[n]!;
-      into[2 * n + 1] = ki * k[n]! + mi * m[n]!;
+      into[2 * n] = kr * k[n] + mr * m[n];
+      into[2 * n + 1] = ki * k[n] + mi * m[n];
     }
     return;
   }
   const flip = direction === 'incoming' ? -1 : 1;
   for (let n = 0; n < k.length; n += 2) {
-    const a = k[n]!;
-    const b = flip * k[n + 1]!;
-    const c = m[n]!;
-    const d = flip * m[n + 1]!;
+    const a = k[n];
+    const b = flip * k[n + 1];
+    const c = m[n];
+    const d = flip * m[n + 1];
     into[n] = kr * a - ki * b + mr * c - mi * d;
     into[n + 1] = kr * b + ki * a + mr * d + mi * c;
   }
@@ -133,32 +128,32 @@ function multiplyElements(
   const flip = direction === 'incoming' ? -1 : 1;
   out.fill(0, 0, 2 * unknowns * columns);
   for (let t = 0; t < triangles; t++) {
-    const region = mesh.regions[t]!;
+    const region = mesh.regions[t];
     const at = 2 * (region + 2);
-    const kr = weights.stiffness[at]!;
-    const ki = weights.stiffness[at + 1]!;
-    const mr = weights.mass[at]!;
-    const mi = weights.mass[at + 1]!;
+    const kr = weights.stiffness[at];
+    const ki = weights.stiffness[at + 1];
+    const mr = weights.mass[at];
+    const mi = weights.mass[at + 1];
     const useK = kr !== 0 || ki !== 0;
     const useM = mr !== 0 || mi !== 0;
     if (!useK && !useM) continue;
-    const start = starts[t]!;
-    const nd = starts[t + 1]! - start;
+    const start = starts[t];
+    const nd = starts[t + 1] - start;
     for (let c = 0; c < columns; c++) {
       const shift = 2 * c * unknowns;
       for (let i = 0; i < nd; i++) {
-        const g = list[start + i]!;
-        local[2 * i] = g < 0 ? 0 : x[shift + 2 * g]!;
-        local[2 * i + 1] = g < 0 ? 0 : x[shift + 2 * g + 1]!;
+        const g = list[start + i];
+        local[2 * i] = g < 0 ? 0 : x[shift + 2 * g];
+        local[2 * i + 1] = g < 0 ? 0 : x[shift + 2 * g + 1];
       }
       sum.fill(0, 0, 2 * nd);
-      if (useK) addLocal(sum, elements.stiffness[t]!, nd, local, kr, ki, region === LAYER, flip);
-      if (useM) addLocal(sum, elements.mass[t]!, nd, local, mr, mi, region === LAYER, flip);
+      if (useK) addLocal(sum, elements.stiffness[t], nd, local, kr, ki, region === LAYER, flip);
+      if (useM) addLocal(sum, elements.mass[t], nd, local, mr, mi, region === LAYER, flip);
       for (let i = 0; i < nd; i++) {
-        const g = list[start + i]!;
+        const g = list[start + i];
         if (g < 0) continue;
-        out[shift + 2 * g] = out[shift + 2 * g]! + sum[2 * i]!;
-        out[shift + 2 * g + 1] = out[shift + 2 * g + 1]! + sum[2 * i + 1]!;
+        out[shift + 2 * g] = out[shift + 2 * g] + sum[2 * i];
+        out[shift + 2 * g + 1] = out[shift + 2 * g + 1] + sum[2 * i + 1];
       }
     }
   }
@@ -187,10 +182,10 @@ function addLocal(
       let ri = 0;
       let ir = 0;
       for (let j = 0; j < 2 * nd; j += 2) {
-        const a = B[row + j]!;
-        const b = B[row + j + 1]!;
-        const c = x[j]!;
-        const d = x[j + 1]!;
+        const a = B[row + j];
+        const b = B[row + j + 1];
+        const c = x[j];
+        const d = x[j + 1];
         rr += a * c;
         ii += b * d;
         ri += a * d;
@@ -201,12 +196,12 @@ function addLocal(
     } else {
       const row = i * nd;
       for (let j = 0; j < nd; j++) {
-        const a = B[row + j]!;
-        re += a * x[2 * j]!;
-        im += a * x[2 * j + 1]!;
+        const a = B[row + j];
+        re += a * x[2 * j];
+        im += a * x[2 * j + 1];
       }
     }
-    sum[2 * i] = sum[2 * i]! + wr * re - wi * im;
-    sum[2 * i + 1] = sum[2 * i + 1]! + wr * im + wi * re;
+    sum[2 * i] = sum[2 * i] + wr * re - wi * im;
+    sum[2 * i + 1] = sum[2 * i + 1] + wr * im + wi * re;
   }
 }

@@ -68,7 +68,7 @@ function prove(prepared: Prepared, own: Prepared, mode: AxisMode): AbsorbingMode
   const off = mode.kError + Math.abs(mode.group.slope.im) * mode.levelError;
   return {
     ...mode,
-    drives: drives.map((amplitudes, i) => ({ amplitudes, sameMesh: same[i]!, ownMesh: other[i]! })),
+    drives: drives.map((amplitudes, i) => ({ amplitudes, sameMesh: same[i], ownMesh: other[i] })),
     outgoingExpected: (off / Math.max(width, 1e-300)) ** 2,
   };
 }
@@ -82,8 +82,8 @@ function orthonormalDrives(incoming: readonly Multipoles[]): Multipoles[] {
       for (const u of out) {
         const c = inner(u, v);
         for (let i = 0; i < v.length; i += 2) {
-          v[i] = v[i]! - (c.re * u[i]! - c.im * u[i + 1]!);
-          v[i + 1] = v[i + 1]! - (c.re * u[i + 1]! + c.im * u[i]!);
+          v[i] = v[i] - (c.re * u[i] - c.im * u[i + 1]);
+          v[i + 1] = v[i + 1] - (c.re * u[i + 1] + c.im * u[i]);
         }
       }
     }
@@ -96,21 +96,26 @@ function inner(a: Multipoles, b: Multipoles): Complex {
   let re = 0;
   let im = 0;
   for (let i = 0; i < a.length; i += 2) {
-    re += a[i]! * b[i]! + a[i + 1]! * b[i + 1]!;
-    im += a[i]! * b[i + 1]! - a[i + 1]! * b[i]!;
+    re += a[i] * b[i] + a[i + 1] * b[i + 1];
+    im += a[i] * b[i + 1] - a[i + 1] * b[i];
   }
   return { re, im };
 }
 
 /** Drives the outgoing problem in scattered-field form and counts all power. */
-function forwardCheck(prepared: Prepared, order: number, mode: AxisMode, drives: readonly Multipoles[]): PowerBalance[] {
+function forwardCheck(
+  prepared: Prepared,
+  order: number,
+  mode: AxisMode,
+  drives: readonly Multipoles[],
+): PowerBalance[] {
   const problem: ContrastProblem = {
     device: prepared.device,
     space: spaceOf(prepared, order),
     k: mode.k,
     level: mode.level,
     sense: 'loss',
-    order: (drives[0]!.length / 2 - 1) / 2,
+    order: (drives[0].length / 2 - 1) / 2,
   };
   const family = familyOf(prepared, order, 'outgoing', 'loss');
   const driven = driveMultipoles(problem, family.factorize({ re: mode.k, im: 0 }, mode.level), drives);
@@ -120,9 +125,9 @@ function forwardCheck(prepared: Prepared, order: number, mode: AxisMode, drives:
     drives,
   );
   return driven.map(({ outgoing }, j) => {
-    const incoming = power(drives[j]!);
+    const incoming = power(drives[j]);
     const out = power(outgoing) / incoming;
-    const absorbed = taken[j]!.reduce((a, b) => a + b, 0) / incoming;
+    const absorbed = taken[j].reduce((a, b) => a + b, 0) / incoming;
     return { incoming: 1, outgoing: out, absorbed, balance: 1 - out - absorbed };
   });
 }

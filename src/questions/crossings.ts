@@ -108,7 +108,7 @@ export function findCrossings(device: Device, sense: LevelSense, request: Crossi
   );
   const paths: ModePath[] = [];
   clusters.forEach((members, i) => {
-    const list = members.map((m) => start[m]!);
+    const list = members.map((m) => start[m]);
     const columns = list.reduce((sum, g) => sum + g.multiplicity, 0);
     const vectors = new Float64Array(2 * family.size * columns);
     let at = 0;
@@ -119,7 +119,7 @@ export function findCrossings(device: Device, sense: LevelSense, request: Crossi
     request.progress?.('following modes to the axis', i / clusters.length);
     paths.push(
       ...followCluster(family, {
-        k: list[0]!.k,
+        k: list[0].k,
         vectors,
         columns,
         levelMax,
@@ -199,7 +199,8 @@ function climbCrossing(
         k: here.k,
         kError: Math.max(kStep, spread) + boundary + 1e-14 * here.k,
         level: here.level,
-        levelError: levelStep + spread / Math.abs(slope.im) + layer.returned * here.level + (1e-14 * here.k) / Math.abs(slope.im),
+        levelError:
+          levelStep + spread / Math.abs(slope.im) + layer.returned * here.level + (1e-14 * here.k) / Math.abs(slope.im),
         multiplicity,
         label: modeLabel(multipoles),
         group: here.group,

@@ -140,7 +140,7 @@ function describeMode(prepared: Prepared, order: number, found: FoundMode, assig
     layerShare: layer.share,
     layerSensitivity: layer.sensitivity,
     vectors: members,
-    multipoles: all[0]!,
-    farField: farField(all[0]!),
+    multipoles: all[0],
+    farField: farField(all[0]),
   };
 }

@@ -59,7 +59,9 @@ export function prepare(device: Device, scope: Scope, resolution: Resolution, re
     rimRadius: layer.rimRadius,
     endRadius: layer.endRadius,
     bodySizes: device.bodies.map((b) =>
-      size(Math.sqrt(Math.hypot(b.permittivity.re, b.permittivity.im) * Math.hypot(b.permeability.re, b.permeability.im))),
+      size(
+        Math.sqrt(Math.hypot(b.permittivity.re, b.permittivity.im) * Math.hypot(b.permeability.re, b.permeability.im)),
+      ),
     ),
     backgroundSize: size(index),
     layerSize: LAYER_COARSENING * size(index),
@@ -79,11 +81,7 @@ export function prepare(device: Device, scope: Scope, resolution: Resolution, re
 }
 
 /** The family A(k, level) of a prepared device at an order. */
-export const familyOf = (
-  prepared: Prepared,
-  order: number,
-  direction: Direction,
-  sense: LevelSense,
-): DeviceFamily => deviceFamily(prepared.device, facing(prepared.operator(order), direction), sense);
+export const familyOf = (prepared: Prepared, order: number, direction: Direction, sense: LevelSense): DeviceFamily =>
+  deviceFamily(prepared.device, facing(prepared.operator(order), direction), sense);
 
 export const spaceOf = (prepared: Prepared, order: number): Space => prepared.operator(order).space;

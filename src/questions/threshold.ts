@@ -28,8 +28,13 @@ export function findThresholds(device: Device, request: CrossingsRequest = {}): 
 }
 
 function describe(mode: AxisMode): LasingMode {
-  const pattern = farField(mode.multipoles[0]!);
+  const pattern = farField(mode.multipoles[0]);
   let peakAngle = 0;
-  for (let i = 1; i < pattern.length; i++) if (pattern[i]! > pattern[peakAngle]!) peakAngle = i;
-  return { ...mode, farField: pattern, directionality: pattern[peakAngle]!, peakAngle: (360 * peakAngle) / pattern.length };
+  for (let i = 1; i < pattern.length; i++) if (pattern[i] > pattern[peakAngle]) peakAngle = i;
+  return {
+    ...mode,
+    farField: pattern,
+    directionality: pattern[peakAngle],
+    peakAngle: (360 * peakAngle) / pattern.length,
+  };
 }

@@ -33,7 +33,7 @@ export function packArrays(arrays: Readonly<Record<string, RunArray>>): {
   const bytes = new Uint8Array(end);
   for (const [name, array] of Object.entries(arrays)) {
     const raw = new Uint8Array(array.buffer, array.byteOffset, array.byteLength);
-    const entry = entries[name]!;
+    const entry = entries[name];
     bytes.set(HOST_IS_LITTLE_ENDIAN ? raw : reverseElements(raw, ELEMENT_BYTES[entry.type]), entry.offset);
   }
   return { bytes, entries };
@@ -168,10 +168,10 @@ function checkMesh(value: unknown, arrays: Entries): void {
   const same = (key: string, expected: number): void => {
     if (length[key] !== expected) mismatch(`mesh.arrays.${key}`, `${length[key]} numbers`, `${expected}`);
   };
-  same('regions', length['triangles']! / 3);
-  same('triangleEdges', length['triangles']!);
-  same('edgeTriangles', length['edges']!);
-  same('edgeCurve', length['edges']! / 2);
+  same('regions', length['triangles'] / 3);
+  same('triangleEdges', length['triangles']);
+  same('edgeTriangles', length['edges']);
+  same('edgeCurve', length['edges'] / 2);
 }
 
 /** @returns the number of display points. */
@@ -247,7 +247,7 @@ function arrayNamed(
   types: readonly string[],
   size: { readonly multiple?: number; readonly exact?: number },
 ): number {
-  const entry = Object.hasOwn(arrays, text(name, at)) ? arrays[name as string]! : undefined;
+  const entry = Object.hasOwn(arrays, text(name, at)) ? arrays[name as string] : undefined;
   if (!entry) fail(at, name, 'the name of one of the arrays');
   if (!types.includes(entry.type)) mismatch(at, `'${String(name)}' of type ${entry.type}`, types.join(' or '));
   if (size.exact !== undefined && entry.length !== size.exact)

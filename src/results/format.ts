@@ -23,6 +23,8 @@ export type RunArray = Float64Array | Float32Array | Int32Array | Uint32Array;
 export interface ModeAnswer {
   readonly k: Pair;
   readonly kError: number;
+  /** kError apart: discretisation, what the layer returns, rounding. */
+  readonly errors?: { readonly discretization: number; readonly boundary: number; readonly algebra: number };
   readonly q: number;
   readonly qError: number;
   readonly wavelength: number;
@@ -35,6 +37,8 @@ export interface ModeAnswer {
   readonly label: string;
   /** Share of ∫|ε||u|² that lies in the stretched layer. */
   readonly layerShare: number;
+  /** |dk/dθ|/|k| by the layer's angle θ: of order 1 for modes of the layer, which are dropped. */
+  readonly layerSensitivity?: number;
 }
 
 /** Pump or loss in the units engineers use. */
@@ -82,6 +86,10 @@ export interface CrossingAnswer {
   readonly drive?: readonly DriveTerm[];
   readonly drives?: readonly (readonly DriveTerm[])[];
   readonly forward?: PowerCheck & { readonly ownMesh: PowerCheck };
+  /** `absorb`: outgoing share to be expected on the own mesh from the errors of k and loss. */
+  readonly outgoingExpected?: number;
+  /** The errors are below the digits asked for. */
+  readonly reached?: boolean;
   /** `threshold`: where the light goes. */
   readonly farField?: { readonly directionality: number; readonly peakAngle: number };
 }
@@ -127,8 +135,10 @@ export interface RunField {
   readonly k: Pair;
   /** Pump or loss D at which it was computed, or null. */
   readonly level: number | null;
-  /** Array name: interleaved complex coefficients of the finite-element space (order `mesh.order`). */
+  /** Array name: interleaved complex coefficients of the finite-element space, scaled so that max |u| is about 1. */
   readonly coefficients: string;
+  /** Order of its space; absent: `mesh.order`. */
+  readonly order?: number;
   /** Array name: interleaved complex (f32) values at the display points; scaled so that max |u| = 1. */
   readonly display: string;
   /** The factor that was divided out of `display`. */
@@ -189,14 +199,7 @@ export interface RunRecord {
     readonly curveOrder: number;
     readonly arrays: Readonly<
       Record<
-        | 'vertices'
-        | 'triangles'
-        | 'regions'
-        | 'edges'
-        | 'triangleEdges'
-        | 'edgeTriangles'
-        | 'edgeCurve'
-        | 'curves',
+        'vertices' | 'triangles' | 'regions' | 'edges' | 'triangleEdges' | 'edgeTriangles' | 'edgeCurve' | 'curves',
         string
       >
     >;

@@ -2,7 +2,7 @@
 
 import { createHash } from 'node:crypto';
 import { closeSync, existsSync, fsyncSync, mkdirSync, openSync, readFileSync, readdirSync, renameSync } from 'node:fs';
-import { rmSync, rmdirSync, statSync, writeSync } from 'node:fs';
+import { rmSync, statSync, writeSync } from 'node:fs';
 import { hostname } from 'node:os';
 import { basename, dirname, extname, join, resolve, sep } from 'node:path';
 
@@ -180,7 +180,13 @@ const ownHost = (): string => hostname().replaceAll(/[^A-Za-z0-9.]/g, '_');
 /** Removes what crashed processes of this host, or this process, left beside the folder. */
 function cleanTemporaries(target: string): void {
   if (!existsSync(target)) restoreReplaced(target);
-  for (const name of siblings(target)) if (isStale(name)) rmSync(join(dirname(target), name), { recursive: true });
+  for (const name of siblings(target)) {
+    if (!isStale(name)) continue;
+    const path = join(dirname(target), name);
+    // The crash may have come before the files of others were carried over.
+    if (name.includes('.replaced-') && existsSync(target)) keepForeignFiles(path, target, {});
+    rmSync(path, { recursive: true });
+  }
 }
 
 /** A crash between the two renamings of `takePlace` leaves the old run set aside: put it back. */
@@ -258,14 +264,16 @@ function keepForeignFiles(aside: string, target: string, files: Readonly<Record<
   const foreign = readdirSync(aside).filter((name) => !own.has(name));
   if (foreign.length === 0) return;
   const earlier = join(target, EARLIER_FOLDER);
-  if (foreign.includes(EARLIER_FOLDER)) renameSync(join(aside, EARLIER_FOLDER), earlier);
-  else mkdirSync(earlier);
-  for (const name of foreign) {
-    if (name === EARLIER_FOLDER) continue;
+  mkdirSync(earlier, { recursive: true });
+  const kept = foreign.includes(EARLIER_FOLDER) ? readdirSync(join(aside, EARLIER_FOLDER)) : [];
+  const moves = [
+    ...kept.map((name) => [join(aside, EARLIER_FOLDER, name), name]),
+    ...foreign.filter((name) => name !== EARLIER_FOLDER).map((name) => [join(aside, name), name]),
+  ];
+  for (const [from, name] of moves) {
     rmSync(join(earlier, name), { recursive: true, force: true });
-    renameSync(join(aside, name), join(earlier, name));
+    renameSync(from, join(earlier, name));
   }
-  if (readdirSync(earlier).length === 0) rmdirSync(earlier);
 }
 
 function namesWritten(folder: string): string[] {

@@ -25,7 +25,7 @@ export function driveMultipoles(
   const all = outgoing.solveInto(loads, loads, drives.length);
   const fields = drives.map((_, j) => all.slice(2 * n * j, 2 * n * (j + 1)));
   const jumps = multipoleJumps(problem, fields, drives);
-  return fields.map((scattered, j) => ({ scattered, outgoing: jumps[j]!.map((v, i) => v + drives[j]![i]!) }));
+  return fields.map((scattered, j) => ({ scattered, outgoing: jumps[j].map((v, i) => v + drives[j][i]) }));
 }
 
 /** Σ |a_m|². */
@@ -51,15 +51,15 @@ export function farField(outgoing: Multipoles, directions = 360): Float64Array {
       const angle = m * phi - (m * Math.PI) / 2;
       const c = Math.cos(angle);
       const s = Math.sin(angle);
-      const a = outgoing[2 * (m + order)]!;
-      const b = outgoing[2 * (m + order) + 1]!;
+      const a = outgoing[2 * (m + order)];
+      const b = outgoing[2 * (m + order) + 1];
       re += a * c - b * s;
       im += a * s + b * c;
     }
     out[d] = re * re + im * im;
-    total += out[d]!;
+    total += out[d];
   }
-  for (let d = 0; d < directions; d++) out[d] = (out[d]! * directions) / total;
+  for (let d = 0; d < directions; d++) out[d] = (out[d] * directions) / total;
   return out;
 }
 
@@ -70,15 +70,15 @@ export function normaliseDrive(amplitudes: Multipoles): { readonly drive: Multip
     // the first of equals wins, so that rounding does not choose
     if (modulusAt(amplitudes, m) > modulusAt(amplitudes, largest) * (1 + 1e-6)) largest = m;
   }
-  const lead = complex(amplitudes[largest]!, amplitudes[largest + 1]!);
+  const lead = complex(amplitudes[largest], amplitudes[largest + 1]);
   const norm = Math.sqrt(power(amplitudes));
   const factor = divide(complex(modulus(lead) / norm), lead);
   const drive = new Float64Array(amplitudes.length);
   for (let m = 0; m < drive.length; m += 2) {
-    drive[m] = factor.re * amplitudes[m]! - factor.im * amplitudes[m + 1]!;
-    drive[m + 1] = factor.re * amplitudes[m + 1]! + factor.im * amplitudes[m]!;
+    drive[m] = factor.re * amplitudes[m] - factor.im * amplitudes[m + 1];
+    drive[m + 1] = factor.re * amplitudes[m + 1] + factor.im * amplitudes[m];
   }
   return { drive, factor };
 }
 
-const modulusAt = (a: Multipoles, i: number): number => Math.hypot(a[i]!, a[i + 1]!);
+const modulusAt = (a: Multipoles, i: number): number => Math.hypot(a[i], a[i + 1]);

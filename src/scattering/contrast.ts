@@ -46,14 +46,14 @@ export function incidentLoads(problem: ContrastProblem, drives: readonly Multipo
       addIncident(u, waves, drive);
       weigh(u, point);
       for (let i = 0; i < point.count; i++) {
-        const g = space.list[point.start + i]!;
+        const g = space.list[point.start + i];
         if (g < 0) continue;
-        const f = point.basis[3 * i]!;
-        const gx = point.basis[3 * i + 1]!;
-        const gy = point.basis[3 * i + 2]!;
+        const f = point.basis[3 * i];
+        const gx = point.basis[3 * i + 1];
+        const gy = point.basis[3 * i + 2];
         const s = 2 * (g + j * n);
-        out[s] = out[s]! - (f * u[0]! + gx * u[2]! + gy * u[4]!);
-        out[s + 1] = out[s + 1]! - (f * u[1]! + gx * u[3]! + gy * u[5]!);
+        out[s] = out[s] - (f * u[0] + gx * u[2] + gy * u[4]);
+        out[s + 1] = out[s + 1] - (f * u[1] + gx * u[3] + gy * u[5]);
       }
     });
   });
@@ -77,9 +77,9 @@ export function multipoleJumps(
   visitPoints(problem, (point, waves) => {
     fields.forEach((field, j) => {
       fieldInto(u, problem.space, point, field);
-      if (drives) addIncident(u, waves, drives[j]!);
+      if (drives) addIncident(u, waves, drives[j]);
       weigh(u, point);
-      const sum = sums[j]!;
+      const sum = sums[j];
       for (let m = -order; m <= order; m++) {
         // w_m = (−1)^m R_{−m}
         waveInto(w, waves, -m);
@@ -87,20 +87,20 @@ export function multipoleJumps(
         let re = 0;
         let im = 0;
         for (let c = 0; c < 6; c += 2) {
-          re += u[c]! * w[c]! - u[c + 1]! * w[c + 1]!;
-          im += u[c]! * w[c + 1]! + u[c + 1]! * w[c]!;
+          re += u[c] * w[c] - u[c + 1] * w[c + 1];
+          im += u[c] * w[c + 1] + u[c + 1] * w[c];
         }
         const i = 2 * (m + order);
-        sum[i] = sum[i]! + sign * re;
-        sum[i + 1] = sum[i + 1]! + sign * im;
+        sum[i] = sum[i] + sign * re;
+        sum[i + 1] = sum[i + 1] + sign * im;
       }
     });
   });
   const p = regionMaterial(problem.device, BACKGROUND, 0, problem.sense).p.re;
   for (const sum of sums) {
     for (let i = 0; i < sum.length; i += 2) {
-      const re = sum[i]!;
-      sum[i] = sum[i + 1]! / (4 * p);
+      const re = sum[i];
+      sum[i] = sum[i + 1] / (4 * p);
       sum[i + 1] = -re / (4 * p);
     }
   }
@@ -125,11 +125,11 @@ export function absorbedPower(
     if (p.im === 0 && q.im === 0) return;
     fields.forEach((field, j) => {
       fieldInto(u, problem.space, point, field);
-      if (drives) addIncident(u, waves, drives[j]!);
-      const value = u[0]! * u[0]! + u[1]! * u[1]!;
-      const slope = u[2]! * u[2]! + u[3]! * u[3]! + u[4]! * u[4]! + u[5]! * u[5]!;
-      const sum = out[j]!;
-      sum[point.region] = sum[point.region]! + (point.weight * (k * k * q.im * value - p.im * slope)) / (4 * background);
+      if (drives) addIncident(u, waves, drives[j]);
+      const value = u[0] * u[0] + u[1] * u[1];
+      const slope = u[2] * u[2] + u[3] * u[3] + u[4] * u[4] + u[5] * u[5];
+      const sum = out[j];
+      sum[point.region] = sum[point.region] + (point.weight * (k * k * q.im * value - p.im * slope)) / (4 * background);
     });
   });
   return out;
@@ -181,7 +181,7 @@ function visitPoints(problem: ContrastProblem, visit: (point: ContrastPoint, wav
     dq: zero,
   };
   for (let t = 0; t + 1 < starts.length; t++) {
-    const region = mesh.regions[t]!;
+    const region = mesh.regions[t];
     if (region < 0) continue;
     const inside = regionMaterial(device, region, level, sense);
     point.dp = subtract(inside.p, outside.p);
@@ -190,25 +190,25 @@ function visitPoints(problem: ContrastProblem, visit: (point: ContrastPoint, wav
     mapInto(map, mesh, t, table);
     point.region = region;
     point.start = starts[t]!;
-    point.count = starts[t + 1]! - starts[t]!;
+    point.count = starts[t + 1] - starts[t];
     for (let q = 0; q < rule.weights.length; q++) {
       const at = MAP_STRIDE * q;
-      const a = map[at + 2]!;
-      const b = map[at + 3]!;
-      const c = map[at + 4]!;
-      const d = map[at + 5]!;
+      const a = map[at + 2];
+      const b = map[at + 3];
+      const c = map[at + 4];
+      const d = map[at + 5];
       const det = a * d - b * c;
-      point.weight = rule.weights[q]! * det;
+      point.weight = rule.weights[q] * det;
       for (let i = 0; i < point.count; i++) {
-        const f = nb * q + functions[point.start + i]!;
-        const sign = signs[point.start + i]!;
-        const dx = basis.dx[f]!;
-        const dy = basis.dy[f]!;
-        point.basis[3 * i] = sign * basis.values[f]!;
+        const f = nb * q + functions[point.start + i];
+        const sign = signs[point.start + i];
+        const dx = basis.dx[f];
+        const dy = basis.dy[f];
+        point.basis[3 * i] = sign * basis.values[f];
         point.basis[3 * i + 1] = (sign * (d * dx - c * dy)) / det;
         point.basis[3 * i + 2] = (sign * (a * dy - b * dx)) / det;
       }
-      evaluateWaves(waves, map[at]! - mesh.center[0], map[at + 1]! - mesh.center[1]);
+      evaluateWaves(waves, map[at] - mesh.center[0], map[at + 1] - mesh.center[1]);
       visit(point, waves);
     }
   }
@@ -219,13 +219,13 @@ function fieldInto(u: Float64Array, space: Space, point: ContrastPoint, field: C
   u.fill(0);
   const { basis } = point;
   for (let i = 0; i < point.count; i++) {
-    const g = space.list[point.start + i]!;
+    const g = space.list[point.start + i];
     if (g < 0) continue;
-    const re = field[2 * g]!;
-    const im = field[2 * g + 1]!;
+    const re = field[2 * g];
+    const im = field[2 * g + 1];
     for (let c = 0; c < 3; c++) {
-      u[2 * c] = u[2 * c]! + basis[3 * i + c]! * re;
-      u[2 * c + 1] = u[2 * c + 1]! + basis[3 * i + c]! * im;
+      u[2 * c] = u[2 * c] + basis[3 * i + c] * re;
+      u[2 * c + 1] = u[2 * c + 1] + basis[3 * i + c] * im;
     }
   }
 }
@@ -234,8 +234,8 @@ function fieldInto(u: Float64Array, space: Space, point: ContrastPoint, field: C
 function weigh(u: Float64Array, point: ContrastPoint): void {
   for (let c = 0; c < 6; c += 2) {
     const by = c === 0 ? point.dq : point.dp;
-    const re = u[c]!;
-    const im = u[c + 1]!;
+    const re = u[c];
+    const im = u[c + 1];
     u[c] = point.weight * (by.re * re - by.im * im);
     u[c + 1] = point.weight * (by.re * im + by.im * re);
   }

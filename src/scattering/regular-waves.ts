@@ -30,8 +30,8 @@ export function evaluateWaves(waves: RegularWaves, x: number, y: number): void {
   let er = 1;
   let ei = 0;
   for (let m = 0; m <= top; m++) {
-    const re = bessel[m]! * er;
-    const im = bessel[m]! * ei;
+    const re = bessel[m] * er;
+    const im = bessel[m] * ei;
     const sign = m % 2 === 0 ? 1 : -1;
     values[2 * (top + m)] = re;
     values[2 * (top + m) + 1] = im;
@@ -53,32 +53,32 @@ export function waveInto(out: Float64Array, waves: RegularWaves, n: number): voi
   const half = kappa / 2;
   out[0] = values[i]!;
   out[1] = values[i + 1]!;
-  out[2] = half * (values[i - 2]! - values[i + 2]!);
-  out[3] = half * (values[i - 1]! - values[i + 3]!);
-  out[4] = -half * (values[i - 1]! + values[i + 3]!);
-  out[5] = half * (values[i - 2]! + values[i + 2]!);
+  out[2] = half * (values[i - 2] - values[i + 2]);
+  out[3] = half * (values[i - 1] - values[i + 3]);
+  out[4] = -half * (values[i - 1] + values[i + 3]);
+  out[5] = half * (values[i - 2] + values[i + 2]);
 }
 
 /** Adds the regular incident field Σ a_m 2R_m of a drive (a_m for m = −M … M) to out[0 … 5] = value, ∂x, ∂y. */
 export function addIncident(out: Float64Array, waves: RegularWaves, drive: Float64Array): void {
   const { values, kappa, order } = waves;
   for (let n = -order; n <= order; n++) {
-    const ar = 2 * drive[2 * (n + order)]!;
-    const ai = 2 * drive[2 * (n + order) + 1]!;
+    const ar = 2 * drive[2 * (n + order)];
+    const ai = 2 * drive[2 * (n + order) + 1];
     if (ar === 0 && ai === 0) continue;
     const i = 2 * (n + order + 1);
     const half = kappa / 2;
-    const vr = values[i]!;
-    const vi = values[i + 1]!;
-    const xr = half * (values[i - 2]! - values[i + 2]!);
-    const xi = half * (values[i - 1]! - values[i + 3]!);
-    const yr = -half * (values[i - 1]! + values[i + 3]!);
-    const yi = half * (values[i - 2]! + values[i + 2]!);
-    out[0] = out[0]! + ar * vr - ai * vi;
-    out[1] = out[1]! + ar * vi + ai * vr;
-    out[2] = out[2]! + ar * xr - ai * xi;
-    out[3] = out[3]! + ar * xi + ai * xr;
-    out[4] = out[4]! + ar * yr - ai * yi;
-    out[5] = out[5]! + ar * yi + ai * yr;
+    const vr = values[i];
+    const vi = values[i + 1];
+    const xr = half * (values[i - 2] - values[i + 2]);
+    const xi = half * (values[i - 1] - values[i + 3]);
+    const yr = -half * (values[i - 1] + values[i + 3]);
+    const yi = half * (values[i - 2] + values[i + 2]);
+    out[0] = out[0] + ar * vr - ai * vi;
+    out[1] = out[1] + ar * vi + ai * vr;
+    out[2] = out[2] + ar * xr - ai * xi;
+    out[3] = out[3] + ar * xi + ai * xr;
+    out[4] = out[4] + ar * yr - ai * yi;
+    out[5] = out[5] + ar * yi + ai * yr;
   }
 }

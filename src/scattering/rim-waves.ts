@@ -33,30 +33,30 @@ export function rimMultipoles(
     const inner = rimTriangle(space, e);
     if (inner < 0) continue;
     const trace = edgeTrace(space, inner, e);
-    const from = angleOf(mesh.vertices, mesh.edges[2 * e]!, mesh.center);
-    let turn = angleOf(mesh.vertices, mesh.edges[2 * e + 1]!, mesh.center) - from;
+    const from = angleOf(mesh.vertices, mesh.edges[2 * e], mesh.center);
+    let turn = angleOf(mesh.vertices, mesh.edges[2 * e + 1], mesh.center) - from;
     turn -= 2 * Math.PI * Math.round(turn / (2 * Math.PI));
     for (let q = 0; q < nq; q++) {
-      const s = rule.nodes[q]!;
+      const s = rule.nodes[q];
       const phi = from + (turn * (1 + s)) / 2;
-      const w = (rule.weights[q]! * Math.abs(turn)) / (4 * Math.PI);
+      const w = (rule.weights[q] * Math.abs(turn)) / (4 * Math.PI);
       integratedLegendreInto(shape, slope, space.order, s);
       fields.forEach((field, j) => {
         u[0] = 0;
         u[1] = 0;
         for (const { unknown, degree } of trace) {
           const value =
-            degree === 0 ? (1 - s) / 2 : degree === 1 ? (1 + s) / 2 : shape[degree]! * Math.sqrt((2 * degree - 1) / 2);
-          u[0] = u[0]! + value * field[2 * unknown]!;
-          u[1] = u[1]! + value * field[2 * unknown + 1]!;
+            degree === 0 ? (1 - s) / 2 : degree === 1 ? (1 + s) / 2 : shape[degree] * Math.sqrt((2 * degree - 1) / 2);
+          u[0] = u[0] + value * field[2 * unknown];
+          u[1] = u[1] + value * field[2 * unknown + 1];
         }
-        const sum = sums[j]!;
+        const sum = sums[j];
         for (let m = -order; m <= order; m++) {
           const c = w * Math.cos(m * phi);
           const d = -w * Math.sin(m * phi);
           const i = 2 * (m + order);
-          sum[i] = sum[i]! + c * u[0]! - d * u[1]!;
-          sum[i + 1] = sum[i + 1]! + c * u[1]! + d * u[0]!;
+          sum[i] = sum[i] + c * u[0] - d * u[1];
+          sum[i + 1] = sum[i + 1] + c * u[1] + d * u[0];
         }
       });
     }
@@ -68,7 +68,7 @@ export function rimMultipoles(
       const i = 2 * (m + order);
       const a = Math.abs(m);
       const sign = m < 0 && a % 2 === 1 ? -1 : 1;
-      const value = divide(complex(sum[i]!, sum[i + 1]!), complex(sign * h[2 * a]!, sign * h[2 * a + 1]!));
+      const value = divide(complex(sum[i], sum[i + 1]), complex(sign * h[2 * a], sign * h[2 * a + 1]));
       sum[i] = Number.isFinite(value.re) ? value.re : 0;
       sum[i + 1] = Number.isFinite(value.im) ? value.im : 0;
     }
@@ -79,8 +79,8 @@ export function rimMultipoles(
 /** The triangle inside the rim at a rim edge, else -1. */
 function rimTriangle(space: Space, e: number): number {
   const { edgeTriangles, regions } = space.mesh;
-  const a = edgeTriangles[2 * e]!;
-  const b = edgeTriangles[2 * e + 1]!;
+  const a = edgeTriangles[2 * e];
+  const b = edgeTriangles[2 * e + 1];
   if (a < 0 || b < 0) return -1;
   const la = regions[a] === LAYER;
   const lb = regions[b] === LAYER;
@@ -93,12 +93,12 @@ function edgeTrace(space: Space, t: number, e: number): { unknown: number; degre
   let local = 0;
   while (mesh.triangleEdges[3 * t + local] !== e) local++;
   const out: { unknown: number; degree: number }[] = [];
-  for (let i = starts[t]!; i < starts[t + 1]!; i++) {
-    const g = list[i]!;
+  for (let i = starts[t]; i < starts[t + 1]; i++) {
+    const g = list[i];
     if (g < 0) continue;
-    const f = functions[i]!;
+    const f = functions[i];
     if (f < 3) {
-      const v = mesh.triangles[3 * t + f]!;
+      const v = mesh.triangles[3 * t + f];
       if (v === mesh.edges[2 * e]) out.push({ unknown: g, degree: 0 });
       else if (v === mesh.edges[2 * e + 1]) out.push({ unknown: g, degree: 1 });
       continue;
@@ -109,4 +109,4 @@ function edgeTrace(space: Space, t: number, e: number): { unknown: number; degre
 }
 
 const angleOf = (vertices: Float64Array, v: number, center: readonly [number, number]): number =>
-  Math.atan2(vertices[2 * v + 1]! - center[1], vertices[2 * v]! - center[0]);
+  Math.atan2(vertices[2 * v + 1] - center[1], vertices[2 * v] - center[0]);

@@ -1,0 +1,84 @@
+// What is the answer, in one sentence?
+
+import type { Device } from '../device/model.ts';
+import { gainReport } from '../materials/gain.ts';
+import { fromWavenumber } from '../materials/spectral-units.ts';
+import { errorText, significant, toError } from '../results/number-text.ts';
+import type { AbsorbAnswer } from './absorb.ts';
+import type { AxisMode } from './crossings.ts';
+import type { ModesAnswer } from './modes.ts';
+import type { ThresholdAnswer } from './threshold.ts';
+
+/** "3 resonances with Q ≥ 10 between 1.5 and 1.6 um; the sharpest at 1.5231 ± 0.0002 um (k = …), Q = 8100." */
+export function modesSentence(device: Device, answer: ModesAnswer): string {
+  const what = answer.assignment === 'poles' ? 'resonance' : 'zero';
+  const count = answer.modes.reduce((sum, m) => sum + m.multiplicity, 0);
+  const where = `with Q ≥ ${answer.qMin} between ${bandText(device)}`;
+  if (count === 0) return `No ${what} ${where}.`;
+  const sharpest = answer.modes.reduce((a, b) => (b.q > a.q ? b : a));
+  const doubt = answer.covered ? '' : ' The search did not cover the whole window.';
+  return (
+    `${count} ${what}${count > 1 ? 's' : ''} ${where}; the sharpest at ${placeText(device, sharpest.k.re, sharpest.kError)}, ` +
+    `Q = ${toError(sharpest.q, sharpest.qError)}.${doubt}`
+  );
+}
+
+/** "Lases first at 1.5231 um ± 0.0002 (k = 4.1253 /um) with 38.2 /cm (166 dB/cm) in resonator; the next needs 12 % more." */
+export function thresholdSentence(device: Device, answer: ThresholdAnswer): string {
+  const first = answer.crossings[0];
+  if (!first) return `No lasing threshold between ${bandText(device)} up to D = ${answer.levelMax}.`;
+  return `Lases first at ${placeText(device, first.k, first.kError)} with ${levelText(device, first, 'gain')}${next(answer.crossings)}.`;
+}
+
+/** "Absorbs everything first at … with … of loss in …; the next needs 12 % more." */
+export function absorbSentence(device: Device, answer: AbsorbAnswer): string {
+  const first = answer.crossings[0];
+  if (!first) return `No coherent absorption between ${bandText(device)} up to D = ${answer.levelMax}.`;
+  return `Absorbs everything at ${placeText(device, first.k, first.kError)} with ${levelText(device, first, 'loss')}${next(answer.crossings)}.`;
+}
+
+function next(crossings: readonly AxisMode[]): string {
+  const [first, second] = crossings;
+  if (!first || !second) return '';
+  return `; the next needs ${significant(100 * (second.level / first.level - 1), 2)} % more`;
+}
+
+const unitText = (device: Device): string => (device.band.unit === '' ? '' : ` ${device.band.unit}`);
+
+function bandText(device: Device): string {
+  const { quantity, limits } = device.band;
+  const name =
+    quantity === 'wavenumber' ? 'k = ' : quantity === 'wavelength' && device.band.unit === '' ? 'wavelength ' : '';
+  return `${name}${limits[0]} and ${limits[1]}${unitText(device)}`;
+}
+
+/** The place in the file's own band unit with its error, and k behind it where that is not k itself. */
+export function placeText(device: Device, k: number, kError: number): string {
+  const { quantity, unit } = device.band;
+  const kUnit = device.lengthUnit === 'none' ? '' : ` /${device.lengthUnit}`;
+  const kText = `k = ${toError(k, kError)}${kUnit}`;
+  if (quantity === 'wavenumber') return `${kText} ± ${errorText(kError)}`;
+  const value = fromWavenumber(quantity, k, unit, device.metres);
+  const error = (value * kError) / k;
+  return `${toError(value, error)}${unitText(device)} ± ${errorText(error)} (${kText})`;
+}
+
+/** "D = 0.0092002 ± 3e-7, 38.2 /cm (166 dB/cm), in rim". */
+function levelText(device: Device, mode: AxisMode, sense: 'gain' | 'loss'): string {
+  const active = device.bodies.filter((b) => b.pumpWeight > 0);
+  const names = [...new Set(active.map((b) => (active.length > 1 ? b.group : b.name)))];
+  const lead = active[0];
+  const report = gainReport(
+    (sense === 'gain' ? 1 : -1) * mode.level * lead.pumpWeight,
+    { re: lead.permittivity.re, im: 0 },
+    mode.k,
+    device.metres,
+    lead.permeability,
+  );
+  const engineer =
+    report.perCentimetre === null
+      ? ''
+      : `, ${significant(Math.abs(report.perCentimetre), 3)} /cm (${significant(Math.abs(report.decibelPerCentimetre!), 3)} dB/cm)`;
+  const verb = sense === 'gain' ? '' : 'added loss ';
+  return `${verb}D = ${toError(mode.level, mode.levelError)} ± ${errorText(mode.levelError)}${engineer} in ${names.join(', ')}`;
+}
