@@ -5,6 +5,10 @@ import { describe, expect, test } from 'vitest';
 import { RunFormatError, checkRunRecord, packArrays, viewArray } from '../../src/results/bytes.ts';
 import { syntheticRun } from './synthetic-run.ts';
 
+// The record as loose JSON, to be spoiled.
+// eslint-disable-next-line @typescript-eslint/no-explicit-any -- every part of it may become anything
+type Loose = Record<string, any>;
+
 describe('packing', () => {
   const arrays = {
     odd: Uint32Array.of(1, 2, 4294967295),
@@ -17,40 +21,40 @@ describe('packing', () => {
   test('every array comes back bit for bit, at offsets that a typed view takes', () => {
     const { bytes, entries } = packArrays(arrays);
     for (const [name, array] of Object.entries(arrays)) {
-      expect(entries[name]!.offset % 8).toBe(0);
-      expect(viewArray(bytes.buffer, entries[name]!, name)).toEqual(array);
+      expect(entries[name].offset % 8).toBe(0);
+      expect(viewArray(bytes.buffer, entries[name], name)).toEqual(array);
     }
   });
 
   test('a part of the file serves as well', () => {
     const { bytes, entries } = packArrays(arrays);
-    const from = entries['values']!.offset;
-    expect(viewArray(bytes.buffer.slice(from), entries['values']!, 'values', from)).toEqual(arrays.values);
+    const from = entries['values'].offset;
+    expect(viewArray(bytes.buffer.slice(from), entries['values'], 'values', from)).toEqual(arrays.values);
   });
 
   test('views of larger buffers are packed without their surroundings', () => {
     const window = Float64Array.of(9, 1, 2, 9).subarray(1, 3);
     const { bytes, entries } = packArrays({ window });
     expect(bytes.byteLength).toBe(16);
-    expect(viewArray(bytes.buffer, entries['window']!)).toEqual(Float64Array.of(1, 2));
+    expect(viewArray(bytes.buffer, entries['window'])).toEqual(Float64Array.of(1, 2));
   });
 
   test('no arrays, no bytes', () => expect(packArrays({}).bytes.byteLength).toBe(0));
 
   test('a truncated file is named as such', () => {
     const { bytes, entries } = packArrays(arrays);
-    expect(() => viewArray(bytes.buffer.slice(0, 20), entries['values']!, 'values')).toThrow(/values.*truncated/);
+    expect(() => viewArray(bytes.buffer.slice(0, 20), entries['values'], 'values')).toThrow(/values.*truncated/);
   });
 });
 
 describe('checking a record', () => {
   const { record, arrays } = syntheticRun('absorb', { rings: 5, sectors: 8, many: 2 });
   const { bytes, entries } = packArrays(arrays);
-  const whole = (): Record<string, any> => JSON.parse(JSON.stringify({ ...record, arrays: entries }));
+  const whole = (): Loose => JSON.parse(JSON.stringify({ ...record, arrays: entries }));
 
   test('a whole one passes', () => expect(checkRunRecord(whole(), bytes.byteLength).command).toBe('absorb'));
 
-  test.each<[string, (run: Record<string, any>) => unknown, RegExp]>([
+  test.each<[string, (run: Loose) => unknown, RegExp]>([
     ['another format', (run) => (run['format'] = 'other'), /format: came "other", expected 'wavewell-run'/],
     ['a newer version', (run) => (run['version'] = 2), /newer program.*update/],
     ['an odd version', (run) => (run['version'] = 'one'), /version: came "one", expected 1/],

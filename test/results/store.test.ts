@@ -1,6 +1,7 @@
 // Is a run on the disk always whole, old or new, and never mistaken for something else?
 
-import { spawnSync } from 'node:child_process';
+import { spawn, spawnSync } from 'node:child_process';
+import { once } from 'node:events';
 import { existsSync, mkdirSync, mkdtempSync, readFileSync, readdirSync, rmSync, writeFileSync } from 'node:fs';
 import { hostname, tmpdir } from 'node:os';
 import { basename, join } from 'node:path';
@@ -135,10 +136,38 @@ describe('after a crash', () => {
     expect(readdirSync(base).sort()).toEqual([basename(alive), basename(elsewhere), 'run'].sort());
   });
 
+  test.each(['SIGKILL', 'SIGINT'] as const)('a writer that is stopped by %s leaves a whole run', async (signal) => {
+    const folder = join(base, 'run');
+    const script = join(import.meta.dirname, 'write-endlessly.ts');
+    for (const delay of [3, 40, 77]) {
+      const writer = spawn(process.execPath, ['--import', 'tsx', script, folder], {
+        stdio: ['ignore', 'pipe', 'inherit'],
+      });
+      await once(writer.stdout, 'data');
+      await new Promise((done) => setTimeout(done, delay));
+      writer.kill(signal);
+      await once(writer, 'exit');
+      expect(['absorb', 'modes']).toContain(readRun(folder).record.command);
+    }
+    store(folder);
+    expect(readdirSync(base)).toEqual(['run']);
+  });
+
   test('a run set aside in the moment of replacing is put back', () => {
     store(join(base, `.run.replaced-${host}-${deadPid()}`));
     expect(readRun(join(base, 'run')).record.command).toBe('absorb');
     expect(readdirSync(base)).toEqual(['run']);
+  });
+
+  test('what others had put into it is not lost even then', () => {
+    const aside = join(base, `.run.replaced-${host}-${deadPid()}`);
+    store(aside);
+    writeFileSync(join(aside, 'notes.md'), 'mine');
+    store(join(base, 'run'));
+    writeFileSync(join(base, 'run', 'more.md'), 'too');
+    store(join(base, 'run'));
+    expect(readdirSync(base)).toEqual(['run']);
+    expect(readdirSync(join(base, 'run', 'earlier')).sort()).toEqual(['more.md', 'notes.md']);
   });
 });
 

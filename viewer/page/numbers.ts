@@ -1,6 +1,8 @@
 // How is a number written for a reader?
 
-import type { LengthUnit } from '../../src/device/model.ts';
+import type { RunRecord } from '../../src/results/format.ts';
+
+type LengthUnit = RunRecord['device']['lengthUnit'];
 
 const MINUS = '−';
 

@@ -98,10 +98,9 @@ export function createWaterLine(
         layers.depth.append(svg('text', { class: 'tick-text', x, y: labelY, 'text-anchor': 'middle' }, text));
     }
     const per = perUnit(record.device.lengthUnit);
-    const outermost = ticks.reduce((a, b) => (Math.abs(b.im) > Math.abs(a.im) ? b : a), ticks[0]);
-    if (outermost) {
-      const text = `Im k${per && ` (${per})`}`;
-      layers.depth.append(svg('text', { class: 'tick-text halo', x: place.left + 4, y: yOf(outermost.im) + 4 }, text));
+    if (ticks.length > 0) {
+      const y = depth.down > 0 ? surface + 15 : surface - 7;
+      layers.depth.append(svg('text', { class: 'tick-text', x: 12, y }, `Im k${per && ` (${per})`}`));
     }
   };
 
@@ -353,11 +352,12 @@ function depthScale(tracks: readonly Track[]): DepthScale {
   return { of, up, down, ticks };
 }
 
-/** Ticks that stand far enough from one another for their texts. */
+/** Ticks that stand far enough from one another, and from the title beside the surface, for their texts. */
 function spaced(ticks: DepthScale['ticks'], yOf: (im: number) => number): DepthScale['ticks'] {
   const kept: { im: number; text: string }[] = [];
   for (const tick of [...ticks].sort((a, b) => Math.abs(b.im) - Math.abs(a.im)))
-    if (kept.every(({ im }) => Math.abs(yOf(im) - yOf(tick.im)) > 17)) kept.push(tick);
+    if (kept.every(({ im }) => Math.abs(yOf(im) - yOf(tick.im)) > 17) && Math.abs(yOf(tick.im) - yOf(0)) > 27)
+      kept.push(tick);
   return kept;
 }
 
