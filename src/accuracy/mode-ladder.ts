@@ -56,8 +56,12 @@ const SEED = 20260;
 /** Sum of the parts. */
 export const totalError = (error: ErrorParts): number => error.discretization + error.boundary + error.algebra;
 
-/** Absolute distance at which modes count as one group: what the discretisation may split a degenerate pair by. */
-export const groupWidth = (digits: number, k: number): number => 10 * 10 ** -digits * k;
+/**
+ * Absolute distance at which modes are treated as one group from the start: what the discretisation may split a
+ * degenerate pair by, but never so much that modes of one family merge. Rows that the errors cannot tell apart are
+ * joined at the end.
+ */
+export const groupWidth = (digits: number, k: number): number => Math.min(10 * 10 ** -digits, 1e-4) * k;
 
 /**
  * Searches at the starting order, then climbs: all vectors of a tile are embedded in the next order and improved
@@ -104,7 +108,7 @@ export function climbModes(family: (order: number) => DeviceFamily, request: Mod
         }
         modes.push({ group: o.group, layer: check, error: errorParts(o.group, errors[i], layer) });
       }
-      return { modes, dropped, covered: found.covered, order, reached };
+      return { modes: joinUnresolved(modes), dropped, covered: found.covered, order, reached };
     }
     order++;
     here = up;
@@ -176,6 +180,47 @@ function discretization(group: EigenGroup, higher: readonly EigenGroup[]): numbe
     count += g.multiplicity;
   }
   return count >= group.multiplicity ? error : Infinity;
+}
+
+/** Rows closer than their errors are one row: a cluster of higher multiplicity, its spread part of the error. */
+function joinUnresolved(modes: readonly FoundMode[]): FoundMode[] {
+  const out: FoundMode[] = [];
+  for (const mode of modes) {
+    const i = out.findIndex((m) => {
+      const distance = modulus(subtract(m.group.k, mode.group.k));
+      return distance <= Math.max(totalError(m.error), totalError(mode.error));
+    });
+    if (i < 0) out.push(mode);
+    else out[i] = join(out[i], mode);
+  }
+  return out;
+}
+
+function join(a: FoundMode, b: FoundMode): FoundMode {
+  const ma = a.group.multiplicity;
+  const mb = b.group.multiplicity;
+  const total = ma + mb;
+  const mean = (x: Complex, y: Complex): Complex => ({
+    re: (ma * x.re + mb * y.re) / total,
+    im: (ma * x.im + mb * y.im) / total,
+  });
+  const k = mean(a.group.k, b.group.k);
+  const spread = Math.max(
+    modulus(subtract(a.group.k, k)) + a.group.spread,
+    modulus(subtract(b.group.k, k)) + b.group.spread,
+  );
+  const vectors = new Float64Array(a.group.vectors.length + b.group.vectors.length);
+  vectors.set(a.group.vectors);
+  vectors.set(b.group.vectors, a.group.vectors.length);
+  return {
+    group: { k, spread, slope: mean(a.group.slope, b.group.slope), multiplicity: total, vectors },
+    error: {
+      discretization: Math.max(a.error.discretization, b.error.discretization, spread),
+      boundary: Math.max(a.error.boundary, b.error.boundary),
+      algebra: Math.max(a.error.algebra, b.error.algebra),
+    },
+    layer: a.layer.sensitivity >= b.layer.sensitivity ? a.layer : b.layer,
+  };
 }
 
 /**
