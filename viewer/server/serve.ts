@@ -7,6 +7,7 @@ import { join } from 'node:path';
 import { fileURLToPath } from 'node:url';
 import sirv from 'sirv';
 
+import { fieldSampler } from '../../src/results/evaluate.ts';
 import { bodyName } from '../../src/results/run-view.ts';
 import type { FieldSampler } from '../../src/results/run-view.ts';
 import { readRun } from '../../src/results/store.ts';
@@ -21,7 +22,7 @@ export interface ServeOptions {
   readonly signal?: AbortSignal;
   /** Folder of the built page; by default the one that `vite build` fills. */
   readonly page?: string;
-  /** Makes the exact read-out of a run: `fieldSampler` of src/results/evaluate. */
+  /** Makes the exact read-out of a run, when it is first asked for; by default that of src/results/evaluate. */
   readonly fieldSampler?: (run: LoadedRun) => FieldSampler;
 }
 
@@ -71,7 +72,7 @@ export async function serveRun(folder: string, options: ServeOptions = {}): Prom
     throw new ServeError(`port: came ${port}, expected a whole number from 0 (any free one) to 65535`);
   signal?.throwIfAborted();
   const run = readRun(folder);
-  const answer = answerer(run, options.page ?? builtPage(), options.fieldSampler?.(run) ?? null);
+  const answer = answerer(run, options.page ?? builtPage(), options.fieldSampler ?? fieldSampler);
   const server = createServer(answer);
   await listen(server, port);
   const stop = (): void => {
@@ -118,10 +119,12 @@ async function listen(server: Server, port: number): Promise<void> {
 
 type Answerer = (request: IncomingMessage, response: ServerResponse) => void;
 
-function answerer(run: LoadedRun, page: string, sampler: FieldSampler | null): Answerer {
+function answerer(run: LoadedRun, page: string, makeSampler: (run: LoadedRun) => FieldSampler): Answerer {
   const record = Buffer.from(JSON.stringify(run.record));
   const arrays = Buffer.from(run.buffer);
   const files = sirv(page, { etag: true });
+  let made: FieldSampler | null = null;
+  const sampler: FieldSampler = (field, x, y) => (made ??= makeSampler(run))(field, x, y);
   return (request, response) => {
     for (const [name, value] of Object.entries(SECURITY_HEADERS)) response.setHeader(name, value);
     if (!isLoopbackHost(request.headers.host)) return refuse(response, 403, 'only http://127.0.0.1 is served here');
@@ -192,13 +195,7 @@ function parseRange(header: string, size: number): { first: number; last: number
   return first > last ? 'none' : { first, last };
 }
 
-function sendProbe(
-  response: ServerResponse,
-  run: LoadedRun,
-  sampler: FieldSampler | null,
-  query: URLSearchParams,
-): void {
-  if (!sampler) return refuse(response, 501, 'this server gives no field values');
+function sendProbe(response: ServerResponse, run: LoadedRun, sampler: FieldSampler, query: URLSearchParams): void {
   const field = query.get('field') ?? '';
   if (!run.record.fields.some(({ id }) => id === field)) return refuse(response, 404, `there is no field '${field}'`);
   const [x, y] = [query.get('x'), query.get('y')].map((text) => (text?.trim() ? Number(text) : NaN));
