@@ -37,7 +37,7 @@ export function arrangeShapes(shapes: readonly Shape[], names: readonly string[]
   return { ...dropUnused(pool, joinChains(edges)), notes };
 }
 
-/** Half the diagonal of the shape's box. */
+/** Half the longer side of the shape's box: the radius of a disk. */
 function sizeOf(shape: Shape): number {
   const box = [Infinity, Infinity, -Infinity, -Infinity];
   for (const piece of shape.flat()) {
@@ -47,7 +47,7 @@ function sizeOf(shape: Shape): number {
     box[2] = Math.max(box[2], x1);
     box[3] = Math.max(box[3], y1);
   }
-  return Math.hypot(box[2] - box[0], box[3] - box[1]) / 2;
+  return Math.max(box[2] - box[0], box[3] - box[1]) / 2;
 }
 
 /** One piece of an outline as it was given. */

@@ -17,7 +17,11 @@ export const OUTSIDE = -1;
 /** Degree of the edge polynomials: on spans of 0.6 rad they equal the arc to rounding. */
 export const CURVE_ORDER = 10;
 
+const NODES = gaussLobatto(CURVE_ORDER + 1).nodes;
+
+/** Circumradius, in wanted sizes, from which on a triangle has room for a point of the advancing front. */
 const FRONT = 1.2;
+
 const UNKNOWN = -9;
 const degrees = Math.PI / 180;
 
@@ -168,12 +172,12 @@ export class Draft {
     if (piece.kind === 'line') return null;
     const { x, y } = this.triangulation;
     const [first, last, to] = a === from ? [s0, s1, b] : [s1, s0, a];
-    const { nodes } = gaussLobatto(CURVE_ORDER + 1);
     const points = new Float64Array(2 * (CURVE_ORDER + 1));
     for (let j = 1; j < CURVE_ORDER; j++)
-      points.set(pointAt(piece, (first * (1 - nodes[j]) + last * (1 + nodes[j])) / 2), 2 * j);
-    points.set([x[from], y[from]]);
-    points.set([x[to], y[to]], 2 * CURVE_ORDER);
+      [points[2 * j], points[2 * j + 1]] = pointAt(piece, (first * (1 - NODES[j]) + last * (1 + NODES[j])) / 2);
+    // The ends belong to vertices: the same numbers, bit for bit.
+    [points[0], points[1]] = [x[from], y[from]];
+    [points[2 * CURVE_ORDER], points[2 * CURVE_ORDER + 1]] = [x[to], y[to]];
     return points;
   }
 
@@ -219,13 +223,13 @@ export class Draft {
     }
   }
 
-  /** Smallest angle of the star, radians; negative when a triangle is turned over or a segment is encroached. */
+  /** Sine of the smallest angle of the star; negative when a triangle is turned over or a segment is encroached. */
   private starQuality(v: number, star: readonly number[]): number {
     const t = this.triangulation;
     let least = Infinity;
     for (const e of star) {
       const far = nextOf(e);
-      const q = this.smallestAngle(v, t.start[far], t.start[previousOf(e)]);
+      const q = this.smallestSine(v, t.start[far], t.start[previousOf(e)]);
       if (q <= 0) return -1;
       least = Math.min(least, q);
       if (t.segment[far] >= 0 && this.sees(v, t.start[far], t.start[nextOf(far)])) return -1;
@@ -233,36 +237,33 @@ export class Draft {
     return least;
   }
 
-  /** Smallest angle of a triangle, radians; ≤ 0 when it is turned over. */
-  private smallestAngle(a: number, b: number, c: number): number {
+  /** Sine of the smallest angle of a triangle; ≤ 0 when it is turned over. */
+  private smallestSine(a: number, b: number, c: number): number {
     const { x, y } = this.triangulation;
     const area = (x[b] - x[a]) * (y[c] - y[a]) - (y[b] - y[a]) * (x[c] - x[a]);
-    if (area <= 0) return area === 0 ? 0 : -1;
-    const angle = (p: number, q: number, r: number): number =>
-      Math.atan2(area, (x[q] - x[p]) * (x[r] - x[p]) + (y[q] - y[p]) * (y[r] - y[p]));
-    return Math.min(angle(a, b, c), angle(b, c, a), angle(c, a, b));
+    const ab = (x[b] - x[a]) ** 2 + (y[b] - y[a]) ** 2;
+    const bc = (x[c] - x[b]) ** 2 + (y[c] - y[b]) ** 2;
+    const ca = (x[a] - x[c]) ** 2 + (y[a] - y[c]) ** 2;
+    // Twice the area over the two longer sides.
+    return area / Math.sqrt((ab * bc * ca) / Math.min(ab, bc, ca));
   }
 
   /** Why a triangle is bad, and how bad; null when it is good. */
   private judge(i: number, angle: number): { key: number; large: boolean; slim: boolean } | null {
     const t = this.triangulation;
-    const label = t.region[i];
-    if (label === OUTSIDE) return null;
-    const [a, b, c] = [t.start[3 * i], t.start[3 * i + 1], t.start[3 * i + 2]];
-    const { x, y } = t;
-    const lengths = [
-      Math.hypot(x[a] - x[b], y[a] - y[b]),
-      Math.hypot(x[b] - x[c], y[b] - y[c]),
-      Math.hypot(x[c] - x[a], y[c] - y[a]),
-    ];
-    const wanted = this.wantedIn(i);
+    if (t.region[i] === OUTSIDE) return null;
+    const { x, y, start } = t;
+    const a = start[3 * i];
+    const b = start[3 * i + 1];
+    const c = start[3 * i + 2];
+    const ab = Math.sqrt((x[b] - x[a]) ** 2 + (y[b] - y[a]) ** 2);
+    const bc = Math.sqrt((x[c] - x[b]) ** 2 + (y[c] - y[b]) ** 2);
+    const ca = Math.sqrt((x[a] - x[c]) ** 2 + (y[a] - y[c]) ** 2);
+    const wanted = this.wantedIn(i) * this.stretch;
     const area = (x[b] - x[a]) * (y[c] - y[a]) - (y[b] - y[a]) * (x[c] - x[a]);
-    const radius = (lengths[0] * lengths[1] * lengths[2]) / (2 * area);
-    const tooLarge = Math.max(
-      radius / (0.7 * wanted * this.stretch),
-      Math.max(...lengths) / (1.2 * wanted * this.stretch),
-    );
-    const shortest = Math.min(...lengths);
+    const radius = (ab * bc * ca) / (2 * area);
+    const tooLarge = Math.max(radius / (0.7 * wanted), Math.max(ab, bc, ca) / (1.2 * wanted));
+    const shortest = Math.min(ab, bc, ca);
     // Smallest angle: sin = shortest / 2R.
     const sine = shortest / (2 * radius);
     const slim = sine < Math.sin(angle * degrees) && !this.isTip(i);
@@ -475,7 +476,7 @@ export class Draft {
     const mx = (x[a] + x[b]) / 2;
     const my = (y[a] + y[b]) / 2;
     // Up to the circumcentre only: nothing lies nearer than the triangle's own vertices.
-    const height = Math.max(wanted * wanted - (least * least) / 4, (wanted * wanted) / 4) ** 0.5;
+    const height = Math.sqrt(Math.max(wanted * wanted - (least * least) / 4, (wanted * wanted) / 4));
     const up = (x[b] - x[a]) * (center[1] - my) - (y[b] - y[a]) * (center[0] - mx);
     const q = up > 0 ? Math.hypot(center[0] - mx, center[1] - my) : 0;
     const share = Math.min(height, q) / least;
