@@ -1,0 +1,219 @@
+// How is the answer of a run printed, and is it one?
+
+import {
+  type CrossingAnswer,
+  ENERGY_UNITS,
+  errorText,
+  FREQUENCY_UNITS,
+  fromWavenumber,
+  type ModeAnswer,
+  type PowerCheck,
+  type RunRecord,
+  significant,
+  toError,
+  withError,
+} from '../src/index.ts';
+import type { Asked } from './ask.ts';
+import { DONE, NOT_FOUND } from './exit-codes.ts';
+import { ink, say, sayCautions, sayFacts, sayJson, sayTable, unitText, withUnit } from './paper.ts';
+
+/** Rows of a table before the rest is only counted: the file and `--json` hold all. */
+const MOST_ROWS = 40;
+
+/** Prints the run as people or scripts want it, and returns the exit code. */
+export function printAnswer(asked: Asked, json: boolean): number {
+  const { record } = asked.run;
+  if (json) sayJson({ ...record.answer, run: asked.folder });
+  else printOnPaper(asked);
+  return answerCode(record);
+}
+
+function printOnPaper({ run, folder, reused }: Asked): void {
+  const { record } = run;
+  say(ink.bold(record.sentence));
+  for (const note of record.answer['notes'] as readonly string[]) say(ink.dim(`Note: ${note}`));
+  const modes = record.answer['modes'] as readonly ModeAnswer[] | undefined;
+  const crossings = record.answer['crossings'] as readonly CrossingAnswer[] | undefined;
+  if (modes && modes.length > 0) printModes(record, modes);
+  if (crossings && crossings.length > 0) printCrossings(record, crossings);
+  printDoubts(record);
+  say();
+  sayFacts([
+    ['run', reused ? `${folder}  (read back: same file, same options; --again computes anew)` : folder],
+    ['look', `npx wavewell view ${quoted(folder)}`],
+    ['take', `npx wavewell export ${quoted(folder)}`],
+  ]);
+  sayCautions(record.cautions);
+}
+
+/** Found, searched to the end, with the digits asked for. */
+export function answerCode({ answer }: RunRecord): number {
+  const modes = answer['modes'] as readonly unknown[] | undefined;
+  const crossings = answer['crossings'] as readonly CrossingAnswer[] | undefined;
+  const found = (modes ?? crossings ?? []).length > 0;
+  const reached = answer['reached'] !== false && (crossings ?? []).every((c) => c.reached !== false);
+  return found && reached && answer['covered'] !== false ? DONE : NOT_FOUND;
+}
+
+function printDoubts({ answer }: RunRecord): void {
+  const crossings = (answer['crossings'] ?? []) as readonly CrossingAnswer[];
+  if (answer['covered'] === false)
+    say(ink.yellow('Part of the window could not be searched: the list may lack modes.'));
+  if (answer['reached'] === false || crossings.some((c) => c.reached === false))
+    say(ink.yellow('The digits asked for were not reached; the errors say how far the numbers go.'));
+}
+
+function printModes(record: RunRecord, modes: readonly ModeAnswer[]): void {
+  const band = bandColumn(record);
+  const { lengthUnit } = record.device;
+  const perLength = lengthUnit === 'none' ? '' : `1/${lengthUnit}`;
+  say();
+  sayTable(
+    [
+      { head: '', align: 'right' },
+      { head: band.head, align: 'right' },
+      { head: withUnit('Re k', perLength), align: 'right' },
+      { head: withUnit('Im k', perLength), align: 'right' },
+      { head: '±', align: 'right' },
+      { head: 'Q', align: 'right' },
+      { head: 'lifetime [ps]', align: 'right' },
+      { head: '×', align: 'right' },
+      { head: 'symmetry' },
+    ],
+    modes
+      .slice(0, MOST_ROWS)
+      .map((m, i) => [
+        String(i + 1),
+        band.write(m.k[0], m.kError),
+        toError(m.k[0], m.kError),
+        toError(m.k[1], m.kError),
+        errorText(m.kError),
+        m.qError < 0.5 * m.q ? withError(m.q, m.qError) : `above ${significant(m.q / (1 + m.qError / m.q), 2)}`,
+        m.lifetime === null ? '' : significant(m.lifetime, 3),
+        m.multiplicity > 1 ? String(m.multiplicity) : '',
+        m.label,
+      ]),
+  );
+  printRest(modes.length);
+}
+
+function printCrossings(record: RunRecord, crossings: readonly CrossingAnswer[]): void {
+  const band = bandColumn(record);
+  const { lengthUnit } = record.device;
+  const perLength = lengthUnit === 'none' ? '' : `1/${lengthUnit}`;
+  say();
+  sayTable(
+    [
+      { head: '', align: 'right' },
+      { head: band.head, align: 'right' },
+      { head: withUnit('k', perLength), align: 'right' },
+      { head: record.command === 'absorb' ? 'added loss D' : 'pump D', align: 'right' },
+      { head: record.command === 'absorb' ? 'power loss' : 'power gain' },
+      { head: record.command === 'absorb' ? 'total Im ε' : 'total Im ε', align: 'right' },
+      { head: '×', align: 'right' },
+      { head: 'symmetry' },
+      { head: 'beam' },
+    ],
+    crossings.slice(0, MOST_ROWS).map((c, i) => {
+      const lead = c.bodies[0];
+      return [
+        String(i + 1),
+        band.write(c.k, c.kError),
+        withError(c.k, c.kError),
+        withError(c.pump ?? c.loss ?? NaN, c.pumpError ?? c.lossError ?? NaN),
+        lead && lead.units.perCentimetre !== null
+          ? `${significant(Math.abs(lead.units.perCentimetre), 3)} /cm, ${significant(Math.abs(lead.units.decibelPerCentimetre!), 3)} dB/cm`
+          : '',
+        c.bodies
+          .map((b) => `${significant(b.permittivity[1], 4)}${c.bodies.length > 1 ? ` ${b.name}` : ''}`)
+          .slice(0, 3)
+          .join(', '),
+        c.multiplicity > 1 ? String(c.multiplicity) : '',
+        c.label,
+        c.farField
+          ? `${significant(c.farField.directionality, 3)} × mean at ${significant(c.farField.peakAngle, 3)}°`
+          : '',
+      ];
+    }),
+  );
+  printRest(crossings.length);
+  if (record.command === 'absorb') printProof(crossings[0]);
+}
+
+/** The forward check of the first absorption point, on both meshes, and the strongest channels of its drive. */
+function printProof({ forward, drive, drives, outgoingExpected }: CrossingAnswer): void {
+  if (!forward) return;
+  say();
+  say(`Forward check: ${powers(forward)}`);
+  const expected =
+    outgoingExpected === undefined ? '' : `; out ${power(outgoingExpected)} or less expected from the errors`;
+  say(`  on a mesh of its own, one order higher: ${powers(forward.ownMesh)}${expected}`);
+  const terms = [...(drive ?? [])].sort((a, b) => size(b.amplitude) - size(a.amplitude));
+  const strong = terms.filter((t) => size(t.amplitude) > 1e-3).slice(0, 6);
+  const list = strong.map(
+    ({ m, amplitude }) => `m = ${String(m)}: ${size(amplitude).toFixed(3)} ∠ ${degrees(amplitude).toFixed(1)}°`,
+  );
+  const more = terms.length > strong.length ? ` and ${String(terms.length - strong.length)} weaker` : '';
+  say(`Drive: ${list.join(', ')}${more}; total power 1.`);
+  if ((drives ?? []).length > 1)
+    say(ink.dim(`  first of ${String(drives!.length)} orthonormal drives: any mixture of them is absorbed as well`));
+}
+
+const powers = (p: PowerCheck): string =>
+  `in 1, out ${power(p.outgoing)}, absorbed ${p.absorbed.toFixed(p.absorbed > 0.999 && p.absorbed < 1.001 ? 6 : 4)}, balance ${power(Math.abs(p.balance))}`;
+
+const power = (value: number): string =>
+  value === 0 ? '0' : value >= 1e-3 ? significant(value, 3) : value.toExponential(0);
+const size = ([re, im]: readonly [number, number]): number => Math.hypot(re, im);
+const degrees = ([re, im]: readonly [number, number]): number => (Math.atan2(im, re) * 180) / Math.PI;
+
+function printRest(count: number): void {
+  if (count > MOST_ROWS) say(ink.dim(`  … and ${String(count - MOST_ROWS)} more: --json and export list all`));
+}
+
+/** The file's own quantity; wavelength where that is k, which has a column already. */
+function bandColumn({ device }: RunRecord): { head: string; write: (k: number, kError: number) => string } {
+  const quantity = device.band.quantity === 'wavenumber' ? 'wavelength' : device.band.quantity;
+  const own =
+    device.band.quantity === 'wavenumber' ? (device.lengthUnit === 'none' ? '' : device.lengthUnit) : device.band.unit;
+  return {
+    head: withUnit(quantity, own),
+    write: (k, kError) => {
+      const value = fromWavenumber(quantity, k, own, device.metres);
+      return withError(value, (value * kError) / k);
+    },
+  };
+}
+
+/** The limits of a band in every unit that makes sense for it: name and text. */
+export function bandFacts(band: {
+  readonly kMin: number;
+  readonly kMax: number;
+  readonly lengthUnit: string;
+  readonly metres: number | null;
+}): [string, string][] {
+  const { kMin, kMax, lengthUnit, metres } = band;
+  const unit = lengthUnit === 'none' ? '' : lengthUnit;
+  const text = (quantity: 'wavelength' | 'frequency' | 'energy' | 'wavenumber', u: string): string => {
+    const ends = [kMin, kMax].map((k) => fromWavenumber(quantity, k, u, metres)).sort((a, b) => a - b);
+    return `${ends.map((v) => Number(v.toPrecision(6))).join(' to ')} ${unitText(u)}`.trim();
+  };
+  const facts: [string, string][] = [
+    ['wavelength', text('wavelength', unit)],
+    ['wavenumber', text('wavenumber', unit === '' ? '' : `1/${unit}`)],
+  ];
+  if (metres === null) return facts;
+  const fitting = (units: Readonly<Record<string, number>>, quantity: 'frequency' | 'energy'): string => {
+    const names = Object.keys(units).sort((a, b) => units[b] - units[a]);
+    return names.find((u) => fromWavenumber(quantity, kMax, u, metres) >= 1) ?? names[names.length - 1];
+  };
+  return [
+    ...facts,
+    ['frequency', text('frequency', fitting(FREQUENCY_UNITS, 'frequency'))],
+    ['photon energy', text('energy', fitting(ENERGY_UNITS, 'energy'))],
+  ];
+}
+
+/** A path as a shell takes it. */
+export const quoted = (path: string): string =>
+  /^[\w./:@%+=~-]+$/.test(path) ? path : `'${path.replaceAll("'", "'\\''")}'`;

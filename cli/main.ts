@@ -1,0 +1,62 @@
+#!/usr/bin/env node
+// What does the command line ask for, and with which code does it end?
+
+import { CommanderError } from 'commander';
+import { addAbsorb } from './absorb.ts';
+import { INPUT_WRONG, INTERRUPTED } from './exit-codes.ts';
+import { reportFault } from './faults.ts';
+import { addModes } from './modes.ts';
+import { WellCommand } from './options.ts';
+import { errorInk } from './paper.ts';
+import { clearProgress } from './progress.ts';
+import { addThreshold } from './threshold.ts';
+import { programVersion } from './version.ts';
+
+for (const signal of ['SIGINT', 'SIGTERM', 'SIGHUP'] as const) process.once(signal, interrupt);
+for (const stream of [process.stdout, process.stderr]) stream.on('error', endOfPipe);
+process.on('uncaughtException', fail);
+process.on('unhandledRejection', fail);
+
+const program = new WellCommand('wavewell')
+  .description('Open resonators in two dimensions: poles, zeros, lasing thresholds, coherent absorption, with proof.')
+  .version(programVersion(), '--version', 'prints the version')
+  .helpOption('--help', 'prints this text')
+  .helpCommand(false)
+  .exitOverride()
+  .configureHelp({ sortSubcommands: false, showGlobalOptions: false })
+  .showSuggestionAfterError(false);
+addModes(program);
+addThreshold(program);
+addAbsorb(program);
+
+try {
+  await program.parseAsync();
+} catch (error) {
+  fail(error);
+}
+
+/** Runs are written in one go between two turns of the event loop: here nothing is half-written. */
+function interrupt(): void {
+  clearProgress();
+  process.exit(INTERRUPTED);
+}
+
+/** The reader of a pipe has gone (`| head`): nothing is left to say. */
+function endOfPipe(error: NodeJS.ErrnoException): void {
+  if (error.code === 'EPIPE') process.exit(process.exitCode);
+  throw error;
+}
+
+function fail(error: unknown): void {
+  clearProgress();
+  if (error instanceof CommanderError) {
+    // Help and version were asked for, or no command was given and help was printed instead.
+    process.exitCode = error.exitCode === 0 ? 0 : INPUT_WRONG;
+    return;
+  }
+  const { code, text, stack } = reportFault(error);
+  const [first, ...rest] = text.split('\n');
+  process.stderr.write(`${errorInk.bold(first)}\n${rest.map((line) => `${line}\n`).join('')}`);
+  if (process.env['WAVEWELL_DEBUG'] && stack !== '') process.stderr.write(`${stack}\n`);
+  process.exitCode = code;
+}

@@ -1,0 +1,41 @@
+// What goes to the thread beside the command, and what comes back?
+
+import type { Assignment, Mesh, MeshQuality, ReadOptions, RunContext, RunParts } from '../src/index.ts';
+
+export type RunCommand = 'modes' | 'threshold' | 'absorb';
+
+/** Everything a question depends on besides the device file: defaults filled in, so that equal questions look equal. */
+export interface Settings {
+  readonly digits: number;
+  readonly band: readonly [number, number] | null;
+  readonly knobs: Readonly<Record<string, number>>;
+  /** `modes`. */
+  readonly assignment?: Assignment;
+  readonly qMin?: number;
+  /** `threshold` and `absorb`; null: the default of the device. */
+  readonly levelMax?: number | null;
+}
+
+export interface RunInput {
+  readonly command: RunCommand;
+  readonly text: string;
+  readonly read: ReadOptions;
+  readonly settings: Settings;
+  readonly context: RunContext;
+}
+
+export type RunOutput = RunParts;
+
+export interface MeshInput {
+  readonly text: string;
+  readonly file: string;
+  readonly read: ReadOptions;
+  readonly digits: number;
+}
+
+export interface MeshOutput {
+  readonly mesh: Mesh;
+  readonly notes: readonly string[];
+  readonly quality: MeshQuality;
+  readonly order: number;
+}

@@ -1,0 +1,63 @@
+// What does the thread beside the command compute?
+
+import { parentPort, workerData } from 'node:worker_threads';
+import {
+  absorbRecord,
+  DEFAULT_Q_MIN,
+  findAbsorption,
+  findModes,
+  findThresholds,
+  measureMesh,
+  modesRecord,
+  prepare,
+  type Progress,
+  readDevice,
+  resolutionFor,
+  thresholdRecord,
+} from '../src/index.ts';
+import type { FarMessage, FarTask } from './far-work.ts';
+import { reportFault } from './faults.ts';
+import type { MeshInput, MeshOutput, RunInput, RunOutput } from './tasks.ts';
+
+/** Milliseconds between two reports. */
+const PACE = 50;
+
+const tell = (message: FarMessage, moved: ArrayBuffer[] = []): void => parentPort!.postMessage(message, moved);
+
+let told = -Infinity;
+const progress: Progress = (stage, done) => {
+  const now = performance.now();
+  if (done > 0 && now - told < PACE) return;
+  told = now;
+  tell({ kind: 'progress', stage, done });
+};
+
+function computeRun(input: RunInput): RunOutput {
+  const { command, text, context } = input;
+  const device = readDevice(text, context.deviceFile, input.read);
+  const { digits, assignment, qMin, levelMax } = input.settings;
+  if (command === 'modes')
+    return modesRecord(device, findModes(device, { digits, qMin: qMin!, assignment: assignment!, progress }), context);
+  const request = { digits, progress, ...(levelMax === null ? {} : { levelMax }) };
+  return command === 'threshold'
+    ? thresholdRecord(device, findThresholds(device, request), context)
+    : absorbRecord(device, findAbsorption(device, request), context);
+}
+
+function computeMesh({ text, file, read, digits }: MeshInput): MeshOutput {
+  const device = readDevice(text, file, read);
+  const resolution = resolutionFor(digits);
+  progress('meshing', 0);
+  const { kMin, kMax } = device.band;
+  const { mesh, notes } = prepare(device, { kMin, kMax, slope: 1 / (2 * DEFAULT_Q_MIN) }, resolution);
+  return { mesh, notes, quality: measureMesh(mesh), order: resolution.order };
+}
+
+const { task, input } = workerData as FarTask;
+try {
+  const output = task === 'mesh' ? computeMesh(input as MeshInput) : computeRun(input as RunInput);
+  const moved = 'arrays' in output ? Object.values(output.arrays).map((a) => a.buffer as ArrayBuffer) : [];
+  tell({ kind: 'done', output }, [...new Set(moved)]);
+} catch (error) {
+  tell({ kind: 'fault', report: reportFault(error) });
+}
