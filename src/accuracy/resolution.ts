@@ -31,7 +31,7 @@ export function resolutionFor(digits: number): Resolution {
     throw new RangeError(`digits came as ${digits}; expected ${FEWEST_DIGITS} to ${MOST_DIGITS}`);
   }
   return {
-    order: Math.max(3, Math.ceil(digits * 0.75) + 2),
+    order: Math.ceil(digits * 0.8) + 2,
     sizeInWavelengths: 0.6,
     cornerGrading: Math.max(2 ** (1 - digits), 1e-3),
     layerTolerance: 10 ** -(digits + 1.5),

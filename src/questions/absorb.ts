@@ -4,7 +4,14 @@ import { resolutionFor } from '../accuracy/resolution.ts';
 import type { Device } from '../device/model.ts';
 import type { Complex } from '../numerics/complex.ts';
 import { driveMultipoles, normaliseDrive, power } from '../scattering/amplitudes.ts';
-import { absorbedPower, type ContrastProblem, type Multipoles } from '../scattering/contrast.ts';
+import {
+  absorbedPower,
+  type ContrastProblem,
+  multipoleJumps,
+  multipoleOrder,
+  type Multipoles,
+} from '../scattering/contrast.ts';
+import type { KnobCrossing } from './knob-crossing.ts';
 import { type AxisMode, type CrossingsAnswer, type CrossingsRequest, findCrossings } from './crossings.ts';
 import { familyOf, type Prepared, prepare, spaceOf } from './prepare.ts';
 
@@ -55,6 +62,36 @@ export function findAbsorption(device: Device, request: CrossingsRequest = {}): 
     return prove(answer.prepared, own, mode);
   });
   return { ...answer, crossings };
+}
+
+/** Drive and forward checks of a zero that a knob has brought to the axis: no loss beyond the file's. */
+export function proveKnobCrossing(crossing: KnobCrossing): AbsorbingMode {
+  const { device, answer, mode } = crossing;
+  const { prepared, order, digits } = answer;
+  const space = spaceOf(prepared, order);
+  const M = multipoleOrder(device, prepared.bodyRadius, crossing.k);
+  const multipoles = multipoleJumps(
+    { device, space, k: crossing.k, level: 0, sense: 'loss', order: M },
+    mode.vectors,
+    null,
+  );
+  const vectors = new Float64Array(2 * space.unknowns * mode.multiplicity);
+  mode.vectors.forEach((v, i) => vectors.set(v, 2 * space.unknowns * i));
+  const axis: AxisMode = {
+    k: crossing.k,
+    kError: crossing.kError,
+    level: 0,
+    levelError: 0,
+    multiplicity: crossing.multiplicity,
+    label: crossing.label,
+    group: { k: mode.k, spread: 0, slope: { re: 0, im: 0 }, multiplicity: mode.multiplicity, vectors },
+    order,
+    multipoles,
+    path: crossing.path,
+    reached: crossing.reached,
+  };
+  const own = prepare(device, prepared.scope, resolutionFor(digits), OWN_MESH_REFINEMENT);
+  return prove(prepared, own, axis);
 }
 
 function prove(prepared: Prepared, own: Prepared, mode: AxisMode): AbsorbingMode {

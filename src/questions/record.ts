@@ -22,11 +22,12 @@ import {
 } from '../results/format.ts';
 import type { Multipoles } from '../scattering/contrast.ts';
 import { farField } from '../scattering/amplitudes.ts';
-import type { AbsorbAnswer, AbsorbingMode } from './absorb.ts';
+import { type AbsorbAnswer, type AbsorbingMode, proveKnobCrossing } from './absorb.ts';
 import type { AxisMode, CrossingsAnswer } from './crossings.ts';
+import type { KnobCrossing } from './knob-crossing.ts';
 import type { Mode, ModesAnswer } from './modes.ts';
 import { type Prepared, spaceOf } from './prepare.ts';
-import { absorbSentence, modesSentence, thresholdSentence } from './sentence.ts';
+import { absorbSentence, knobSentence, modesSentence, thresholdSentence } from './sentence.ts';
 import type { LasingMode, ThresholdAnswer } from './threshold.ts';
 
 /** What the command knows and the answer does not. */
@@ -131,22 +132,91 @@ export function absorbRecord(device: Device, answer: AbsorbAnswer, context: RunC
   );
   const cautions = cautionsFor('absorb', device);
   return book.close('absorb', absorbSentence(device, answer), cautions, {
-    crossings: answer.crossings.map((c): CrossingAnswer => {
-      // the weaker of the proofs speaks for the group
-      const worst = c.drives.reduce((a, b) => (b.ownMesh.outgoing > a.ownMesh.outgoing ? b : a));
-      return {
-        ...crossingAnswer(device, c, 'loss'),
-        loss: c.level,
-        lossError: c.levelError,
-        drive: driveTerms(c.drives[0].amplitudes),
-        drives: c.drives.map((d) => driveTerms(d.amplitudes)),
-        forward: { ...worst.sameMesh, ownMesh: worst.ownMesh },
-        outgoingExpected: c.outgoingExpected,
-      };
-    }),
+    crossings: answer.crossings.map((c): CrossingAnswer => ({
+      ...crossingAnswer(device, c, 'loss'),
+      loss: c.level,
+      lossError: c.levelError,
+      ...provenPart(c),
+      outgoingExpected: c.outgoingExpected,
+    })),
     ...searched(answer),
     cautions,
   });
+}
+
+/**
+ * The run of `threshold` or `absorb` with a knob as the parameter: every crossing has a mesh of its own, so that the
+ * fields stored are those of the first.
+ */
+export function knobRecord(
+  device: Device,
+  knob: string,
+  crossings: readonly KnobCrossing[],
+  sense: 'gain' | 'loss',
+  context: RunContext,
+): RunParts {
+  const command = sense === 'gain' ? 'threshold' : 'absorb';
+  const cautions = cautionsFor(command, device);
+  const first = crossings[0];
+  if (!first) throw new RangeError('a run needs at least one crossing');
+  const proofs = sense === 'loss' ? crossings.map(proveKnobCrossing) : [];
+  const book = openBook(first.device, first.answer.prepared, first.answer.order, context);
+  first.mode.vectors.forEach((vector, j) =>
+    book.addField({
+      id: j === 0 ? 'axis-1' : `axis-1-${j + 1}`,
+      label: `${sense === 'gain' ? 'lasing' : 'absorbing'} mode, ${knob} = ${first.value.toPrecision(6)}${part(j, first.multiplicity)}`,
+      kind: sense === 'gain' ? 'lasing' : 'absorbing',
+      k: [first.k, 0],
+      level: null,
+      order: first.answer.order,
+      vector,
+      drive: proofs[0] ? driveTerms(proofs[0].drives[j].amplitudes) : null,
+      pattern: sense === 'gain' && j === 0 ? first.mode.farField : null,
+    }),
+  );
+  crossings.forEach((c, i) => {
+    const start = c.path.ks[0];
+    book.marks.push({
+      id: `mark-${i + 1}`,
+      kind: sense === 'gain' ? 'pole' : 'zero',
+      k: [start.re, start.im],
+      kError: c.kError,
+      q: start.re / (2 * Math.abs(start.im)),
+      multiplicity: c.multiplicity,
+      label: c.label,
+      field: i === 0 ? 'axis-1' : null,
+      path: addPath(book, `path-${i + 1}`, knob, c.path),
+      crossing: {
+        k: c.k,
+        kError: c.kError,
+        level: c.value,
+        levelError: c.valueError,
+        field: i === 0 ? 'axis-1' : null,
+      },
+    });
+  });
+  return book.close(command, knobSentence(device, knob, crossings, sense), cautions, {
+    crossings: crossings.map((c, i) => ({
+      k: c.k,
+      kError: c.kError,
+      wavelength: (2 * Math.PI) / c.k,
+      frequency: terahertz(device, c.k),
+      knob: { name: knob, value: c.value, error: c.valueError },
+      multiplicity: c.multiplicity,
+      label: c.label,
+      reached: c.reached,
+      ...(proofs[i] ? provenPart(proofs[i]) : {}),
+    })),
+    covered: true,
+    cautions,
+  });
+}
+
+/** Drives and the weaker of the group's proofs. */
+function provenPart(mode: AbsorbingMode): Pick<CrossingAnswer, 'drive' | 'drives' | 'forward'> {
+  const worst = mode.drives.reduce((a, b) => (b.ownMesh.outgoing > a.ownMesh.outgoing ? b : a));
+  const drives = mode.drives.map((d) => driveTerms(d.amplitudes));
+  return { drive: drives[0], drives, forward: { ...worst.sameMesh, ownMesh: worst.ownMesh } };
 }
 
 const part = (j: number, of: number): string => (of > 1 ? ` (${j + 1} of ${of})` : '');

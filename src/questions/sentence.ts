@@ -6,6 +6,7 @@ import { fromWavenumber } from '../materials/spectral-units.ts';
 import { errorText, significant, toError } from '../results/number-text.ts';
 import type { AbsorbAnswer } from './absorb.ts';
 import type { AxisMode } from './crossings.ts';
+import type { KnobCrossing } from './knob-crossing.ts';
 import type { ModesAnswer } from './modes.ts';
 import type { ThresholdAnswer } from './threshold.ts';
 
@@ -35,6 +36,19 @@ export function absorbSentence(device: Device, answer: AbsorbAnswer): string {
   const first = answer.crossings[0];
   if (!first) return `No coherent absorption between ${bandText(device)} up to D = ${answer.levelMax}.`;
   return `Absorbs everything at ${placeText(device, first.k, first.kError)} with ${levelText(device, first, 'loss')}${next(answer.crossings)}.`;
+}
+
+/** "With radius = 2.8123 ± 3e-6 it absorbs everything at …." */
+export function knobSentence(
+  device: Device,
+  knob: string,
+  crossings: readonly KnobCrossing[],
+  sense: 'gain' | 'loss',
+): string {
+  const what = sense === 'gain' ? 'it lases' : 'it absorbs everything';
+  const [first] = crossings;
+  const more = crossings.length > 1 ? `; ${crossings.length - 1} more in the range` : '';
+  return `With ${knob} = ${toError(first.value, first.valueError)} ± ${errorText(first.valueError)} ${what} at ${placeText(device, first.k, first.kError)}${more}.`;
 }
 
 function next(crossings: readonly AxisMode[]): string {
