@@ -3,14 +3,20 @@
 
 import { CommanderError } from 'commander';
 import { addAbsorb } from './absorb.ts';
+import { addCheck } from './check.ts';
+import { addDemo } from './demo.ts';
 import { INPUT_WRONG, INTERRUPTED } from './exit-codes.ts';
+import { addExport } from './export.ts';
 import { reportFault } from './faults.ts';
+import { addMesh } from './mesh.ts';
 import { addModes } from './modes.ts';
 import { WellCommand } from './options.ts';
 import { errorInk } from './paper.ts';
 import { clearProgress } from './progress.ts';
+import { addSchema } from './schema.ts';
 import { addThreshold } from './threshold.ts';
 import { programVersion } from './version.ts';
+import { addView } from './view.ts';
 
 for (const signal of ['SIGINT', 'SIGTERM', 'SIGHUP'] as const) process.once(signal, interrupt);
 for (const stream of [process.stdout, process.stderr]) stream.on('error', endOfPipe);
@@ -25,9 +31,15 @@ const program = new WellCommand('wavewell')
   .exitOverride()
   .configureHelp({ sortSubcommands: false, showGlobalOptions: false })
   .showSuggestionAfterError(false);
+addCheck(program);
+addSchema(program);
+addMesh(program);
 addModes(program);
 addThreshold(program);
 addAbsorb(program);
+addView(program);
+addExport(program);
+addDemo(program);
 
 try {
   await program.parseAsync();

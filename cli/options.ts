@@ -21,6 +21,7 @@ function usageFault(command: Command, message: string, code: string): InputError
   const quoted = /'([^']*)'/.exec(message)?.[1] ?? '';
   if (code === 'commander.unknownOption') {
     const known = command.options.flatMap((o) => [o.long, o.short].filter((s) => s !== undefined && s !== null));
+    known.push('--help');
     return unknown(name, 'option', quoted.split('=')[0], known, help);
   }
   if (code === 'commander.unknownCommand')

@@ -1,0 +1,96 @@
+// wavewell demo: how does the whole job go, on a device that comes with the program?
+
+import type { Command } from 'commander';
+import { readdirSync } from 'node:fs';
+import { basename, join } from 'node:path';
+import { DEFAULT_Q_MIN, deviceFigure, fieldFigure, nearestName, planeFigure } from '../src/index.ts';
+import { printAnswer } from './answer.ts';
+import { ask, shown } from './ask.ts';
+import { openDevice } from './device-file.ts';
+import { NOT_FOUND } from './exit-codes.ts';
+import { exportFiles } from './export.ts';
+import { InputError } from './faults.ts';
+import { ink, say, sayFacts } from './paper.ts';
+import { pictureFiles } from './pictures.ts';
+import { commonSettings } from './settings.ts';
+import { packageFolder } from './version.ts';
+import { writeFiles } from './write-files.ts';
+
+const DEFAULT_DEVICE = 'dented-disk';
+
+export function addDemo(program: Command): void {
+  program
+    .command('demo')
+    .description('the whole job on a device that comes with the program: modes, threshold, absorbing twin, proof')
+    .argument('[DEVICE]', `one of ${demoNames().join(', ')}`, DEFAULT_DEVICE)
+    .option('--out <DIR>', 'folder for the runs (runs if absent)')
+    .option('--again', 'computes anew although stored runs have the answers')
+    .action(runDemo);
+}
+
+const demoFolder = (): string => join(packageFolder(), 'meshes-demo');
+const demoNames = (): string[] =>
+  readdirSync(demoFolder())
+    .filter((name) => name.endsWith('.yaml'))
+    .map((name) => basename(name, '.yaml'))
+    .sort();
+
+async function runDemo(name: string, options: { out?: string; again?: true }): Promise<void> {
+  const names = demoNames();
+  if (!names.includes(name))
+    throw new InputError(
+      'wavewell demo',
+      name,
+      `one of ${names.join(', ')}`,
+      `write ${nearestName(name, names) ?? DEFAULT_DEVICE}`,
+    );
+  const file = openDevice(shown(join(demoFolder(), `${name}.yaml`)), {});
+  const place = { base: options.out ?? 'runs', ...(options.again ? { again: true } : {}) };
+  const settings = commonSettings({});
+  let code = 0;
+  const tell = (title: string, asked: Awaited<ReturnType<typeof ask>>): void => {
+    say(ink.dim(`── ${title}`));
+    code = Math.max(code, printAnswer(asked, false));
+    say();
+  };
+  const modes = await ask('modes', file, { ...settings, assignment: 'poles', qMin: DEFAULT_Q_MIN }, place);
+  tell('1. Where does it resonate?', modes);
+  const threshold = await ask('threshold', file, { ...settings, levelMax: null }, place);
+  tell('2. When does it lase?', threshold);
+  const absorb = await ask('absorb', file, { ...settings, levelMax: null }, place);
+  tell('3. Which loss and which wave make it absorb everything?', absorb);
+
+  const out = join(place.base, name, 'story');
+  const files = { ...pictureFiles(out, 'device', deviceFigure(file.device)) };
+  for (const { run } of [modes, threshold, absorb]) Object.assign(files, exportFiles(run, out, {}));
+  const lasing = threshold.run.record.fields[0];
+  const taking = absorb.run.record.fields[0];
+  if (lasing) {
+    Object.assign(files, exportFiles(threshold.run, out, { field: lasing.id, nodes: true }));
+    Object.assign(files, pictureFiles(out, `field-${lasing.id}`, fieldFigure(threshold.run, lasing.id)));
+  }
+  if (taking) Object.assign(files, pictureFiles(out, `field-${taking.id}`, fieldFigure(absorb.run, taking.id)));
+  Object.assign(files, pictureFiles(out, 'plane', planeFigure(threshold.run)));
+  writeFiles(files);
+  say(ink.dim('── 4. Take it away'));
+  say(ink.bold(`Tables (CSV) and pictures (SVG, PNG) are in ${shown(out)}.`));
+  sayFacts([
+    [
+      'CSV',
+      Object.keys(files)
+        .filter((f) => f.endsWith('.csv'))
+        .map((f) => basename(f))
+        .join(', '),
+    ],
+    [
+      'pictures',
+      Object.keys(files)
+        .filter((f) => f.endsWith('.png'))
+        .map((f) => basename(f))
+        .join(', '),
+    ],
+    ['see it move', `npx wavewell view ${threshold.folder}`],
+    ['its twin', `npx wavewell view ${absorb.folder}`],
+  ]);
+  process.exitCode = code === 0 ? 0 : NOT_FOUND;
+}
