@@ -63,46 +63,62 @@ export function assembleElements(space: Space, layer: PointCoefficients): Elemen
   return { stiffness, mass, complex };
 }
 
+/** Function-major tables of one triangle: function i at point q sits at i·nq + q. */
 interface Work {
   readonly map: Float64Array;
-  readonly gx: Float64Array;
-  readonly gy: Float64Array;
-  readonly hx: Float64Array;
-  readonly hy: Float64Array;
-  readonly f: Float64Array;
+  /** ∂x then ∂y of each function: rows of 2nq. */
+  readonly gradients: Float64Array;
+  readonly values: Float64Array;
+  /** The same, weighted: real and imaginary part. */
+  readonly fluxRe: Float64Array;
+  readonly fluxIm: Float64Array;
+  readonly loadRe: Float64Array;
+  readonly loadIm: Float64Array;
+  readonly sum: Float64Array;
 }
 
-const makeWork = (rule: { weights: Float64Array }, order: number): Work => ({
-  map: new Float64Array(MAP_STRIDE * rule.weights.length),
-  gx: new Float64Array(functionCount(order)),
-  gy: new Float64Array(functionCount(order)),
-  hx: new Float64Array(2 * functionCount(order)),
-  hy: new Float64Array(2 * functionCount(order)),
-  f: new Float64Array(functionCount(order)),
-});
+function makeWork(rule: { weights: Float64Array }, order: number): Work {
+  const nq = rule.weights.length;
+  const nd = functionCount(order);
+  const rows = (width: number): Float64Array => new Float64Array(nd * nq * width);
+  return {
+    map: new Float64Array(MAP_STRIDE * nq),
+    gradients: rows(2),
+    values: rows(1),
+    fluxRe: rows(2),
+    fluxIm: rows(2),
+    loadRe: rows(1),
+    loadIm: rows(1),
+    sum: new Float64Array(nd * nd),
+  };
+}
 
 type Basis = ReturnType<typeof tabulateBasis>;
 
-/** Gradients in the plane of the chosen functions at point q; returns det J. */
-function planeGradients(functions: Int32Array, basis: Basis, q: number, work: Work): number {
-  const { map, gx, gy, f } = work;
-  const total = basis.values.length / (map.length / MAP_STRIDE);
-  const at = MAP_STRIDE * q;
-  const a = map[at + 2];
-  const b = map[at + 3];
-  const c = map[at + 4];
-  const d = map[at + 5];
-  const det = a * d - b * c;
-  for (let i = 0; i < functions.length; i++) {
-    const n = total * q + functions[i];
-    const dx = basis.dx[n];
-    const dy = basis.dy[n];
-    gx[i] = (d * dx - c * dy) / det;
-    gy[i] = (a * dy - b * dx) / det;
-    f[i] = basis.values[n]!;
+/** Fills values and plane gradients of the chosen functions at all points. */
+function tabulateTriangle(functions: Int32Array, basis: Basis, nq: number, work: Work): void {
+  const { map, gradients, values } = work;
+  const total = basis.values.length / nq;
+  for (let q = 0; q < nq; q++) {
+    const at = MAP_STRIDE * q;
+    const a = map[at + 2];
+    const b = map[at + 3];
+    const c = map[at + 4];
+    const d = map[at + 5];
+    const inverse = 1 / (a * d - b * c);
+    for (let i = 0; i < functions.length; i++) {
+      const n = total * q + functions[i];
+      const dx = basis.dx[n];
+      const dy = basis.dy[n];
+      gradients[2 * i * nq + q] = (d * dx - c * dy) * inverse;
+      gradients[(2 * i + 1) * nq + q] = (a * dy - b * dx) * inverse;
+      values[i * nq + q] = basis.values[n];
+    }
   }
-  return det;
 }
+
+const determinant = (map: Float64Array, q: number): number =>
+  map[MAP_STRIDE * q + 2] * map[MAP_STRIDE * q + 5] - map[MAP_STRIDE * q + 3] * map[MAP_STRIDE * q + 4];
 
 function integrateCurved(
   k: Float64Array,
@@ -113,22 +129,19 @@ function integrateCurved(
   work: Work,
 ): void {
   const nd = functions.length;
-  const { gx, gy, f } = work;
-  for (let q = 0; q < weights.length; q++) {
-    const w = weights[q] * planeGradients(functions, basis, q, work);
-    for (let j = 0; j < nd; j++) {
-      const wx = w * gx[j];
-      const wy = w * gy[j];
-      const wf = w * f[j];
-      const col = j * nd;
-      for (let i = 0; i <= j; i++) {
-        k[col + i] = k[col + i] + wx * gx[i] + wy * gy[i];
-        m[col + i] = m[col + i] + wf * f[i];
-      }
+  const nq = weights.length;
+  const { gradients, values, fluxRe, loadRe, map, sum } = work;
+  tabulateTriangle(functions, basis, nq, work);
+  for (let q = 0; q < nq; q++) {
+    const w = weights[q] * determinant(map, q);
+    for (let i = 0; i < nd; i++) {
+      fluxRe[2 * i * nq + q] = w * gradients[2 * i * nq + q];
+      fluxRe[(2 * i + 1) * nq + q] = w * gradients[(2 * i + 1) * nq + q];
+      loadRe[i * nq + q] = w * values[i * nq + q];
     }
   }
-  mirror(k, nd, 1);
-  mirror(m, nd, 1);
+  scatterGram(k, 1, 0, gramInto(sum, gradients, fluxRe, 2 * nq, nd), nd);
+  scatterGram(m, 1, 0, gramInto(sum, values, loadRe, nq, nd), nd);
 }
 
 function integrateLayer(
@@ -141,34 +154,95 @@ function integrateLayer(
   coefficients: PointCoefficients,
 ): void {
   const nd = functions.length;
-  const { gx, gy, hx, hy, f, map } = work;
+  const nq = weights.length;
+  const { gradients, values, fluxRe, fluxIm, loadRe, loadIm, map, sum } = work;
   const c = new Float64Array(8);
-  for (let q = 0; q < weights.length; q++) {
-    const w = weights[q] * planeGradients(functions, basis, q, work);
+  tabulateTriangle(functions, basis, nq, work);
+  for (let q = 0; q < nq; q++) {
     coefficients(map[MAP_STRIDE * q], map[MAP_STRIDE * q + 1], c);
+    const w = weights[q] * determinant(map, q);
     for (let i = 0; i < nd; i++) {
-      hx[2 * i] = c[0] * gx[i] + c[2] * gy[i];
-      hx[2 * i + 1] = c[1] * gx[i] + c[3] * gy[i];
-      hy[2 * i] = c[2] * gx[i] + c[4] * gy[i];
-      hy[2 * i + 1] = c[3] * gx[i] + c[5] * gy[i];
-    }
-    for (let j = 0; j < nd; j++) {
-      const wx = w * gx[j];
-      const wy = w * gy[j];
-      const mr = w * f[j] * c[6];
-      const mi = w * f[j] * c[7];
-      const col = 2 * j * nd;
-      for (let i = 0; i <= j; i++) {
-        const n = col + 2 * i;
-        k[n] = k[n] + wx * hx[2 * i] + wy * hy[2 * i];
-        k[n + 1] = k[n + 1] + wx * hx[2 * i + 1] + wy * hy[2 * i + 1];
-        m[n] = m[n] + mr * f[i];
-        m[n + 1] = m[n + 1] + mi * f[i];
-      }
+      const x = 2 * i * nq + q;
+      const y = x + nq;
+      const gx = w * gradients[x];
+      const gy = w * gradients[y];
+      const f = w * values[i * nq + q];
+      fluxRe[x] = c[0] * gx + c[2] * gy;
+      fluxIm[x] = c[1] * gx + c[3] * gy;
+      fluxRe[y] = c[2] * gx + c[4] * gy;
+      fluxIm[y] = c[3] * gx + c[5] * gy;
+      loadRe[i * nq + q] = c[6] * f;
+      loadIm[i * nq + q] = c[7] * f;
     }
   }
-  mirror(k, nd, 2);
-  mirror(m, nd, 2);
+  scatterGram(k, 2, 0, gramInto(sum, gradients, fluxRe, 2 * nq, nd), nd);
+  scatterGram(k, 2, 1, gramInto(sum, gradients, fluxIm, 2 * nq, nd), nd);
+  scatterGram(m, 2, 0, gramInto(sum, values, loadRe, nq, nd), nd);
+  scatterGram(m, 2, 1, gramInto(sum, values, loadIm, nq, nd), nd);
+}
+
+/**
+ * out[i + j nd] = Σ_s left[i·rows + s] right[j·rows + s] for i ≤ j (and the rest of the 4 × 2 blocks on the diagonal):
+ * eight sums in registers, every number loaded serves two or four of them.
+ */
+function gramInto(out: Float64Array, left: Float64Array, right: Float64Array, rows: number, nd: number): Float64Array {
+  const last = nd - 1;
+  for (let j = 0; j < nd; j += 2) {
+    const b0 = j * rows;
+    const b1 = Math.min(j + 1, last) * rows;
+    for (let i = 0; i <= Math.min(j + 1, last); i += 4) {
+      const a0 = i * rows;
+      const a1 = Math.min(i + 1, last) * rows;
+      const a2 = Math.min(i + 2, last) * rows;
+      const a3 = Math.min(i + 3, last) * rows;
+      let s00 = 0;
+      let s10 = 0;
+      let s20 = 0;
+      let s30 = 0;
+      let s01 = 0;
+      let s11 = 0;
+      let s21 = 0;
+      let s31 = 0;
+      for (let s = 0; s < rows; s++) {
+        const u = right[b0 + s];
+        const v = right[b1 + s];
+        const x0 = left[a0 + s];
+        const x1 = left[a1 + s];
+        const x2 = left[a2 + s];
+        const x3 = left[a3 + s];
+        s00 += x0 * u;
+        s10 += x1 * u;
+        s20 += x2 * u;
+        s30 += x3 * u;
+        s01 += x0 * v;
+        s11 += x1 * v;
+        s21 += x2 * v;
+        s31 += x3 * v;
+      }
+      const c0 = j * nd;
+      const c1 = Math.min(j + 1, last) * nd;
+      // where indices were clipped the same sum is written twice
+      out[c0 + i] = s00;
+      out[c1 + i] = s01;
+      out[c0 + Math.min(i + 1, last)] = s10;
+      out[c1 + Math.min(i + 1, last)] = s11;
+      out[c0 + Math.min(i + 2, last)] = s20;
+      out[c1 + Math.min(i + 2, last)] = s21;
+      out[c0 + Math.min(i + 3, last)] = s30;
+      out[c1 + Math.min(i + 3, last)] = s31;
+    }
+  }
+  return out;
+}
+
+/** Copies the upper triangle of the sums to both triangles of `a`, at stride `width` and an offset in the entry. */
+function scatterGram(a: Float64Array, width: 1 | 2, offset: 0 | 1, sums: Float64Array, nd: number): void {
+  for (let j = 0; j < nd; j++) {
+    for (let i = 0; i <= j; i++) {
+      a[width * (i + j * nd) + offset] = sums[i + j * nd];
+      a[width * (j + i * nd) + offset] = sums[i + j * nd];
+    }
+  }
 }
 
 /** Matrices of the reference triangle: ξξ, ξη+ηξ, ηη stiffness and mass. */
@@ -231,15 +305,6 @@ function scaleReference(
       const n = functions[j] * reference.nd + functions[i];
       k[j * nd + i] = g11 * reference.xx[n] + g12 * reference.xy[n] + g22 * reference.yy[n];
       m[j * nd + i] = det * reference.mass[n];
-    }
-  }
-}
-
-/** Copies the upper triangle (i ≤ j) below the diagonal; `width` 1 for real, 2 for complex entries. */
-function mirror(a: Float64Array, nd: number, width: 1 | 2): void {
-  for (let j = 0; j < nd; j++) {
-    for (let i = 0; i < j; i++) {
-      for (let c = 0; c < width; c++) a[width * (i * nd + j) + c] = a[width * (j * nd + i) + c]!;
     }
   }
 }
