@@ -27,10 +27,10 @@ export function arrangeShapes(shapes: readonly Shape[], names: readonly string[]
   const sources = sourcesOf(shapes);
   const pool = new VertexPool(tolerance);
   const parts = unify(cutAtMeetings(sources, pool, tolerance), tolerance);
-  const owned = parts.map((part) => ({ part, sides: sidesOf(part, sources, shapes.length, tolerance) }));
-  const cut: ArrangementEdge[] = owned
-    .filter(({ sides }) => sides[0] !== sides[1])
-    .map(({ part, sides }) => ({ piece: part.piece, from: part.from, to: part.to, left: sides[0], right: sides[1] }));
+  const sides = sidesOfAll(parts, (part) => sidesOf(part, sources, shapes.length, tolerance));
+  const cut: ArrangementEdge[] = parts
+    .map(({ piece, from, to }, i) => ({ piece, from, to, left: sides[i][0], right: sides[i][1] }))
+    .filter(({ left, right }) => left !== right);
   const sizes = shapes.map(sizeOf);
   refuseNarrowGaps(cut, sizes, names, tolerance);
   const { edges, notes } = healCusps(joinChains(cut), pool.coordinates, names);
@@ -171,6 +171,38 @@ function unify(parts: readonly Part[], tolerance: number): Part[] {
     kept.push(part);
   }
   return kept;
+}
+
+/** [left, right] of every part: found once a chain, since nothing changes where just two parts meet. */
+function sidesOfAll(parts: readonly Part[], find: (part: Part) => [number, number]): [number, number][] {
+  const atVertex = new Map<number, number[]>();
+  parts.forEach(({ from, to }, i) => {
+    for (const v of [from, to]) {
+      const touching = atVertex.get(v);
+      if (touching) touching.push(i);
+      else atVertex.set(v, [i]);
+    }
+  });
+  const sides: ([number, number] | undefined)[] = parts.map(() => undefined);
+  for (let first = 0; first < parts.length; first++) {
+    if (sides[first]) continue;
+    sides[first] = find(parts[first]);
+    const known = [first];
+    while (known.length > 0) {
+      const i = known.pop()!;
+      for (const v of [parts[i].from, parts[i].to]) {
+        const touching = atVertex.get(v)!;
+        if (touching.length !== 2) continue;
+        const j = touching[0] === i ? touching[1] : touching[0];
+        if (sides[j]) continue;
+        const onward = (parts[i].to === v) === (parts[j].from === v);
+        const [left, right] = sides[i]!;
+        sides[j] = onward ? [left, right] : [right, left];
+        known.push(j);
+      }
+    }
+  }
+  return sides as [number, number][];
 }
 
 /**

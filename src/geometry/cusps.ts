@@ -63,16 +63,13 @@ export function healCusps(
       const left = spokes[(at + 1) % spokes.length];
       const sides = [right.edge.right, left.edge.left];
       const filler = Math.max(...sides);
-      const bodies = [...new Set([...sides, right.edge.left].filter((label) => label >= 0))]
-        .sort((a, b) => b - a)
-        .slice(0, 2)
-        .map((label) => names[label]);
+      const bodies = ownersOf([right.edge, left.edge], names);
       const wide = NECK * Math.min(scaleOf(right.edge.piece), scaleOf(left.edge.piece));
       const cut = cutAt(right.edge, left.edge, wide);
       const width = cut ? cut.width : wide;
       if (!cut)
         throw new GeometryError(
-          `${quoted(bodies)} touch at (${place[0].toPrecision(8)}, ${place[1].toPrecision(8)}) and stay within ` +
+          `${touching(bodies)} at (${place[0].toPrecision(8)}, ${place[1].toPrecision(8)}) and stay within ` +
             `${width.toPrecision(2)} of each other on a stretch too long to be joined: move them apart, or let them overlap clearly.`,
           bodies,
           place,
@@ -104,7 +101,7 @@ export function healCusps(
       register(edges.length - 1);
       if (closed === 0)
         notes.push(
-          `${quoted(bodies)} touch at (${place[0].toPrecision(6)}, ${place[1].toPrecision(6)}): ` +
+          `${touching(bodies)} at (${place[0].toPrecision(6)}, ${place[1].toPrecision(6)}): ` +
             `joined by a neck ${width.toPrecision(2)} wide.`,
         );
     }
@@ -191,7 +188,7 @@ function checkConsistent(spokes: readonly Spoke[], place: Point, names: readonly
   spokes.forEach(({ edge }, i) => {
     const next = spokes[(i + 1) % spokes.length].edge;
     if (edge.left === next.right) return;
-    const bodies = [...new Set([edge.left, next.right].filter((label) => label >= 0))].map((label) => names[label]);
+    const bodies = ownersOf([edge, next], names);
     throw new GeometryError(
       `The outlines of ${quoted(bodies)} come so close near (${place[0].toPrecision(8)}, ${place[1].toPrecision(8)}) that ` +
         `inside and outside cannot be told apart; move them apart, or let them overlap clearly.`,
@@ -200,5 +197,12 @@ function checkConsistent(spokes: readonly Spoke[], place: Point, names: readonly
     );
   });
 }
+
+/** Whose outlines these are: of the two regions beside an edge the later one has drawn it. */
+const ownersOf = (edges: readonly ArrangementEdge[], names: readonly string[]): string[] =>
+  [...new Set(edges.map(({ left, right }) => Math.max(left, right)))].sort((a, b) => a - b).map((i) => names[i]);
+
+const touching = (bodies: readonly string[]): string =>
+  bodies.length === 1 ? `Outlines of ${quoted(bodies)} touch` : `${quoted(bodies)} touch`;
 
 const quoted = (bodies: readonly string[]): string => bodies.map((name) => `'${name}'`).join(' and ');

@@ -38,6 +38,7 @@ export class Draft {
   /** 1 where the vertex lies on a curve. */
   readonly onCurve: number[] = [];
   private readonly arrangement: Arrangement;
+  private readonly names: readonly string[];
   private readonly base: (label: number) => number;
   private stretch = 1;
   private readonly floor: number;
@@ -45,6 +46,7 @@ export class Draft {
 
   constructor(
     arrangement: Arrangement,
+    names: readonly string[],
     discretisation: Discretisation,
     base: (label: number) => number,
     center: Point,
@@ -52,6 +54,7 @@ export class Draft {
     limit: number,
   ) {
     this.arrangement = arrangement;
+    this.names = names;
     this.base = base;
     this.floor = 1e-8 * reach;
     this.limit = limit;
@@ -101,7 +104,10 @@ export class Draft {
         if (t.start[e] !== a || t.start[e + 1] !== b || t.start[e + 2] !== c) continue;
         if (this.mend(e / 3, large, slim, angle)) done++;
         if (t.x.length > this.limit)
-          throw this.failure(`more than ${this.limit} vertices would be needed`, [t.x[a], t.y[a]]);
+          throw this.failure(
+            `more than ${this.limit} vertices would be needed; a gap, a wall or a wanted size there is too small beside the rest`,
+            [t.x[a], t.y[a]],
+          );
       }
       // Only the front was served: its failures must not hide the rest.
       if (done === 0 && front.length > 0 && !sulking) {
@@ -538,7 +544,22 @@ export class Draft {
 
   private failure(what: string, place: Point): GeometryError {
     const where = `(${place[0].toPrecision(6)}, ${place[1].toPrecision(6)})`;
-    return new GeometryError(`Cannot mesh the drawing near ${where}: ${what}.`, [], place);
+    // Whose outline is nearest: the edges of the segments at the nearest vertices.
+    const { x, y } = this.triangulation;
+    let nearest: Segment | null = null;
+    let least = Infinity;
+    for (const s of this.segments ?? []) {
+      if (!s) continue;
+      const d = Math.min(
+        Math.hypot(x[s.a] - place[0], y[s.a] - place[1]),
+        Math.hypot(x[s.b] - place[0], y[s.b] - place[1]),
+      );
+      if (d < least) [nearest, least] = [s, d];
+    }
+    const edge = nearest ? this.arrangement.edges[(nearest).edge] : null;
+    const bodies = edge ? [this.names[Math.max(edge.left, edge.right)]] : [];
+    const beside = bodies.length > 0 ? `, beside '${bodies[0]}'` : '';
+    return new GeometryError(`Cannot mesh the drawing near ${where}${beside}: ${what}.`, bodies, place);
   }
 }
 

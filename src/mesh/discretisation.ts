@@ -48,12 +48,9 @@ export function discretise(arrangement: Arrangement, sizes: Sizes): Discretisati
     y.push(vertices[2 * v + 1]);
     size.push(Infinity);
   }
-  const corners = cornersOf(arrangement, sizes);
-  const wanted = (edge: ArrangementEdge, px: number, py: number): number => {
-    let h = Math.min(sizes.ofLabel(edge.left), sizes.ofLabel(edge.right));
-    for (const corner of corners) h = Math.min(h, corner.size + GROWTH * Math.hypot(px - corner.x, py - corner.y));
-    return h;
-  };
+  const near = nearCorners(cornersOf(arrangement, sizes));
+  const wanted = (edge: ArrangementEdge, px: number, py: number): number =>
+    Math.min(sizes.ofLabel(edge.left), sizes.ofLabel(edge.right), near(px, py));
   let segments: Segment[] = [];
   const tips = tipsOf(arrangement, (edge, px, py) => wanted(edge, px, py));
   edges.forEach((edge, index) => {
@@ -173,6 +170,30 @@ function returnOf(edge: ArrangementEdge, back: boolean, x: number, y: number): n
   return least;
 }
 
+/** Smallest of (corner size + growth × distance) at a point; of corners of one size only the nearest matters. */
+function nearCorners(corners: readonly { x: number; y: number; size: number }[]): (x: number, y: number) => number {
+  const bySize = new Map<number, { x: number; y: number }[]>();
+  for (const corner of corners) {
+    const list = bySize.get(corner.size);
+    if (list) list.push(corner);
+    else bySize.set(corner.size, [corner]);
+  }
+  const groups = [...bySize].map(([size, list]) => {
+    const index = new Flatbush(list.length);
+    for (const { x, y } of list) index.add(x, y, x, y);
+    index.finish();
+    return { size, list, index };
+  });
+  return (x, y) => {
+    let h = Infinity;
+    for (const { size, list, index } of groups) {
+      const { x: u, y: v } = list[index.neighbors(x, y, 1)[0]];
+      h = Math.min(h, size + GROWTH * Math.hypot(x - u, y - v));
+    }
+    return h;
+  };
+}
+
 /** True corners: a tangent jump of more than 5°, or where three or more edges meet. */
 function cornersOf({ vertices, edges }: Arrangement, sizes: Sizes): { x: number; y: number; size: number }[] {
   if (sizes.cornerGrading >= 1) return [];
@@ -211,7 +232,10 @@ function evenMarks(
 ): number[] {
   const { piece } = edge;
   const range = last - first;
-  const samples = 128;
+  // A line much shorter than its size needs no fine sampling.
+  const middle = pointAt(piece, (first + last) / 2);
+  const short = piece.kind === 'line' && lengthOf(piece) < 0.5 * wanted(...middle);
+  const samples = short ? 8 : 128;
   const cumulative = new Float64Array(samples + 1);
   for (let i = 0; i < samples; i++) {
     const s = first + (range * (i + 0.5)) / samples;

@@ -50,7 +50,7 @@ export function meshDeviceWithNotes(bodies: readonly Body[], plan: MeshPlan): Me
           : Infinity;
   const { cornerGrading, largestArc } = plan;
   const discretisation = discretise(arrangement, { ofLabel: base, cornerGrading, largestArc });
-  const draft = new Draft(arrangement, discretisation, base, center, endRadius, MOST_VERTICES);
+  const draft = new Draft(arrangement, names, discretisation, base, center, endRadius, MOST_VERTICES);
   for (const stretch of [1.1]) {
     draft.refine(24, stretch);
     draft.smooth(4);

@@ -79,7 +79,7 @@ test('crossing circles: four arcs less the covered one', () => {
 test('a touch becomes a neck, given to the later shape', () => {
   const { edges, notes } = arrange(disk([-1, 0], 1), disk([1, 0], 1));
   expect(notes).toHaveLength(1);
-  expect(notes[0]).toContain("'s1' and 's0' touch at (0.00000, ");
+  expect(notes[0]).toContain("'s0' and 's1' touch at (0.00000, ");
   const necks = edges.filter(({ piece }) => piece.kind === 'line');
   expect(necks).toHaveLength(2);
   for (const { piece, left, right } of necks) {
@@ -111,4 +111,9 @@ test('corners that meet corners and arcs', () => {
   expect(corner.vertices.length / 2).toBe(7);
   const onArc = arrange(disk([0, 0], 1), polygon([1, 0], [2, -1], [2, 1]));
   expect(onArc.vertices.length / 2).toBe(3);
+});
+
+test('outlines of one shape that touch', () => {
+  const { notes } = arrange([...disk([-1, 0], 1), ...disk([1, 0], 1)]);
+  expect(notes).toEqual([expect.stringContaining("Outlines of 's0' touch at (0.00000, ")]);
 });

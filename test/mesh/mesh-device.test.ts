@@ -165,7 +165,7 @@ describe('bodies that touch', () => {
     const { mesh, notes } = meshDeviceWithNotes(bodies, planFor(bodies));
     expectSound(mesh);
     expect(notes).toHaveLength(1);
-    expect(notes[0]).toMatch(/'right' and 'left' touch at \(.*\): joined by a neck 0.00050 wide/);
+    expect(notes[0]).toMatch(/'left' and 'right' touch at \(.*\): joined by a neck 0.00050 wide/);
     // The later disk grows by the joint: 2/3 x w at ± x, x² ≈ w r.
     const grown = areas(mesh).get(1)! - Math.PI / 4;
     expect(grown).toBeGreaterThan(0);
