@@ -160,7 +160,10 @@ function multiplyElements(
   return out;
 }
 
-/** sum += w B x for a symmetric element matrix B, real or complex. */
+/**
+ * sum += w B x for a symmetric element matrix B, real or complex. Row i of B is its column i: contiguous. Several rows
+ * at once, so that each number of x loaded serves them all.
+ */
 function addLocal(
   sum: Float64Array,
   B: Float64Array,
@@ -171,37 +174,76 @@ function addLocal(
   complexMatrix: boolean,
   flip: number,
 ): void {
-  for (let i = 0; i < nd; i++) {
-    // row i of a symmetric matrix is its column i: contiguous
-    let re = 0;
-    let im = 0;
-    if (complexMatrix) {
-      const row = 2 * i * nd;
-      let rr = 0;
-      let ii = 0;
-      let ri = 0;
-      let ir = 0;
-      for (let j = 0; j < 2 * nd; j += 2) {
-        const a = B[row + j];
-        const b = B[row + j + 1];
-        const c = x[j];
-        const d = x[j + 1];
-        rr += a * c;
-        ii += b * d;
-        ri += a * d;
-        ir += b * c;
-      }
-      re = rr - flip * ii;
-      im = ri + flip * ir;
-    } else {
-      const row = i * nd;
+  const last = nd - 1;
+  const put = (i: number, re: number, im: number): void => {
+    sum[2 * i] += wr * re - wi * im;
+    sum[2 * i + 1] += wr * im + wi * re;
+  };
+  if (!complexMatrix) {
+    for (let i = 0; i < nd; i += 4) {
+      const r0 = i * nd;
+      const r1 = Math.min(i + 1, last) * nd;
+      const r2 = Math.min(i + 2, last) * nd;
+      const r3 = Math.min(i + 3, last) * nd;
+      let re0 = 0;
+      let im0 = 0;
+      let re1 = 0;
+      let im1 = 0;
+      let re2 = 0;
+      let im2 = 0;
+      let re3 = 0;
+      let im3 = 0;
       for (let j = 0; j < nd; j++) {
-        const a = B[row + j];
-        re += a * x[2 * j];
-        im += a * x[2 * j + 1];
+        const xr = x[2 * j];
+        const xi = x[2 * j + 1];
+        const a0 = B[r0 + j];
+        const a1 = B[r1 + j];
+        const a2 = B[r2 + j];
+        const a3 = B[r3 + j];
+        re0 += a0 * xr;
+        im0 += a0 * xi;
+        re1 += a1 * xr;
+        im1 += a1 * xi;
+        re2 += a2 * xr;
+        im2 += a2 * xi;
+        re3 += a3 * xr;
+        im3 += a3 * xi;
       }
+      put(i, re0, im0);
+      if (i + 1 < nd) put(i + 1, re1, im1);
+      if (i + 2 < nd) put(i + 2, re2, im2);
+      if (i + 3 < nd) put(i + 3, re3, im3);
     }
-    sum[2 * i] = sum[2 * i] + wr * re - wi * im;
-    sum[2 * i + 1] = sum[2 * i + 1] + wr * im + wi * re;
+    return;
+  }
+  for (let i = 0; i < nd; i += 2) {
+    const r0 = 2 * i * nd;
+    const r1 = 2 * Math.min(i + 1, last) * nd;
+    let rr0 = 0;
+    let ii0 = 0;
+    let ri0 = 0;
+    let ir0 = 0;
+    let rr1 = 0;
+    let ii1 = 0;
+    let ri1 = 0;
+    let ir1 = 0;
+    for (let j = 0; j < 2 * nd; j += 2) {
+      const xr = x[j];
+      const xi = x[j + 1];
+      const a0 = B[r0 + j];
+      const b0 = B[r0 + j + 1];
+      const a1 = B[r1 + j];
+      const b1 = B[r1 + j + 1];
+      rr0 += a0 * xr;
+      ii0 += b0 * xi;
+      ri0 += a0 * xi;
+      ir0 += b0 * xr;
+      rr1 += a1 * xr;
+      ii1 += b1 * xi;
+      ri1 += a1 * xi;
+      ir1 += b1 * xr;
+    }
+    put(i, rr0 - flip * ii0, ri0 + flip * ir0);
+    if (i + 1 < nd) put(i + 1, rr1 - flip * ii1, ri1 + flip * ir1);
   }
 }
