@@ -2,7 +2,16 @@
 
 import { describe, expect, test } from 'vitest';
 
-import { figure, fullFigure, hertz, roundBelow, roundSteps, seconds, withError } from '../../viewer/page/numbers.ts';
+import {
+  figure,
+  fullFigure,
+  hertz,
+  roundBelow,
+  roundSteps,
+  seconds,
+  typeset,
+  withError,
+} from '../../viewer/page/numbers.ts';
 
 describe('figures', () => {
   test.each([
@@ -35,6 +44,13 @@ describe('figures', () => {
     const plain = (text: string): number => Number(text.replace('−', '-'));
     for (const value of [Math.PI, -1 / 3, 0.1 + 0.2, 123456789.123]) expect(plain(fullFigure(value))).toBe(value);
     expect(fullFigure(-2.5e-17)).toBe('−2.5 × 10⁻¹⁷');
+  });
+
+  test('a plain sentence is set as on paper', () => {
+    expect(typeset('At 1.6 um ± 3e-9 (k = -3.8 /um) with 29 /cm in body-2 e-beam')).toBe(
+      'At 1.6\u00a0µm\u00a0±\u00a03\u00a0×\u00a010⁻⁹ (k\u00a0=\u00a0−3.8\u00a0/µm) with 29\u00a0/cm in body-2 e-beam',
+    );
+    expect(typeset('3 modes, 5 more')).toBe('3 modes, 5 more');
   });
 
   test('seconds and hertz find their prefix', () => {

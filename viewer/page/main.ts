@@ -8,6 +8,7 @@ import { createFacts } from './facts.ts';
 import { createFeeds } from './feeds.ts';
 import { changeLimit, createLegend } from './legend.ts';
 import { createLevel } from './level.ts';
+import { typeset } from './numbers.ts';
 import { createPicture } from './picture.ts';
 import type { Picture } from './picture.ts';
 import { createReadout } from './readout.ts';
@@ -31,7 +32,7 @@ async function start(): Promise<void> {
   const run = await loadRun();
   const { record } = run;
   document.title = `${record.device.title}, ${record.command} · Wavewell`;
-  byId('sentence').textContent = unbroken(record.sentence);
+  byId('sentence').textContent = typeset(record.sentence);
   byId('subject').textContent = `${record.device.title} · ${record.command} · ${record.device.polarization}`;
   const tracks = await loadTracks(run);
   const store = createStore(firstState(run));
@@ -154,11 +155,6 @@ async function start(): Promise<void> {
     toDevice: picture.toDevice,
     readout: readout.shown,
   };
-}
-
-/** Numbers stay with their signs and units when the line breaks. */
-function unbroken(sentence: string): string {
-  return sentence.replace(/ (?=[=±×%])|(?<=[=±×]) |(?<=\d) (?=[µnmk/TG])/g, '\u00a0');
 }
 
 function firstState({ record }: PageRun): State {

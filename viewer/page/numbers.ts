@@ -87,6 +87,21 @@ export function roundBelow(bound: number): number {
   return power * (lead >= 5 ? 5 : lead >= 2 ? 2 : 1);
 }
 
+/**
+ * A plain-text sentence as it is printed on paper: powers of ten raised, µm, true minus signs before numbers, and no line
+ * break between a number and its sign or unit.
+ */
+export function typeset(sentence: string): string {
+  return sentence
+    .replace(
+      /(\d)e([+-]?\d+)/g,
+      (_, digit: string, exponent: string) => `${digit} × 10${superscript(Number(exponent))}`,
+    )
+    .replace(/(?<=[\d /])um\b/g, 'µm')
+    .replace(/(?<=^|[\s(])-(?=\d)/g, MINUS)
+    .replace(/ (?=[=±×%∠])|(?<=[=±×∠]) |(?<=\d) (?=\/|(?:[µnmck]?m|[kMGTP]?Hz|[mk]?eV)(?![a-z]))/g, '\u00a0');
+}
+
 /** "−10⁻⁶" for a whole power of ten. */
 export function decadeText(value: number): string {
   const exponent = Math.round(Math.log10(Math.abs(value)));

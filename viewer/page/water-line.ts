@@ -79,12 +79,14 @@ export function createWaterLine(
       ...ticks.map(({ im, text }) => depthTick(yOf(im), text)),
       svg('line', { class: 'surface', x1: 0, x2: width, y1: surface, y2: surface }),
     );
+    const above = depth.up === 0;
     const { kMin, kMax } = record.device.band;
     for (const k of [kMin, kMax]) {
       const x = xOf(k);
-      layers.depth.append(svg('line', { class: 'limit', x1: x, x2: x, y1: surface - 9, y2: surface + 9 }));
+      // Not into the texts beside the surface.
+      const [y1, y2] = [surface - (above ? 0 : 9), surface + (depth.down === 0 ? 0 : 9)];
+      layers.depth.append(svg('line', { class: 'limit', x1: x, x2: x, y1, y2 }));
     }
-    const above = depth.up === 0;
     const labelY = above ? surface - 9 : depth.down === 0 ? surface + 18 : height - 6;
     const title = svg('text', { class: 'tick-text halo', x: 12, y: labelY }, scale.title);
     layers.depth.append(title);
@@ -117,8 +119,7 @@ export function createWaterLine(
     layers.crossings.replaceChildren();
     for (const { mark, ks } of tracks) {
       if (ks && ks.length > 2) {
-        const points = [];
-        for (let i = 0; i < ks.length; i += 2) points.push(`${xOf(ks[i]).toFixed(2)},${yOf(ks[i + 1]).toFixed(2)}`);
+        const points = finely(ks).map(([re, im]) => `${xOf(re).toFixed(2)},${yOf(im).toFixed(2)}`);
         layers.paths.append(svg('polyline', { class: 'path', points: points.join(' '), 'data-mark': mark.id }));
       }
       if (!mark.crossing) continue;
@@ -283,6 +284,19 @@ export function createWaterLine(
       return x < 0 || x > place.width ? null : [box.left + x, box.top + yOf(k[1])];
     },
   };
+}
+
+/** A path with points between the stored ones: straight in k it is bent where depth is not linear. */
+function finely(ks: Float64Array): Pair[] {
+  const between = 12;
+  const out: Pair[] = [];
+  for (let i = 0; i + 3 < ks.length; i += 2)
+    for (let j = 0; j < between; j++) {
+      const f = j / between;
+      out.push([ks[i] + f * (ks[i + 2] - ks[i]), ks[i + 1] + f * (ks[i + 3] - ks[i + 1])]);
+    }
+  out.push([ks[ks.length - 2], ks[ks.length - 1]]);
+  return out;
 }
 
 /** What stands beside a mark: its label and how many modes it stands for. */
