@@ -277,10 +277,20 @@ export class Draft {
     return slim ? { key: 1 / sine, large: false, slim } : null;
   }
 
+  /** Size wanted in triangle i: the mean of its vertices' sizes, or what has grown from all of them to its middle. */
   private wantedIn(i: number): number {
-    const { start, region } = this.triangulation;
+    const { x, y, start, region } = this.triangulation;
     const { size } = this;
-    return Math.min(this.base(region[i]), (size[start[3 * i]] + size[start[3 * i + 1]] + size[start[3 * i + 2]]) / 3);
+    const [a, b, c] = [start[3 * i], start[3 * i + 1], start[3 * i + 2]];
+    const mx = (x[a] + x[b] + x[c]) / 3;
+    const my = (y[a] + y[b] + y[c]) / 3;
+    // In an even triangle the middle lies about 0.6 sizes away: growth counts from there.
+    const grown = (v: number): number => {
+      const d = Math.sqrt((x[v] - mx) ** 2 + (y[v] - my) ** 2);
+      return size[v] + GROWTH * Math.max(0, d - 0.6 * size[v]);
+    };
+    const mean = (size[a] + size[b] + size[c]) / 3;
+    return Math.min(this.base(region[i]), Math.max(mean, Math.min(grown(a), grown(b), grown(c))));
   }
 
   /** Whether two sides of the triangle are fixed segments: the tip of a sharp corner. */
@@ -322,11 +332,18 @@ export class Draft {
     if (fixed) return false;
     const { x, y } = this.triangulation;
     const length = Math.hypot(x[a] - x[b], y[a] - y[b]);
-    const wanted = Math.min(this.base(label), (this.size[a] + this.size[b]) / 2);
+    const wanted = Math.min(this.base(label), this.sizeBetween(a, b, length));
     if (!slim && length < 1.15 * wanted) return false;
     if (length < this.floor) return false;
     this.split(segment);
     return true;
+  }
+
+  /** Size wanted in the middle between two vertices. */
+  private sizeBetween(a: number, b: number, length: number): number {
+    const { size } = this;
+    const least = Math.min(size[a], size[b]);
+    return Math.max((size[a] + size[b]) / 2, least + GROWTH * Math.max(0, length / 2 - 0.6 * least));
   }
 
   /** Splits a segment on its true curve, and then every segment that sees a vertex inside its 120° lens. */
@@ -340,7 +357,7 @@ export class Draft {
     const v = t.insert(px, py, Math.floor(t.spoke[a] / 3));
     if (v < before) throw this.failure('a segment cannot be split', [px, py]);
     const length = Math.hypot(t.x[a] - t.x[b], t.y[a] - t.y[b]);
-    const size = Math.min(1.5 * (length / 2), (this.size[a] + this.size[b]) / 2);
+    const size = Math.min(1.5 * (length / 2), this.sizeBetween(a, b, length));
     this.size.push(size);
     this.size[a] = Math.min(this.size[a], 1.5 * size);
     this.size[b] = Math.min(this.size[b], 1.5 * size);
@@ -556,7 +573,7 @@ export class Draft {
       );
       if (d < least) [nearest, least] = [s, d];
     }
-    const edge = nearest ? this.arrangement.edges[(nearest).edge] : null;
+    const edge = nearest ? this.arrangement.edges[nearest.edge] : null;
     const bodies = edge ? [this.names[Math.max(edge.left, edge.right)]] : [];
     const beside = bodies.length > 0 ? `, beside '${bodies[0]}'` : '';
     return new GeometryError(`Cannot mesh the drawing near ${where}${beside}: ${what}.`, bodies, place);
