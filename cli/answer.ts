@@ -23,12 +23,21 @@ const MOST_ROWS = 40;
 /** Prints the run as people or scripts want it, and returns the exit code. */
 export function printAnswer(asked: Asked, json: boolean): number {
   const { record } = asked.run;
-  if (json) sayJson({ ...record.answer, run: asked.folder });
-  else printOnPaper(asked);
+  if (json) {
+    sayJson({ ...record.answer, run: asked.folder });
+    return answerCode(record);
+  }
+  printStory(asked);
+  sayFacts([
+    ['look', `npx wavewell view ${quoted(asked.folder)}`],
+    ['take', `npx wavewell export ${quoted(asked.folder)}`],
+  ]);
+  sayCautions(record.cautions);
   return answerCode(record);
 }
 
-function printOnPaper({ run, folder, reused }: Asked): void {
+/** Sentence, table, proof, and where the run is; the cautions are left to the caller. */
+export function printStory({ run, folder, reused }: Asked): void {
   const { record } = run;
   say(ink.bold(record.sentence));
   for (const note of record.answer['notes'] as readonly string[]) say(ink.dim(`Note: ${note}`));
@@ -38,12 +47,7 @@ function printOnPaper({ run, folder, reused }: Asked): void {
   if (crossings && crossings.length > 0) printCrossings(record, crossings);
   printDoubts(record);
   say();
-  sayFacts([
-    ['run', reused ? `${folder}  (read back: same file, same options; --again computes anew)` : folder],
-    ['look', `npx wavewell view ${quoted(folder)}`],
-    ['take', `npx wavewell export ${quoted(folder)}`],
-  ]);
-  sayCautions(record.cautions);
+  sayFacts([['run ', reused ? `${folder}  (read back: same file, same options; --again computes anew)` : folder]]);
 }
 
 /** Found, searched to the end, with the digits asked for. */

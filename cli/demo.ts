@@ -3,14 +3,14 @@
 import type { Command } from 'commander';
 import { readdirSync } from 'node:fs';
 import { basename, join } from 'node:path';
-import { DEFAULT_Q_MIN, deviceFigure, fieldFigure, nearestName, planeFigure } from '../src/index.ts';
-import { printAnswer } from './answer.ts';
+import { DEFAULT_Q_MIN, deviceFigure, nearestName } from '../src/index.ts';
+import { answerCode, printStory, quoted } from './answer.ts';
 import { ask, shown } from './ask.ts';
 import { openDevice } from './device-file.ts';
 import { NOT_FOUND } from './exit-codes.ts';
-import { exportFiles } from './export.ts';
+import { exportFiles, readFirstFile } from './export.ts';
 import { InputError } from './faults.ts';
-import { ink, say, sayFacts } from './paper.ts';
+import { ink, say, sayCautions, sayFacts } from './paper.ts';
 import { pictureFiles } from './pictures.ts';
 import { commonSettings } from './settings.ts';
 import { packageFolder } from './version.ts';
@@ -50,7 +50,8 @@ async function runDemo(name: string, options: { out?: string; again?: true }): P
   let code = 0;
   const tell = (title: string, asked: Awaited<ReturnType<typeof ask>>): void => {
     say(ink.dim(`── ${title}`));
-    code = Math.max(code, printAnswer(asked, false));
+    printStory(asked);
+    code = Math.max(code, answerCode(asked.run.record));
     say();
   };
   const modes = await ask('modes', file, { ...settings, assignment: 'poles', qMin: DEFAULT_Q_MIN }, place);
@@ -62,35 +63,23 @@ async function runDemo(name: string, options: { out?: string; again?: true }): P
 
   const out = join(place.base, name, 'story');
   const files = { ...pictureFiles(out, 'device', deviceFigure(file.device)) };
-  for (const { run } of [modes, threshold, absorb]) Object.assign(files, exportFiles(run, out, {}));
-  const lasing = threshold.run.record.fields[0];
-  const taking = absorb.run.record.fields[0];
-  if (lasing) {
-    Object.assign(files, exportFiles(threshold.run, out, { field: lasing.id, nodes: true }));
-    Object.assign(files, pictureFiles(out, `field-${lasing.id}`, fieldFigure(threshold.run, lasing.id)));
+  for (const { run } of [modes, threshold, absorb]) {
+    const folder = join(out, run.record.command);
+    const [field] = run.record.fields;
+    Object.assign(files, exportFiles(run, folder, {}), readFirstFile(run, folder));
+    if (field) Object.assign(files, exportFiles(run, folder, { field: field.id, nodes: true, picture: true }));
   }
-  if (taking) Object.assign(files, pictureFiles(out, `field-${taking.id}`, fieldFigure(absorb.run, taking.id)));
-  Object.assign(files, pictureFiles(out, 'plane', planeFigure(threshold.run)));
   writeFiles(files);
   say(ink.dim('── 4. Take it away'));
   say(ink.bold(`Tables (CSV) and pictures (SVG, PNG) are in ${shown(out)}.`));
+  for (const path of Object.keys(files).filter((f) => /\.(csv|png)$/.test(f))) say(`  ${shown(path)}`);
+  say();
   sayFacts([
-    [
-      'CSV',
-      Object.keys(files)
-        .filter((f) => f.endsWith('.csv'))
-        .map((f) => basename(f))
-        .join(', '),
-    ],
-    [
-      'pictures',
-      Object.keys(files)
-        .filter((f) => f.endsWith('.png'))
-        .map((f) => basename(f))
-        .join(', '),
-    ],
-    ['see it move', `npx wavewell view ${threshold.folder}`],
-    ['its twin', `npx wavewell view ${absorb.folder}`],
+    ['see it lase', `npx wavewell view ${quoted(threshold.folder)}`],
+    ['see its twin', `npx wavewell view ${quoted(absorb.folder)}`],
   ]);
+  const cautions = [...new Set([threshold, absorb].flatMap(({ run }) => run.record.cautions))];
+  // One that another holds within it needs no line of its own.
+  sayCautions(cautions.filter((c) => !cautions.some((other) => other !== c && other.includes(c))));
   process.exitCode = code === 0 ? 0 : NOT_FOUND;
 }

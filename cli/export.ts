@@ -66,7 +66,7 @@ export function addExport(program: Command): void {
       const run = readRun(folder);
       const { record } = run;
       const out = options.out ?? join(folder, 'csv');
-      const files = { ...exportFiles(run, out, options), [join(out, READ_FIRST_NAME)]: readFirstText(record) };
+      const files = { ...exportFiles(run, out, options), ...readFirstFile(run, out) };
       writeFiles(files);
       const names = Object.keys(files).map(shown);
       const cautions = record.cautions.length > 0 ? record.cautions : cautionsFor('drive', record.device);
@@ -78,6 +78,11 @@ export function addExport(program: Command): void {
       sayCautions(cautions);
     });
 }
+
+/** CSV has no comments: the cautions and meanings stand beside it. */
+export const readFirstFile = ({ record }: LoadedRun, out: string): Record<string, string> => ({
+  [join(out, READ_FIRST_NAME)]: readFirstText(record),
+});
 
 /** Path → text of everything that is asked for; throws before anything is written. */
 export function exportFiles(run: LoadedRun, out: string, options: ExportOptions): Record<string, string | Uint8Array> {
