@@ -6,11 +6,12 @@ import { planFronts } from './fronts.ts';
 import { findIncidence } from './incidence.ts';
 import type { FrontKernels } from './kernels/kernels.ts';
 import { makeTwinKernels } from './kernels/twin.ts';
+import { factorTogether, findThreads, makeSession } from './threads.ts';
 import { loadWasmKernels } from './kernels/wasm-kernels.ts';
 import type { Analysis, ElementFill, ElementPattern, Factorization } from './pattern.ts';
 
 export interface AnalysisChoice {
-  /** Compiled kernels where there are any, else their twin in TypeScript. */
+  /** By default the compiled ones where there are any, else their twin; with the threads of startThreads. */
   readonly kernels?: FrontKernels;
 }
 
@@ -23,15 +24,20 @@ export interface AnalysisChoice {
  * const factorization = analysis.factorize((element, into) => into.set([2, 0, 1, 0, 1, 0, 2, 0]));
  * const x = factorization.solveInto(new Float64Array(4), Float64Array.of(3, 0, 3, 0), 1); // [1, 0, 1, 0]
  */
-export function analyse(pattern: ElementPattern, { kernels = sharedKernels() }: AnalysisChoice = {}): Analysis {
+export function analyse(pattern: ElementPattern, { kernels }: AnalysisChoice = {}): Analysis {
   const incidence = findIncidence(pattern);
   const fronts = planFronts(pattern, incidence, dissect(pattern, incidence));
   const plan = planMemory(pattern, fronts);
   const spare = makeSparePanels();
+  const session = makeSession();
   return {
     pattern,
     factorize(fill: ElementFill): Factorization {
-      return factorFronts(pattern, fronts, plan, kernels, fill, spare);
+      const team = kernels === undefined ? findThreads() : undefined;
+      if (team === undefined) return factorFronts(pattern, fronts, plan, kernels ?? sharedKernels(), fill, spare);
+      return factorFronts(pattern, fronts, plan, team.shared.kernels, fill, spare, () =>
+        factorTogether(pattern, fronts, plan, team, session, fill, spare),
+      );
     },
   };
 }

@@ -2,8 +2,9 @@
 
 import type { ComplexArray } from '../numerics/complex.ts';
 import { summarize, type Factors } from './factors.ts';
+import { layArena, SMALLEST, TINY } from './front-work.ts';
 import type { Fronts } from './fronts.ts';
-import { MOST_DELAYED, workNumbers, type FrontKernels } from './kernels/kernels.ts';
+import { MOST_DELAYED, type FrontKernels } from './kernels/kernels.ts';
 import type { ElementFill, ElementPattern, Factorization } from './pattern.ts';
 import { solveFronts } from './solve.ts';
 
@@ -47,7 +48,8 @@ export function planMemory(pattern: ElementPattern, fronts: Fronts): MemoryPlan 
 
 /** Memory of released factorizations of one plan, for the next ones: touching new memory costs as much as factoring. */
 export interface SparePanels {
-  take(): Float64Array | undefined;
+  /** `shared`: only memory that several threads see. */
+  take(shared?: boolean): Float64Array | undefined;
   give(panels: Float64Array): void;
 }
 
@@ -55,19 +57,22 @@ export interface SparePanels {
 const MOST_SPARE = 2;
 
 export function makeSparePanels(): SparePanels {
-  const held: Float64Array[] = [];
+  let held: Float64Array[] = [];
   return {
-    take: () => held.pop(),
+    take(shared = false): Float64Array | undefined {
+      const found = held.find((p) => !shared || !(p.buffer instanceof ArrayBuffer));
+      held = held.filter((p) => p !== found);
+      return found;
+    },
     give(panels): void {
       if (held.length < MOST_SPARE) held.push(panels);
     },
   };
 }
 
-/** Pivots that must be replaced get this multiple of the largest diagonal entry in their subtree: a rounding error. */
-const TINY = 2 ** -52;
-
-/** Numeric LDLᵀ, one front after the other, contributions on a stack. */
+/**
+ * Numeric LDLᵀ, one front after the other, contributions on a stack; `together` may try it first with several threads.
+ */
 export function factorFronts(
   pattern: ElementPattern,
   fronts: Fronts,
@@ -75,9 +80,10 @@ export function factorFronts(
   kernels: FrontKernels,
   fill: ElementFill,
   spare: SparePanels,
+  together?: () => Factors | undefined,
 ): Factorization {
   let room: Room = { front: plan.largestFront, stack: plan.stack };
-  let factors = eliminate(pattern, fronts, plan, kernels, fill, spare, room);
+  let factors = together?.() ?? eliminate(pattern, fronts, plan, kernels, fill, spare, room);
   while (factors === undefined) {
     // Rows that were passed on made a front larger than planned: once more with more room.
     room = { front: 2 * room.front + MOST_DELAYED, stack: 2 * room.stack + 8 * MOST_DELAYED * room.front };
@@ -117,14 +123,8 @@ function eliminate(
 ): Factors | undefined {
   const { count, parent, pivotStarts, boundaryStarts, boundary, childStarts, children, boundaryInParent } = fronts;
   const { elementStarts, elements, listInFront } = fronts;
-  // Memory: integers for one map and one permutation, inverse pivots, an element, work, then the stack.
-  const integers = Math.max(room.front, plan.largestElement) + 8;
-  const mapAt = 2 * kernels.base;
-  const permAt = mapAt + integers;
-  const pivotsAt = kernels.base + integers + 4;
-  const elementAt = pivotsAt + 4 * room.front + 8;
-  const workAt = elementAt + 2 * plan.largestElement * plan.largestElement;
-  const stackAt = workAt + workNumbers(room.front);
+  const arena = layArena(kernels.base, room.front, plan.largestElement);
+  const { map: mapAt, perm: permAt, pivots: pivotsAt, element: elementAt, work: workAt, stack: stackAt } = arena;
   kernels.reserve(stackAt + room.stack + 64);
   const m = kernels.numbers;
   const ints = kernels.integers;
@@ -259,6 +259,3 @@ function eliminate(
     return -1;
   }
 }
-
-/** Replaces a pivot where everything is zero. */
-const SMALLEST = 1e-280;

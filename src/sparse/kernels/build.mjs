@@ -12,12 +12,12 @@ mkdirSync(into, { recursive: true });
 const common = ['--optimizeLevel', '3', '--shrinkLevel', '0', '--noAssert', '--runtime', 'stub'];
 const memory = ['--importMemory', '--memoryBase', '4096', '--enable', 'simd', '--enable', 'bulk-memory'];
 const builds = [
-  ['front.wasm', ['--initialMemory', '1', '--maximumMemory', '65536']],
+  ['front.ts', 'front.wasm', ['--initialMemory', '1', '--maximumMemory', '65536']],
   // prettier-ignore
-  ['front-shared.wasm', ['--enable', 'threads', '--sharedMemory', '--initialMemory', '1', '--maximumMemory', '65536']],
+  ['front-shared.ts', 'front-shared.wasm', ['--enable', 'threads', '--sharedMemory', '--initialMemory', '1', '--maximumMemory', '65536']],
 ];
-for (const [name, more] of builds) {
-  const source = join(here, 'wasm', 'front.ts');
+for (const [entry, name, more] of builds) {
+  const source = join(here, 'wasm', entry);
   const { error, stderr } = await asc.main([source, '--outFile', join(into, name), ...common, ...memory, ...more]);
   if (error) {
     process.stderr.write(`${stderr.toString()}\n${error.message}\n`);

@@ -69,13 +69,63 @@ interface FrontExports {
 /** Bytes that the module itself uses at the start of its memory. */
 const RESERVED = 16384;
 const PAGE = 65536;
+const MOST_PAGES = 65536;
+/** Bytes where the edge tiles of the threads lie, and the epoch of shared tasks (wasm/share.ts). */
+const TILES = 8192;
+const EPOCH = 2048;
+/** Edge tiles fit for this many threads. */
+export const MOST_THREADS = 32;
 
 /** Kernels with a memory of their own; undefined where front.wasm was not built or SIMD is missing. */
 export function loadWasmKernels(): FrontKernels | undefined {
   const module = compile('front.wasm');
   if (module === undefined) return undefined;
-  const memory = new WebAssembly.Memory({ initial: 16, maximum: 65536 });
-  return bindKernels(module, memory);
+  const memory = new WebAssembly.Memory({ initial: 16, maximum: MOST_PAGES });
+  return bindKernels(new WebAssembly.Instance(module, { env: { memory, abort } }), memory);
+}
+
+/** Kernels that several threads run on one memory. */
+export interface SharedKernels {
+  readonly module: WebAssembly.Module;
+  readonly memory: WebAssembly.Memory;
+  readonly kernels: FrontKernels;
+  /** Whether large fronts are offered to helping threads. */
+  setSharing(on: boolean): void;
+  /** Works on what other threads offer until they stop it. */
+  help(epoch: number): void;
+  /** Word of `integers` that holds the epoch `help` starts from. */
+  readonly epochAt: number;
+  /** true: all `help` calls return; false: they may be entered again. */
+  stopHelp(stop: boolean): void;
+}
+
+/** undefined where shared memory is not allowed, front-shared.wasm was not built, or SIMD is missing. */
+export function loadSharedKernels(): SharedKernels | undefined {
+  if (typeof SharedArrayBuffer === 'undefined') return undefined;
+  const module = compile('front-shared.wasm');
+  if (module === undefined) return undefined;
+  return bindShared(module, new WebAssembly.Memory({ initial: 16, maximum: MOST_PAGES, shared: true }), 0);
+}
+
+/** The same kernels in thread number `thread` (0: the first). */
+export function bindShared(module: WebAssembly.Module, memory: WebAssembly.Memory, thread: number): SharedKernels {
+  const instance = new WebAssembly.Instance(module, { env: { memory, abort } });
+  const wasm = instance.exports as unknown as {
+    readonly setSharing: (on: number) => void;
+    readonly help: (epoch: number) => void;
+    readonly stopHelp: (stop: number) => void;
+    readonly setTile: (at: number) => void;
+  };
+  wasm.setTile(TILES + 256 * thread);
+  return {
+    module,
+    memory,
+    kernels: bindKernels(instance, memory),
+    setSharing: (on) => wasm.setSharing(on ? 1 : 0),
+    help: (epoch) => wasm.help(epoch),
+    epochAt: EPOCH / 4,
+    stopHelp: (stop) => wasm.stopHelp(stop ? 1 : 0),
+  };
 }
 
 function compile(name: string): WebAssembly.Module | undefined {
@@ -86,9 +136,8 @@ function compile(name: string): WebAssembly.Module | undefined {
   }
 }
 
-function bindKernels(module: WebAssembly.Module, memory: WebAssembly.Memory): FrontKernels {
-  const { exports } = new WebAssembly.Instance(module, { env: { memory, abort } });
-  const wasm = exports as unknown as FrontExports;
+function bindKernels(instance: WebAssembly.Instance, memory: WebAssembly.Memory): FrontKernels {
+  const wasm = instance.exports as unknown as FrontExports;
   let numbers = new Float64Array(memory.buffer);
   let integers = new Int32Array(memory.buffer);
   return {
@@ -102,8 +151,9 @@ function bindKernels(module: WebAssembly.Module, memory: WebAssembly.Memory): Fr
     },
     reserve(count: number): void {
       const missing = 8 * count - memory.buffer.byteLength;
-      if (missing <= 0) return;
-      memory.grow(Math.ceil(missing / PAGE));
+      if (missing > 0) memory.grow(Math.ceil(missing / PAGE));
+      // Another thread may have made it grow.
+      if (numbers.buffer === memory.buffer) return;
       numbers = new Float64Array(memory.buffer);
       integers = new Int32Array(memory.buffer);
     },

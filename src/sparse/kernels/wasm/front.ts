@@ -4,7 +4,8 @@
 // ../twin.ts in exact arithmetic; sums are grouped differently.
 
 import { exchange, factorDiagonal, measureColumns } from './diagonal';
-import { clearTile, updateTile } from './tile';
+import { share, SHARED_SLABS, sharing } from './share';
+import { clearTile, tileAt, updateTile } from './tile';
 
 /** Columns eliminated together. */
 const PANEL: i32 = 48;
@@ -182,18 +183,12 @@ export function factorFront(
       const w = work + ((<usize>((width + 1) * (width + 1))) << 4);
       const l = w + <usize>slabs * stride;
       packTriangle(p + ((<usize>(first * nf + first)) << 3), ld, plane, width, done - first, work);
-      for (let slab = 0; slab < slabs; slab++) {
-        const row = last + 4 * slab;
-        const height = min(4, nf - row);
-        const ws = w + <usize>slab * stride;
-        const ls = l + <usize>slab * stride;
-        const from = p + ((<usize>(first * nf + row)) << 3);
-        packSlab(from, ld, plane, width, height, ws);
-        solveSlab(ws, work, width);
-        scaleSlab(ws, ls, d + ((<usize>first) << 5), done - first, width);
-        unpackSlab(from, ld, plane, width, height, ls);
+      if (ASC_FEATURE_THREADS && sharing && slabs >= SHARED_SLABS) {
+        share(p, s, nf, np, first, last, done, d, work, w, l, slabs, stride);
+      } else {
+        belowSlabs(p, nf, np, first, last, done, d, work, w, l, stride, 0, slabs);
+        updateTrailing(p, s, nf, np, last, done - first, w, l, slabs, stride);
       }
-      updateTrailing(p, s, nf, np, last, done - first, w, l, slabs, stride);
     }
     for (let j = last - 1; j >= done; j--) {
       limit--;
@@ -201,6 +196,38 @@ export function factorFront(
     }
   }
   return done;
+}
+
+/** Slabs of rows below the panel: A ← W, W and L = W D⁻¹ kept as slabs, L back into the panel. */
+export function belowSlabs(
+  p: usize,
+  nf: i32,
+  np: i32,
+  first: i32,
+  last: i32,
+  done: i32,
+  d: usize,
+  triangle: usize,
+  w: usize,
+  l: usize,
+  stride: usize,
+  firstSlab: i32,
+  endSlab: i32,
+): void {
+  const plane = (<usize>(nf * np)) << 3;
+  const ld = (<usize>nf) << 3;
+  const width = last - first;
+  for (let slab = firstSlab; slab < endSlab; slab++) {
+    const row = last + 4 * slab;
+    const height = min(4, nf - row);
+    const ws = w + <usize>slab * stride;
+    const ls = l + <usize>slab * stride;
+    const from = p + ((<usize>(first * nf + row)) << 3);
+    packSlab(from, ld, plane, width, height, ws);
+    solveSlab(ws, triangle, width);
+    scaleSlab(ws, ls, d + ((<usize>first) << 5), done - first, width);
+    unpackSlab(from, ld, plane, width, height, ls);
+  }
 }
 
 /**
@@ -445,7 +472,7 @@ export function updateColumns(
     }
     // A tile over an edge goes through a full one.
     clearTile();
-    updateTile(TILE, 32, 128, ls, ws, width);
+    updateTile(tileAt, 32, 128, ls, ws, width);
     for (let b = 0; b < 4; b++) {
       const c = column + b;
       if (c >= nf) break;
@@ -462,16 +489,13 @@ export function updateColumns(
         const r = row + a;
         if (r < c || r >= nf) continue;
         const at = to + ((<usize>r) << 3);
-        const from = TILE + ((<usize>(4 * b + a)) << 3);
+        const from = tileAt + ((<usize>(4 * b + a)) << 3);
         store<f64>(at, load<f64>(at) + load<f64>(from));
         store<f64>(at + step, load<f64>(at + step) + load<f64>(from, 128));
       }
     }
   }
 }
-
-/** 4 × 4 complex scratch tile at the start of the memory. */
-const TILE: usize = 64;
 
 export * from './solve';
 export * from './solve-one';

@@ -1,9 +1,14 @@
 // The inner product that does nearly all the arithmetic: a 4 × 4 tile of C −= L Wᵀ.
 
-const TILE: usize = 64;
+/** A 4 × 4 complex tile for edges; each thread has its own. */
+export let tileAt: usize = 64;
+
+export function setTile(at: usize): void {
+  tileAt = at;
+}
 
 export function clearTile(): void {
-  memory.fill(TILE, 0, 256);
+  memory.fill(tileAt, 0, 256);
 }
 
 /**
