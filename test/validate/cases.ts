@@ -52,8 +52,17 @@ const disks: {
 
 const layered: {
   readonly structures: Readonly<Record<string, Layers>>;
-  readonly poles: readonly { readonly name: string; readonly pol: Polarization; readonly m: number; readonly k: readonly Pair[] }[];
-  readonly thresholds: readonly (Threshold & { readonly name: string; readonly m: number; readonly pumped: readonly number[] })[];
+  readonly poles: readonly {
+    readonly name: string;
+    readonly pol: Polarization;
+    readonly m: number;
+    readonly k: readonly Pair[];
+  }[];
+  readonly thresholds: readonly (Threshold & {
+    readonly name: string;
+    readonly m: number;
+    readonly pumped: readonly number[];
+  })[];
 } = load('layered-modes');
 
 const clusters: {
@@ -73,6 +82,7 @@ const OCTAVES: readonly Pair[] = [
   [0.25, 0.5],
   [0.5, 1],
   [1, 2],
+  [2, 2.5],
   [2.5, 5],
   [5, 10],
   [10, 20],
@@ -116,7 +126,11 @@ function diskPoles(): Case[] {
         const long = band[1] * n > 16;
         out.push(
           { id: `disk poles ${place} digits 5`, long, rows: () => modeRows({ ...common, digits: 5 }) },
-          { id: `disk poles zeros ${place} digits 8`, long, rows: () => conjugateRows({ ...common, digits: 8 }, LOSSLESS_PAIR) },
+          {
+            id: `disk poles zeros ${place} digits 8`,
+            long,
+            rows: () => conjugateRows({ ...common, digits: 8 }, LOSSLESS_PAIR),
+          },
         );
       }
     }
@@ -125,7 +139,11 @@ function diskPoles(): Case[] {
 }
 
 /** Poles of the table with Q ≥ 2 in the band, and where the table is complete. */
-function diskModes(n: number, pol: Polarization, band: Pair): { exact: ExactMode[]; complete: (m: { label: string }) => boolean } {
+function diskModes(
+  n: number,
+  pol: Polarization,
+  band: Pair,
+): { exact: ExactMode[]; complete: (m: { label: string }) => boolean } {
   const exact: ExactMode[] = [];
   const known = new Set<string>();
   for (const entry of disks.poles) {
@@ -154,9 +172,12 @@ function diskScaling(): Case[] {
       {
         id: `disk poles in background ${OUTSIDE} ${pol} digits 8`,
         long: false,
-        rows: () => modeRows({ device: diskDevice(2 * OUTSIDE, setting), exact: scaled, digits: 8, qMin: disks.lowQ, complete }),
+        rows: () =>
+          modeRows({ device: diskDevice(2 * OUTSIDE, setting), exact: scaled, digits: 8, qMin: disks.lowQ, complete }),
       },
-      ...both(`disk in background ${OUTSIDE} ${pol} m=4`, scaledThreshold, 2, 8, 'm = 4', () => diskDevice(2 * OUTSIDE, around)),
+      ...both(`disk in background ${OUTSIDE} ${pol} m=4`, scaledThreshold, 2, 8, 'm = 4', () =>
+        diskDevice(2 * OUTSIDE, around),
+      ),
     ];
   });
 }
@@ -179,6 +200,7 @@ function layeredPoles(): Case[] {
       for (const band of [
         [0.5, 1],
         [1, 2],
+        [2, 2.5],
         [2.5, 5],
       ] as const) {
         const exact: ExactMode[] = [];
@@ -193,14 +215,20 @@ function layeredPoles(): Case[] {
         }
         if (exact.length === 0) continue;
         // boxes of the table reach down to Im k = −0.6
-        const complete = (mode: { label: string; k: { im: number } }): boolean => known.has(mode.label) && mode.k.im > -0.6;
+        const complete = (mode: { label: string; k: { im: number } }): boolean =>
+          known.has(mode.label) && mode.k.im > -0.6;
         const common = { device: layeredDevice(structure, { polarization: pol, band }), exact, qMin: lowQ, complete };
         const place = `${name} ${pol} ${band[0]}-${band[1]}`;
-        out.push({ id: `layered poles ${place} digits 5`, long: false, rows: () => modeRows({ ...common, digits: 5 }) });
+        out.push({
+          id: `layered poles ${place} digits 5`,
+          long: false,
+          rows: () => modeRows({ ...common, digits: 5 }),
+        });
         out.push({
           id: `layered poles ${lossless ? 'zeros ' : ''}${place} digits 8`,
           long: false,
-          rows: () => (lossless ? conjugateRows({ ...common, digits: 8 }, LOSSLESS_PAIR) : modeRows({ ...common, digits: 8 })),
+          rows: () =>
+            lossless ? conjugateRows({ ...common, digits: 8 }, LOSSLESS_PAIR) : modeRows({ ...common, digits: 8 }),
         });
       }
     }
@@ -210,8 +238,13 @@ function layeredPoles(): Case[] {
 
 function layeredCrossings(): Case[] {
   return layered.thresholds.flatMap((t) =>
-    both(`layered ${t.name} ${t.pol} m=${t.m} pumped ${t.pumped.join('+')}`, t, t.m === 0 ? 1 : 2, 8, `m = ${t.m}`, (k) =>
-      layeredDevice(layered.structures[t.name]!, { polarization: t.pol, band: bandAbout(k), pumped: t.pumped }),
+    both(
+      `layered ${t.name} ${t.pol} m=${t.m} pumped ${t.pumped.join('+')}`,
+      t,
+      t.m === 0 ? 1 : 2,
+      8,
+      `m = ${t.m}`,
+      (k) => layeredDevice(layered.structures[t.name]!, { polarization: t.pol, band: bandAbout(k), pumped: t.pumped }),
     ),
   );
 }
@@ -220,8 +253,11 @@ function clusterPoles(): Case[] {
   const out: Case[] = [];
   for (const entry of clusters.poles) {
     for (const [re, im, halfRe, halfIm] of entry.ellipses) {
-      const inside = (k: { re: number; im: number }): boolean => ((k.re - re) / halfRe) ** 2 + ((k.im - im) / halfIm) ** 2 < 1;
-      const exact = entry.k.map(([x, y]) => ({ k: { re: x, im: y }, multiplicity: 1, label: '' })).filter((e) => inside(e.k));
+      const inside = (k: { re: number; im: number }): boolean =>
+        ((k.re - re) / halfRe) ** 2 + ((k.im - im) / halfIm) ** 2 < 1;
+      const exact = entry.k
+        .map(([x, y]) => ({ k: { re: x, im: y }, multiplicity: 1, label: '' }))
+        .filter((e) => inside(e.k));
       if (exact.length === 0) continue;
       const band: Pair = [re - halfRe, re + halfRe];
       const lowQ = 0.98 * Math.min(...exact.map(({ k }) => k.re / (-2 * k.im)));

@@ -94,7 +94,14 @@ function matchRows(answer: ModesAnswer, c: ModesCase): Row[] {
     const size = Math.hypot(exact.k.re, exact.k.im);
     const bound = (c.bound ?? 10 ** -c.digits) * size;
     if (!mode || distance(mode.k, exact.k) > 1e-2 * size) {
-      rows.push({ what: `${kind} ${exact.label}`, exact: show(exact.k), computed: 'missing', error: Infinity, bound, estimate: NaN });
+      rows.push({
+        what: `${kind} ${exact.label}`,
+        exact: show(exact.k),
+        computed: 'missing',
+        error: Infinity,
+        bound,
+        estimate: NaN,
+      });
       continue;
     }
     taken.add(mode);
@@ -106,14 +113,22 @@ function matchRows(answer: ModesAnswer, c: ModesCase): Row[] {
       bound,
       estimate: mode.kError,
     });
-    if (mode.multiplicity !== exact.multiplicity) rows.push(count(`multiplicity ${exact.label}`, exact.multiplicity, mode.multiplicity));
+    if (mode.multiplicity !== exact.multiplicity)
+      rows.push(count(`multiplicity ${exact.label}`, exact.multiplicity, mode.multiplicity));
     if (exact.label !== '' && mode.label !== exact.label) {
       rows.push({ what: 'label', exact: exact.label, computed: `"${mode.label}"`, error: 1, bound: 0, estimate: NaN });
     }
   }
   for (const mode of answer.modes) {
     if (taken.has(mode) || !c.complete(mode)) continue;
-    rows.push({ what: `${kind} ${mode.label}`, exact: 'none', computed: show(mode.k), error: Infinity, bound: 0, estimate: mode.kError });
+    rows.push({
+      what: `${kind} ${mode.label}`,
+      exact: 'none',
+      computed: show(mode.k),
+      error: Infinity,
+      bound: 0,
+      estimate: mode.kError,
+    });
   }
   return rows;
 }
@@ -180,7 +195,14 @@ function crossingRows<M extends AxisMode>(
   }
   const name = `${what} ${exact.label}`.trim();
   if (!found) {
-    rows.push({ what: name, exact: `k ${exact.k}, D ${exact.level}`, computed: 'missing', error: Infinity, bound: 0, estimate: NaN });
+    rows.push({
+      what: name,
+      exact: `k ${exact.k}, D ${exact.level}`,
+      computed: 'missing',
+      error: Infinity,
+      bound: 0,
+      estimate: NaN,
+    });
     return { rows, found };
   }
   const goal = 10 ** -digits;
@@ -212,7 +234,14 @@ function share(what: string, value: number, bound: number, estimate: number): Ro
 }
 
 function count(what: string, exact: number, computed: number): Row {
-  return { what, exact: String(exact), computed: String(computed), error: Math.abs(exact - computed), bound: 0, estimate: NaN };
+  return {
+    what,
+    exact: String(exact),
+    computed: String(computed),
+    error: Math.abs(exact - computed),
+    bound: 0,
+    estimate: NaN,
+  };
 }
 
 function truth(what: string, holds: boolean): Row {
