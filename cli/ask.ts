@@ -1,7 +1,7 @@
 // How does a question about a device file get its run: from the store, or computed?
 
-import { existsSync, readFileSync } from 'node:fs';
-import { extname, join, relative, resolve } from 'node:path';
+import { accessSync, constants, existsSync, readdirSync, readFileSync, statSync } from 'node:fs';
+import { dirname, extname, join, relative, resolve, sep } from 'node:path';
 import { type LoadedRun, readRun, runFolder, writeRun } from '../src/index.ts';
 import { type DeviceFile } from './device-file.ts';
 import { InputError } from './faults.ts';
@@ -37,12 +37,12 @@ export async function ask(command: RunCommand, file: DeviceFile, settings: Setti
     if (here) return { run: here, folder: shown(folder), reused: true };
     const elsewhere = folder === own ? null : same(own);
     if (elsewhere) {
-      refuseOther(folder, command, file);
+      refusePlace(folder, command, file);
       writeRun(folder, withoutTables(elsewhere), arraysOf(elsewhere), copyOf(file));
       return { run: readRun(folder), folder: shown(folder), reused: true };
     }
   }
-  if (place.out !== undefined) refuseOther(place.out, command, file);
+  refusePlace(folder, command, file);
   const input: RunInput = {
     command,
     text: file.text,
@@ -87,23 +87,41 @@ function storedAnswer(
   }
 }
 
-/** A folder named by the user may hold an earlier run of this question with other settings, but not another answer. */
-function refuseOther(folder: string, command: string, file: DeviceFile): void {
-  if (!existsSync(join(folder, 'run.json'))) return;
+/**
+ * Before long work: a folder that cannot take the run. It may hold an earlier run of this question with other settings,
+ * but not another answer, and nothing that no run wrote.
+ */
+function refusePlace(folder: string, command: string, file: DeviceFile): void {
+  const refuse = (came: string): never => {
+    const expected = 'a new folder, or one with an earlier run of the same question';
+    throw new InputError(`folder ${folder}`, came, expected, 'name another folder with --out');
+  };
+  const cwd = process.cwd();
+  let above = resolve(folder);
+  if (cwd === above || cwd.startsWith(above.endsWith(sep) ? above : above + sep))
+    refuse('the current folder, or one that holds it');
+  while (!existsSync(above)) above = dirname(above);
+  if (!statSync(above).isDirectory()) refuse(above === resolve(folder) ? 'a file' : `a place below the file ${above}`);
+  try {
+    accessSync(above, constants.W_OK);
+  } catch {
+    refuse('a place that may not be written');
+  }
+  if (above !== resolve(folder)) return;
+  if (!existsSync(join(folder, 'run.json'))) {
+    if (readdirSync(folder).length > 0) refuse('a folder that holds something else than a run');
+    return;
+  }
   let held: LoadedRun;
   try {
     held = readRun(folder);
   } catch {
+    // A damaged run is replaced.
     return;
   }
   const { record } = held;
-  if (record.command === command && resolve(record.device.file) === resolve(file.path)) return;
-  throw new InputError(
-    'option --out',
-    `${folder}, which holds the run "${record.command}" of ${record.device.file}`,
-    'a new folder, or one with an earlier run of the same question',
-    'name another folder',
-  );
+  if (record.command !== command || resolve(record.device.file) !== resolve(file.path))
+    refuse(`the run "${record.command}" of ${record.device.file}`);
 }
 
 function withoutTables({ record }: LoadedRun): RunOutput['record'] {

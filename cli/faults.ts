@@ -56,6 +56,7 @@ export function reportFault(error: unknown): FaultReport {
 
 /** The message when the input is at fault, or null. */
 function inputFault(error: unknown): string | null {
+  if (!(error instanceof Error)) return null;
   if (error instanceof InputError || error instanceof DeviceError) return error.message;
   if (error instanceof GeometryError) {
     const where = error.bodies.length > 0 ? `bodies ${error.bodies.join(', ')}` : 'bodies';
@@ -78,6 +79,14 @@ function inputFault(error: unknown): string | null {
       mend ?? 'name another folder, or compute the run again',
     ).message;
   }
+  const { code, path } = error as NodeJS.ErrnoException;
+  if (code !== undefined && path !== undefined)
+    return new InputError(
+      path,
+      `a place that cannot be read or written (${code})`,
+      'a file or folder that can',
+      'check its permissions and the room on its disk',
+    ).message;
   // Doors in `src` say what they expected; a RangeError of the engine does not.
   if (error instanceof RangeError) {
     const [came, expected] = splitAt(error.message, /[;,:] expected /);

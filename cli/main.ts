@@ -20,8 +20,10 @@ import { addView } from './view.ts';
 
 for (const signal of ['SIGINT', 'SIGTERM', 'SIGHUP'] as const) process.once(signal, interrupt);
 for (const stream of [process.stdout, process.stderr]) stream.on('error', endOfPipe);
-process.on('uncaughtException', fail);
-process.on('unhandledRejection', fail);
+process.on('uncaughtException', (error) => {
+  fail(error);
+  process.exit();
+});
 
 const program = new WellCommand('wavewell')
   .description('Open resonators in two dimensions: poles, zeros, lasing thresholds, coherent absorption, with proof.')

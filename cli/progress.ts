@@ -36,7 +36,7 @@ export function progressLine(what: string): ProgressLine {
       const share = done > 0 && done < 1 ? ` ${String(Math.floor(100 * done))} %` : '';
       const left = done >= 0.05 && done < 1 ? ((time - began) * (1 - done)) / done / 1000 : 0;
       const text = `${what}: ${stage}${share}${left >= 1 ? ` · ${timeText(left)} left` : ''}`;
-      stderr.write(`\r\x1b[2K${errorInk.dim(text.slice(0, Math.max(20, (stderr.columns ?? 80) - 1)))}`);
+      stderr.write(`\r\x1b[2K${errorInk.dim(text.slice(0, Math.max(20, (stderr.columns || 80) - 1)))}`);
     },
     clear() {
       if (drawn > -Infinity) stderr.write('\r\x1b[2K');
