@@ -1,13 +1,15 @@
 // How does a pattern become a plan that any matrix on it can be factored by?
 
 import { dissect } from './dissection.ts';
-import { factorFronts, makeSparePanels, planMemory } from './factorize.ts';
+import { factorFronts } from './factorize.ts';
 import { planFronts } from './fronts.ts';
 import { findIncidence } from './incidence.ts';
 import type { FrontKernels } from './kernels/kernels.ts';
 import { makeTwinKernels } from './kernels/twin.ts';
+import { makeSparePanels } from './spare-panels.ts';
 import { factorTogether, findThreads, makeSession } from './threads.ts';
 import { loadWasmKernels } from './kernels/wasm-kernels.ts';
+import { planMemory } from './memory-plan.ts';
 import type { Analysis, ElementFill, ElementPattern, Factorization } from './pattern.ts';
 
 export interface AnalysisChoice {

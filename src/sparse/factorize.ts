@@ -5,70 +5,10 @@ import { summarize, type Factors } from './factors.ts';
 import { layArena, SMALLEST, TINY } from './front-work.ts';
 import type { Fronts } from './fronts.ts';
 import { MOST_DELAYED, type FrontKernels } from './kernels/kernels.ts';
+import type { MemoryPlan } from './memory-plan.ts';
 import type { ElementFill, ElementPattern, Factorization } from './pattern.ts';
 import { solveFronts } from './solve.ts';
-
-/** Sizes that depend on the plan only. */
-export interface MemoryPlan {
-  readonly panelStarts: Float64Array;
-  /** Largest front, largest element. */
-  readonly largestFront: number;
-  readonly largestElement: number;
-  /** Numbers of the stack of contributions and fronts. */
-  readonly stack: number;
-}
-
-/** Room for L and the peak of the working stack: known before any number is. */
-export function planMemory(pattern: ElementPattern, fronts: Fronts): MemoryPlan {
-  const { count, pivotStarts, boundaryStarts, childStarts, children } = fronts;
-  const panelStarts = new Float64Array(count + 1);
-  let largestFront = 0;
-  let top = 0;
-  let stack = 0;
-  for (let f = 0; f < count; f++) {
-    const np = pivotStarts[f + 1] - pivotStarts[f];
-    const nb = boundaryStarts[f + 1] - boundaryStarts[f];
-    const nf = np + nb;
-    panelStarts[f + 1] = panelStarts[f] + 2 * nf * np;
-    largestFront = Math.max(largestFront, nf);
-    stack = Math.max(stack, top + 2 * nf * np + 2 * nb * nb);
-    for (let i = childStarts[f]; i < childStarts[f + 1]; i++) {
-      const n = boundaryStarts[children[i] + 1] - boundaryStarts[children[i]];
-      top -= n * (n + 1);
-    }
-    top += nb * (nb + 1);
-    stack = Math.max(stack, top);
-  }
-  let largestElement = 0;
-  for (let e = 0; e + 1 < pattern.starts.length; e++) {
-    largestElement = Math.max(largestElement, pattern.starts[e + 1] - pattern.starts[e]);
-  }
-  return { panelStarts, largestFront, largestElement, stack };
-}
-
-/** Memory of released factorizations of one plan, for the next ones: touching new memory costs as much as factoring. */
-export interface SparePanels {
-  /** `shared`: only memory that several threads see. */
-  take(shared?: boolean): Float64Array | undefined;
-  give(panels: Float64Array): void;
-}
-
-/** Keeps at most this many released panels. */
-const MOST_SPARE = 2;
-
-export function makeSparePanels(): SparePanels {
-  let held: Float64Array[] = [];
-  return {
-    take(shared = false): Float64Array | undefined {
-      const found = held.find((p) => !shared || !(p.buffer instanceof ArrayBuffer));
-      held = held.filter((p) => p !== found);
-      return found;
-    },
-    give(panels): void {
-      if (held.length < MOST_SPARE) held.push(panels);
-    },
-  };
-}
+import type { SparePanels } from './spare-panels.ts';
 
 /**
  * Numeric LDLᵀ, one front after the other, contributions on a stack; `together` may try it first with several threads.

@@ -1,8 +1,8 @@
 // What does a thread do with one front whose size is as planned?
 
-import type { MemoryPlan } from './factorize.ts';
 import type { Fronts } from './fronts.ts';
 import { workNumbers, type FrontKernels } from './kernels/kernels.ts';
+import type { MemoryPlan } from './memory-plan.ts';
 
 /** Positions of a thread's part of the working memory. */
 export interface Arena {

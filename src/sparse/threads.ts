@@ -3,11 +3,12 @@
 import { Worker } from 'node:worker_threads';
 import type { Factors } from './factors.ts';
 import { multiplyAdds } from './factors.ts';
-import type { MemoryPlan, SparePanels } from './factorize.ts';
 import { layArena, workFront, type Arena, type FrontTables, type Results } from './front-work.ts';
 import type { Fronts } from './fronts.ts';
 import { loadSharedKernels, MOST_THREADS, type SharedKernels } from './kernels/wasm-kernels.ts';
+import type { MemoryPlan } from './memory-plan.ts';
 import type { ElementFill, ElementPattern } from './pattern.ts';
+import type { SparePanels } from './spare-panels.ts';
 import { SIGNALS, type WorkerJob, type WorkerMessage } from './worker-job.ts';
 import type { WorkerStart } from './worker.ts';
 
