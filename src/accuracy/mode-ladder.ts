@@ -1,9 +1,9 @@
 // Which modes lie in a window, and how far may each be off?
 
 import { embed } from '../elements/space.ts';
-import { inverseStep } from '../eigen/improve.ts';
+import { residualStep } from '../eigen/improve.ts';
 import { type EigenGroup, rayleighGroups } from '../eigen/rayleigh.ts';
-import { modesInWindow, ownGroups, type Tile, type Wedge, wedgeHolds } from '../eigen/window.ts';
+import { modesInWindow, type OwnedGroup, ownGroups, type Tile, type Wedge, wedgeHolds } from '../eigen/window.ts';
 import { type LayerPlan, returnedAt } from '../boundary/stretched-layer.ts';
 import { type Complex, modulus, subtract } from '../numerics/complex.ts';
 import type { DeviceFamily } from '../operator/device-family.ts';
@@ -65,7 +65,7 @@ export const groupWidth = (digits: number, k: number): number => Math.min(10 * 1
 
 /**
  * Searches at the starting order, then climbs: all vectors of a tile are embedded in the next order and improved
- * there by two steps of inverse iteration as one space; the difference is the error of the lower order. Stops when
+ * there by inverse iteration on its residual as one space; the difference is the error of the lower order. Stops when
  * every mode has the digits, or at the highest order.
  */
 export function climbModes(family: (order: number) => DeviceFamily, request: ModeSearchRequest): ModeSearch {
@@ -84,13 +84,24 @@ export function climbModes(family: (order: number) => DeviceFamily, request: Mod
     progress: (done) => progress?.('searching', done),
   });
   let tiles: readonly Tile[] = found.tiles;
-  if (search !== here) tiles = liftAll(search, here, tiles, request, width);
-  let groups = tiles.map((t) => rayleighGroups(here, t.shift, level, t.vectors, t.ks.length, width));
+  const groupsAt = (at: DeviceFamily, list: readonly Tile[]): EigenGroup[][] =>
+    list.map((t) => rayleighGroups(at, t.shift, level, t.vectors, t.ks.length, width));
+  const inWindow = (list: readonly Tile[], of: readonly EigenGroup[][]): OwnedGroup[] =>
+    ownGroups(list, of, width).filter((o) => wedgeHolds(wedge, o.group.k));
+  let groups = groupsAt(search, tiles);
+  let covered = found.covered;
+  if (search !== here) {
+    const seen = inWindow(tiles, groups);
+    tiles = liftAll(search, here, tiles, request, width);
+    groups = groupsAt(here, tiles);
+    covered &&= seen.every((o) => stillThere(o.group, groups[o.tile]));
+  }
   for (;;) {
     const up = family(order + 1);
     const higher = liftAll(here, up, tiles, request, width);
-    const groupsUp = higher.map((t) => rayleighGroups(up, t.shift, level, t.vectors, t.ks.length, width));
-    const owned = ownGroups(tiles, groups, width).filter((o) => wedgeHolds(wedge, o.group.k));
+    const groupsUp = groupsAt(up, higher);
+    const owned = inWindow(tiles, groups);
+    covered &&= owned.every((o) => stillThere(o.group, groupsUp[o.tile]));
     const errors = owned.map((o) => discretization(o.group, groupsUp[o.tile]));
     const reached = owned.every((o, i) => errors[i] <= 10 ** -digits * modulus(o.group.k));
     if (reached || order + 1 >= HIGHEST_ORDER) {
@@ -108,7 +119,7 @@ export function climbModes(family: (order: number) => DeviceFamily, request: Mod
         }
         modes.push({ group: o.group, layer: check, error: errorParts(o.group, errors[i], layer) });
       }
-      return { modes: joinUnresolved(modes), dropped, covered: found.covered, order, reached };
+      return { modes: joinUnresolved(modes), dropped, covered, order, reached };
     }
     order++;
     here = up;
@@ -144,10 +155,13 @@ function liftAll(
   });
 }
 
-/** Most steps of inverse iteration a lift may take. */
+/** Most steps a lift may take. */
 const LIFT_STEPS = 8;
 
-/** The tile's space in another order, improved there as one space until its eigenvalues in the window stand still. */
+/**
+ * The tile's space in another order, improved there as one space until its eigenvalues in the window stand still. By
+ * residuals: plain inverse iteration would turn all columns towards the mode nearest to the shift.
+ */
 function lift(from: DeviceFamily, to: DeviceFamily, tile: Tile, request: ModeSearchRequest, width: number): Tile {
   const { level, digits, wedge } = request;
   const columns = tile.ks.length;
@@ -155,7 +169,7 @@ function lift(from: DeviceFamily, to: DeviceFamily, tile: Tile, request: ModeSea
   let vectors = embed(to.operator.space, from.operator.space, tile.vectors, columns);
   let before: EigenGroup[] = [];
   for (let step = 0; step < LIFT_STEPS; step++) {
-    vectors = inverseStep(to, inverse, tile.shift, level, vectors, columns);
+    vectors = residualStep(to, inverse, tile.shift, level, vectors, columns);
     if (step === 0) continue;
     const groups = rayleighGroups(to, tile.shift, level, vectors, columns, width, false).filter((g) =>
       wedgeHolds(wedge, g.k),
@@ -168,6 +182,12 @@ function lift(from: DeviceFamily, to: DeviceFamily, tile: Tile, request: ModeSea
   }
   return { ...tile, inverse, vectors };
 }
+
+/** From the search on no mode moves by more than this share of |k| with the order (measured: 1e-3); farther, it was lost. */
+const LARGEST_MOVE = 0.02;
+
+const stillThere = (group: EigenGroup, higher: readonly EigenGroup[]): boolean =>
+  discretization(group, higher) <= LARGEST_MOVE * modulus(group.k);
 
 /** Distance to the same group one order higher; a group that has split there counts by its farthest part. */
 function discretization(group: EigenGroup, higher: readonly EigenGroup[]): number {
