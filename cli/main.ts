@@ -1,57 +1,28 @@
 #!/usr/bin/env node
-// What does the command line ask for, and with which code does it end?
+// How does the program begin, and how is it stopped?
 
-import { CommanderError } from 'commander';
-import { addAbsorb } from './absorb.ts';
-import { addCheck } from './check.ts';
-import { addDemo } from './demo.ts';
-import { INPUT_WRONG, INTERRUPTED } from './exit-codes.ts';
-import { addExport } from './export.ts';
-import { reportFault } from './faults.ts';
-import { addMesh } from './mesh.ts';
-import { addModes } from './modes.ts';
-import { WellCommand } from './options.ts';
-import { errorInk } from './paper.ts';
-import { clearProgress } from './progress.ts';
-import { addSchema } from './schema.ts';
-import { addThreshold } from './threshold.ts';
-import { programVersion } from './version.ts';
-import { addView } from './view.ts';
+import { INTERNAL_FAULT, INTERRUPTED } from './exit-codes.ts';
 
+// These stand before anything heavy is loaded: from here on Ctrl-C always ends with the same code.
 for (const signal of ['SIGINT', 'SIGTERM', 'SIGHUP'] as const) process.once(signal, interrupt);
 for (const stream of [process.stdout, process.stderr]) stream.on('error', endOfPipe);
-process.on('uncaughtException', (error) => {
-  fail(error);
-  process.exit();
-});
-
-const program = new WellCommand('wavewell')
-  .description('Open resonators in two dimensions: poles, zeros, lasing thresholds, coherent absorption, with proof.')
-  .version(programVersion(), '--version', 'prints the version')
-  .helpOption('--help', 'prints this text')
-  .helpCommand(false)
-  .exitOverride()
-  .configureHelp({ sortSubcommands: false, showGlobalOptions: false })
-  .showSuggestionAfterError(false);
-addCheck(program);
-addSchema(program);
-addMesh(program);
-addModes(program);
-addThreshold(program);
-addAbsorb(program);
-addView(program);
-addExport(program);
-addDemo(program);
 
 try {
-  await program.parseAsync();
+  const { runCommandLine } = await import('./command-line.ts');
+  await runCommandLine();
 } catch (error) {
-  fail(error);
+  // Only a damaged installation comes here: the command line reports its own faults.
+  process.stderr.write(`wavewell: internal fault\n  came: ${String(error)}\n`);
+  process.stderr.write(
+    '  expected: a whole installation\n  mend: install again, and report it if that does not help\n',
+  );
+  process.exitCode = INTERNAL_FAULT;
 }
 
 /** Runs are written in one go between two turns of the event loop: here nothing is half-written. */
 function interrupt(): void {
-  clearProgress();
+  // The progress line, if there is one.
+  if (process.stderr.isTTY) process.stderr.write('\r\x1b[2K');
   process.exit(INTERRUPTED);
 }
 
@@ -59,18 +30,4 @@ function interrupt(): void {
 function endOfPipe(error: NodeJS.ErrnoException): void {
   if (error.code === 'EPIPE') process.exit(process.exitCode);
   throw error;
-}
-
-function fail(error: unknown): void {
-  clearProgress();
-  if (error instanceof CommanderError) {
-    // Help and version were asked for, or no command was given and help was printed instead.
-    process.exitCode = error.exitCode === 0 ? 0 : INPUT_WRONG;
-    return;
-  }
-  const { code, text, stack } = reportFault(error);
-  const [first, ...rest] = text.split('\n');
-  process.stderr.write(`${errorInk.bold(first)}\n${rest.map((line) => `${line}\n`).join('')}`);
-  if (process.env['WAVEWELL_DEBUG'] && stack !== '') process.stderr.write(`${stack}\n`);
-  process.exitCode = code;
 }
