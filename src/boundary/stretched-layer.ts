@@ -1,6 +1,7 @@
 // How does an open device end: where, how thick, and with which stretched coefficients?
 
-import { argument, type Complex, modulus } from '../numerics/complex.ts';
+import { argument, complex, type Complex, modulus, multiply, scale } from '../numerics/complex.ts';
+import { logHankel } from '../numerics/cylinder-functions.ts';
 
 /** A radial stretched layer R ≤ r ≤ R + L in which r̃ = R + (r − R) e^{iθ}: outgoing waves decay. */
 export interface LayerPlan {
@@ -61,6 +62,20 @@ export function planLayer(request: LayerRequest): LayerPlan {
 export function returnedAt(plan: LayerPlan, k: Complex): number {
   const room = plan.angle - Math.abs(argument(k));
   return 2 * Math.exp(-2 * modulus(k) * plan.backgroundIndex * (plan.endRadius - plan.rimRadius) * Math.sin(room));
+}
+
+/**
+ * The same for each multipole |m| = 0 … M apart, exactly: the field that vanishes at the layer's end holds a_m H⁽²⁾_m and
+ * b_m H⁽¹⁾_m with |a_m/b_m| = |H⁽¹⁾_m(z)/H⁽²⁾_m(z)|, z = n_b k (R + L e^{iθ}). High orders and low Q raise it above the law.
+ * For incoming layers the roles change, which equals the conjugate k.
+ */
+export function returnedOrders(plan: LayerPlan, k: Complex, M: number): Float64Array {
+  const length = plan.endRadius - plan.rimRadius;
+  const end = complex(plan.rimRadius + length * Math.cos(plan.angle), length * Math.sin(plan.angle));
+  const z = scale(multiply(complex(k.re, -Math.abs(k.im)), end), plan.backgroundIndex);
+  const out = logHankel(1, M, z);
+  const back = logHankel(2, M, z);
+  return Float64Array.from({ length: M + 1 }, (_, m) => Math.exp(out[2 * m] - back[2 * m]));
 }
 
 /**

@@ -1,6 +1,7 @@
 // Where does a device resonate? Poles, or zeros, in a window of complex k.
 
 import { type ErrorParts, climbModes, type FoundMode, totalError } from '../accuracy/mode-ladder.ts';
+import { returnedToMode } from '../accuracy/layer-return.ts';
 import { DEFAULT_DIGITS, resolutionFor } from '../accuracy/resolution.ts';
 import type { Device } from '../device/model.ts';
 import type { Wedge } from '../eigen/window.ts';
@@ -120,13 +121,14 @@ export function wedgeFor(device: Device, assignment: Assignment, kMin: number, k
 }
 
 function describeMode(prepared: Prepared, order: number, found: FoundMode, assignment: Assignment): Mode {
-  const { group, error, layer } = found;
+  const { group, layer } = found;
   const { k, vectors, multiplicity } = group;
   const n = vectors.length / (2 * multiplicity);
   const space = spaceOf(prepared, order);
   const members = Array.from({ length: multiplicity }, (_, i) => vectors.slice(2 * n * i, 2 * n * (i + 1)));
   const M = multipoleOrder(prepared.device, prepared.bodyRadius, Math.hypot(k.re, k.im));
   const all = rimMultipoles(prepared.device, space, k, assignment === 'poles' ? 1 : 2, M, members);
+  const error = { ...found.error, boundary: 2 * Math.abs(k.im) * returnedToMode(prepared.layer, k, all) };
   const kError = totalError(error);
   const width = Math.max(Math.abs(k.im), k.re / (2 * HIGHEST_Q));
   return {

@@ -216,7 +216,7 @@ function layeredPoles(): Case[] {
         if (exact.length === 0) continue;
         // boxes of the table reach down to Im k = −0.6
         const complete = (mode: { label: string; k: { im: number } }): boolean =>
-          known.has(mode.label) && mode.k.im > -0.6;
+          known.has(mode.label) && Math.abs(mode.k.im) < 0.6;
         const common = { device: layeredDevice(structure, { polarization: pol, band }), exact, qMin: lowQ, complete };
         const place = `${name} ${pol} ${band[0]}-${band[1]}`;
         out.push({
