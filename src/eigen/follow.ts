@@ -130,11 +130,12 @@ function correct(
   for (let pass = 0; pass < 6; pass++) {
     U = inverseStep(problem, inverse, middle, level, U, columns);
     const next = rayleighGroups(problem, middle, level, U, columns, width, false);
-    if (next.length === 0) return null;
+    if (next.length === 0) break;
     const change = drift(groups, next);
     groups = next;
     if (change <= 1e-7 * modulus(middle)) break;
   }
+  inverse.release();
   groups = rayleighGroups(problem, middle, level, U, columns, width);
 
   // each strand takes the group nearest to its prediction, once

@@ -14,7 +14,7 @@ import {
 import { eigenGeneral } from '../numerics/eigenvalues.ts';
 import { randomStream } from '../numerics/random.ts';
 import { combine, normaliseColumns, orthonormalise } from './columns.ts';
-import type { EigenProblem, Inverse } from './problem.ts';
+import type { EigenProblem } from './problem.ts';
 
 export interface NearbyRequest {
   readonly shift: Complex;
@@ -33,10 +33,9 @@ export interface Nearby {
   /** Converged pairs, nearest to the shift first. */
   readonly ks: readonly Complex[];
   readonly vectors: ComplexArray;
-  /** True when the disc is covered: all Ritz values inside converged, and some beyond it too. */
+  /** True when the disc is covered: all Ritz values inside converged, and some beyond it too or nothing new for long. */
   readonly covered: boolean;
   readonly dimension: number;
-  readonly inverse: Inverse;
 }
 
 /**
@@ -57,6 +56,8 @@ export function modesNear(problem: EigenProblem, request: NearbyRequest): Nearby
   const minusHalf = divide(complex(-0.5), shift);
 
   let m = 0;
+  let steady = 0;
+  let inside = -1;
   let found: Ritz | null = null;
   for (;;) {
     // one block step: w = A(σ)⁻¹ M v_last
@@ -79,7 +80,13 @@ export function modesNear(problem: EigenProblem, request: NearbyRequest): Nearby
     if (!full) v.set(w, 2 * n * m);
     if (full || (m >= 6 * block && m % (2 * block) === 0)) {
       found = ritzPairs(h, m, capacity, block, tolerance, radius);
+      steady = found.open || found.inside !== inside ? 0 : steady + 1;
+      inside = found.inside;
       if (found.covered || full) break;
+      if (steady >= STEADY_CHECKS) {
+        found = { ...found, covered: true };
+        break;
+      }
     }
   }
 
@@ -89,7 +96,8 @@ export function modesNear(problem: EigenProblem, request: NearbyRequest): Nearby
   const vectors = normaliseColumns(combine(v, m, y, kept.length, n), kept.length, n);
   const s2 = multiply(shift, shift);
   const ks = kept.map((i) => squareRoot(add(s2, found.offsets[i])));
-  return { ks, vectors, covered: found.covered, dimension: m, inverse };
+  inverse.release();
+  return { ks, vectors, covered: found.covered, dimension: m };
 }
 
 interface Ritz {
@@ -98,8 +106,18 @@ interface Ritz {
   readonly vectors: ComplexArray;
   /** Indices of the converged ones, nearest first. */
   readonly converged: readonly number[];
+  /** Converged values inside the radius, and whether any inside is not. */
+  readonly inside: number;
+  readonly open: boolean;
+  /** All inside converged, and some beyond. */
   readonly covered: boolean;
 }
+
+/**
+ * Checks in a row (each two blocks apart) with all Ritz values inside converged and none added, after which the disc
+ * counts as covered although nothing beyond it has converged: far from everything but the layer's own spectrum.
+ */
+const STEADY_CHECKS = 4;
 
 function ritzPairs(h: ComplexArray, m: number, lead: number, block: number, tolerance: number, radius: number): Ritz {
   const small = new Float64Array(2 * m * m);
@@ -129,16 +147,25 @@ function ritzPairs(h: ComplexArray, m: number, lead: number, block: number, tole
   const order = offsets.map((_, i) => i).sort((a, b) => modulus(offsets[a]) - modulus(offsets[b]));
   const converged: number[] = [];
   let insideOpen = false;
+  let insideDone = 0;
   let beyond = 0;
   for (const i of order) {
     const done = residuals[i] <= tolerance;
     const inside = modulus(offsets[i]) <= radius;
     if (done) converged.push(i);
+    if (inside && done) insideDone++;
     if (inside && !done) insideOpen = true;
     if (!inside && done) beyond++;
     if (!inside && !done) break;
   }
-  return { offsets, vectors, converged, covered: !insideOpen && beyond >= Math.min(block, 3) };
+  return {
+    offsets,
+    vectors,
+    converged,
+    inside: insideDone,
+    open: insideOpen,
+    covered: !insideOpen && beyond >= Math.min(block, 3),
+  };
 }
 
 function copy(out: ComplexArray, i: number, from: ComplexArray, j: number): void {

@@ -7,6 +7,8 @@ export type Part = 'value' | 'byK' | 'byLevel';
 /** Solves with one factored A(k, level). */
 export interface Inverse {
   solveInto(out: ComplexArray, rhs: ComplexArray, columns: number): ComplexArray;
+  /** Gives its memory to the next factorization; it cannot solve any more. */
+  release(): void;
 }
 
 /** What a term of the family is multiplied by at k, and the derivative of that by k. */

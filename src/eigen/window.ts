@@ -2,7 +2,7 @@
 
 import { complex, type Complex, type ComplexArray } from '../numerics/complex.ts';
 import { modesNear, squareDistance } from './krylov.ts';
-import type { EigenProblem, Inverse } from './problem.ts';
+import type { EigenProblem } from './problem.ts';
 import { type EigenGroup, gather } from './rayleigh.ts';
 
 /** k with Re in [kMin, kMax] and Im between −low·Re and +high·Re. */
@@ -29,12 +29,11 @@ export interface WindowRequest {
   readonly progress?: (done: number) => void;
 }
 
-/** A disc of the window, all eigenpairs seen in it, and the factorization at its middle, which later steps use again. */
+/** A disc of the window and all eigenpairs seen in it. */
 export interface Tile {
   readonly shift: Complex;
   /** In k²: |k² − shift²| ≤ radius is covered. */
   readonly radius: number;
-  readonly inverse: Inverse;
   /** Converged pairs, some beyond the disc, nearest to the shift first. */
   readonly ks: readonly Complex[];
   /** size × ks.length. */
@@ -57,13 +56,13 @@ export function modesInWindow(problem: EigenProblem, request: WindowRequest): Wi
   const tiles: Tile[] = [];
   let covered = true;
   let tries = 0;
-  const visit = (part: Wedge, depth: number): void => {
+  const visit = (part: Wedge, depth: number, failures: number): void => {
     const shift = tileShift(part);
     const radius = tileRadius(part, shift) * 1.02;
     const center = shift.re * shift.re - shift.im * shift.im;
     const count = expected(Math.sqrt(Math.max(0, center - radius)), Math.sqrt(center + radius));
     if (count > perTile && depth < 10 && radius > 0.02 * center) {
-      for (const half of cut(part)) visit(half, depth + 1);
+      for (const half of cut(part)) visit(half, depth + 1, failures);
       return;
     }
     const nearby = modesNear(problem, {
@@ -75,17 +74,20 @@ export function modesInWindow(problem: EigenProblem, request: WindowRequest): Wi
       tolerance: request.tolerance,
       seed: request.seed + tries++,
     });
-    if (!nearby.covered && nearby.dimension < problem.size && depth < 14) {
-      for (const half of cut(part)) visit(half, depth + 1);
+    if (!nearby.covered && nearby.dimension < problem.size && failures < MOST_FAILURES) {
+      for (const half of cut(part)) visit(half, depth + 1, failures + 1);
       return;
     }
     covered &&= nearby.covered || nearby.dimension >= problem.size;
-    tiles.push({ shift, radius, inverse: nearby.inverse, ks: nearby.ks, vectors: nearby.vectors });
+    tiles.push({ shift, radius, ks: nearby.ks, vectors: nearby.vectors });
     request.progress?.((part.kMax - wedge.kMin) / (wedge.kMax - wedge.kMin));
   };
-  visit(wedge, 0);
+  visit(wedge, 0, 0);
   return { tiles, covered };
 }
+
+/** Times a tile may be cut because its disc could not be covered. */
+const MOST_FAILURES = 4;
 
 /** Columns that Arnoldi starts with: exact pairs and a third by accident are seen at once. */
 const BLOCK = 3;

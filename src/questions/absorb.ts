@@ -155,7 +155,9 @@ function forwardCheck(
     order: (drives[0].length / 2 - 1) / 2,
   };
   const family = familyOf(prepared, order, 'outgoing', 'loss');
-  const driven = driveMultipoles(problem, family.factorize({ re: mode.k, im: 0 }, mode.level), drives);
+  const factor = family.factorize({ re: mode.k, im: 0 }, mode.level);
+  const driven = driveMultipoles(problem, factor, drives);
+  factor.release();
   const taken = absorbedPower(
     problem,
     driven.map((d) => d.scattered),

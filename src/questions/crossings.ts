@@ -4,7 +4,7 @@ import { groupWidth } from '../accuracy/mode-ladder.ts';
 import { DEFAULT_DIGITS, HIGHEST_ORDER, resolutionFor } from '../accuracy/resolution.ts';
 import type { Device } from '../device/model.ts';
 import { embed } from '../elements/space.ts';
-import { type Crossing, findCrossing } from '../eigen/crossing.ts';
+import { type Crossing, findCrossing, ROUNDING } from '../eigen/crossing.ts';
 import { followCluster, type ModePath } from '../eigen/follow.ts';
 import { type EigenGroup, gather, rayleighGroups } from '../eigen/rayleigh.ts';
 import { modesInWindow, ownGroups } from '../eigen/window.ts';
@@ -157,6 +157,12 @@ function mayCross(group: EigenGroup, levelMax: number, sense: LevelSense): boole
   return distance > 0 && toward > 0 && distance / toward < 2 * levelMax;
 }
 
+/**
+ * Share of the digits asked for that the step to the next order may use up. The level is the ratio of a small width to
+ * a large k, and the powers of the forward check hang on it: it gets the margin.
+ */
+const SHARE_OF_GOAL = 0.1;
+
 /** Raises the order until k and the level have their digits; the errors come from one order more. */
 function climbCrossing(
   prepared: Prepared,
@@ -181,8 +187,9 @@ function climbCrossing(
     });
     const kStep = next ? Math.abs(next.k - here.k) : Infinity;
     const levelStep = next ? Math.abs(next.level - here.level) : Infinity;
-    const goal = 10 ** -digits;
-    const reached = kStep <= goal * here.k && levelStep <= Math.max(goal * here.level, 1e-13);
+    const goal = SHARE_OF_GOAL * 10 ** -digits;
+    const floor = (ROUNDING * here.k) / Math.abs(here.group.slope.im);
+    const reached = kStep <= goal * here.k && levelStep <= Math.max(goal * here.level, floor);
     if (reached || !next || order + 1 >= HIGHEST_ORDER) {
       const { vectors, multiplicity, spread, slope } = here.group;
       const n = vectors.length / (2 * multiplicity);
@@ -199,8 +206,7 @@ function climbCrossing(
         k: here.k,
         kError: Math.max(kStep, spread) + boundary + 1e-14 * here.k,
         level: here.level,
-        levelError:
-          levelStep + spread / Math.abs(slope.im) + layer.returned * here.level + (1e-14 * here.k) / Math.abs(slope.im),
+        levelError: levelStep + layer.returned * here.level + floor,
         multiplicity,
         label: modeLabel(multipoles),
         group: here.group,
