@@ -180,7 +180,8 @@ function lift(from: DeviceFamily, to: DeviceFamily, tile: Tile, request: ModeSea
     if (still) break;
     before = groups;
   }
-  return { ...tile, inverse, vectors };
+  inverse.release();
+  return { ...tile, vectors };
 }
 
 /** From the search on no mode moves by more than this share of |k| with the order (measured: 1e-3); farther, it was lost. */

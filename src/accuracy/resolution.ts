@@ -34,6 +34,6 @@ export function resolutionFor(digits: number): Resolution {
     order: Math.ceil(digits * 0.8) + 2,
     sizeInWavelengths: 0.6,
     cornerGrading: Math.max(2 ** (1 - digits), 1e-3),
-    layerTolerance: 10 ** -(digits + 1.5),
+    layerTolerance: 10 ** -(digits + 2.3),
   };
 }
