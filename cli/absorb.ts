@@ -4,8 +4,14 @@ import type { Command } from 'commander';
 import { ask } from './ask.ts';
 import { printAnswer } from './answer.ts';
 import { openDevice, refusePassive } from './device-file.ts';
-import { readAboveZero, type SolveOptions, withSolveOptions } from './options.ts';
-import { commonSettings } from './settings.ts';
+import { InputError } from './faults.ts';
+import { type AlongOption, readAboveZero, readAlong, type SolveOptions, withSolveOptions } from './options.ts';
+import { alongSettings, commonSettings } from './settings.ts';
+
+interface CrossingOptions extends SolveOptions {
+  readonly lossMax?: number;
+  readonly along?: AlongOption;
+}
 
 export function addAbsorb(program: Command): void {
   const command = program
@@ -16,12 +22,19 @@ export function addAbsorb(program: Command): void {
       '--loss-max <D>',
       'largest added loss D looked at (a quarter of the active permittivity if absent)',
       (text: string) => readAboveZero(text, '--loss-max'),
+    )
+    .option(
+      '--along <KNOB[=A,B]>',
+      'a knob as the parameter instead of loss, over its range in the file or A to B',
+      readAlong,
     );
-  withSolveOptions(command).action(async (path: string, options: SolveOptions & { lossMax?: number }) => {
+  withSolveOptions(command).action(async (path: string, options: CrossingOptions) => {
     const file = openDevice(path, options);
-    refusePassive(file);
-    const settings = { ...commonSettings(options), levelMax: options.lossMax ?? null };
-    const asked = await ask('absorb', file, settings, options);
-    process.exitCode = printAnswer(asked, options.json === true);
+    if (options.lossMax !== undefined && options.along)
+      throw new InputError('option --along', '--along with --loss-max', 'one of them', 'leave one out');
+    if (!options.along) refusePassive(file);
+    const along = alongSettings(options.along, file);
+    const settings = { ...commonSettings(options), levelMax: options.lossMax ?? null, along };
+    process.exitCode = printAnswer(await ask('absorb', file, settings, options), options.json === true);
   });
 }

@@ -17,11 +17,22 @@ import type { Asked } from './ask.ts';
 import { DONE, NOT_FOUND } from './exit-codes.ts';
 import { ink, say, sayCautions, sayFacts, sayJson, sayTable, unitText, withUnit } from './paper.ts';
 
+/** A crossing by pump or loss, or by a knob: then without bodies. */
+type AxisAnswer = Omit<CrossingAnswer, 'bodies'> & {
+  readonly bodies?: CrossingAnswer['bodies'];
+  readonly knob?: { readonly name: string; readonly value: number; readonly error: number };
+};
+
 /** Rows of a table before the rest is only counted: the file and `--json` hold all. */
 const MOST_ROWS = 40;
 
 /** Prints the run as people or scripts want it, and returns the exit code. */
-export function printAnswer(asked: Asked, json: boolean): number {
+export function printAnswer(asked: Asked | null, json: boolean): number {
+  if (asked === null) {
+    if (json) sayJson({ crossings: [], covered: true, cautions: [] });
+    else say(ink.bold('No mode reaches the real axis in the band for any value of the knob in its range.'));
+    return NOT_FOUND;
+  }
   const { record } = asked.run;
   if (json) {
     sayJson({ ...record.answer, run: asked.folder });
@@ -40,9 +51,9 @@ export function printAnswer(asked: Asked, json: boolean): number {
 export function printStory({ run, folder, reused }: Asked): void {
   const { record } = run;
   say(ink.bold(record.sentence));
-  for (const note of record.answer['notes'] as readonly string[]) say(ink.dim(`Note: ${note}`));
+  for (const note of (record.answer['notes'] ?? []) as readonly string[]) say(ink.dim(`Note: ${note}`));
   const modes = record.answer['modes'] as readonly ModeAnswer[] | undefined;
-  const crossings = record.answer['crossings'] as readonly CrossingAnswer[] | undefined;
+  const crossings = record.answer['crossings'] as readonly AxisAnswer[] | undefined;
   if (modes && modes.length > 0) printModes(record, modes);
   if (crossings && crossings.length > 0) printCrossings(record, crossings);
   printDoubts(record);
@@ -101,7 +112,8 @@ function printModes(record: RunRecord, modes: readonly ModeAnswer[]): void {
   printRest(modes.length);
 }
 
-function printCrossings(record: RunRecord, crossings: readonly CrossingAnswer[]): void {
+function printCrossings(record: RunRecord, crossings: readonly AxisAnswer[]): void {
+  const knob = crossings[0].knob?.name;
   const band = bandColumn(record);
   const { lengthUnit } = record.device;
   const perLength = lengthUnit === 'none' ? '' : `1/${lengthUnit}`;
@@ -111,25 +123,28 @@ function printCrossings(record: RunRecord, crossings: readonly CrossingAnswer[])
       { head: '', align: 'right' },
       { head: band.head, align: 'right' },
       { head: withUnit('k', perLength), align: 'right' },
-      { head: record.command === 'absorb' ? 'added loss D' : 'pump D', align: 'right' },
+      { head: knob ?? (record.command === 'absorb' ? 'added loss D' : 'pump D'), align: 'right' },
       { head: record.command === 'absorb' ? 'power loss' : 'power gain' },
-      { head: record.command === 'absorb' ? 'total Im ε' : 'total Im ε', align: 'right' },
+      { head: 'total Im ε', align: 'right' },
       { head: '×', align: 'right' },
       { head: 'symmetry' },
       { head: 'beam' },
     ],
     crossings.slice(0, MOST_ROWS).map((c, i) => {
-      const lead = c.bodies[0];
+      const bodies = c.bodies ?? [];
+      const lead = bodies[0];
       return [
         String(i + 1),
         band.write(c.k, c.kError),
         withError(c.k, c.kError),
-        withError(c.pump ?? c.loss ?? NaN, c.pumpError ?? c.lossError ?? NaN),
+        c.knob
+          ? withError(c.knob.value, c.knob.error)
+          : withError(c.pump ?? c.loss ?? NaN, c.pumpError ?? c.lossError ?? NaN),
         lead && lead.units.perCentimetre !== null
           ? `${significant(Math.abs(lead.units.perCentimetre), 3)} /cm, ${significant(Math.abs(lead.units.decibelPerCentimetre!), 3)} dB/cm`
           : '',
-        c.bodies
-          .map((b) => `${significant(b.permittivity[1], 4)}${c.bodies.length > 1 ? ` ${b.name}` : ''}`)
+        bodies
+          .map((b) => `${significant(b.permittivity[1], 4)}${bodies.length > 1 ? ` ${b.name}` : ''}`)
           .slice(0, 3)
           .join(', '),
         c.multiplicity > 1 ? String(c.multiplicity) : '',
@@ -145,12 +160,14 @@ function printCrossings(record: RunRecord, crossings: readonly CrossingAnswer[])
 }
 
 /** The forward check of the first absorption point, on both meshes, and the strongest channels of its drive. */
-function printProof({ forward, drive, drives, outgoingExpected }: CrossingAnswer): void {
+function printProof({ forward, drive, drives, outgoingExpected }: AxisAnswer): void {
   if (!forward) return;
   say();
   say(`Forward check: ${powers(forward)}`);
   const expected =
-    outgoingExpected === undefined ? '' : `; out ${power(outgoingExpected)} or less expected from the errors`;
+    outgoingExpected === undefined || !(outgoingExpected < 1)
+      ? ''
+      : `; out ${power(outgoingExpected)} or less expected from the errors`;
   say(`  on a mesh of its own, one order higher: ${powers(forward.ownMesh)}${expected}`);
   const terms = [...(drive ?? [])].sort((a, b) => size(b.amplitude) - size(a.amplitude));
   const strong = terms.filter((t) => size(t.amplitude) > 1e-3).slice(0, 6);

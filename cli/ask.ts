@@ -2,7 +2,7 @@
 
 import { accessSync, constants, existsSync, readdirSync, readFileSync, statSync } from 'node:fs';
 import { dirname, extname, join, relative, resolve, sep } from 'node:path';
-import { type LoadedRun, readRun, runFolder, writeRun } from '../src/index.ts';
+import { type LoadedRun, readRun, runFolder, type RunParts, writeRun } from '../src/index.ts';
 import { type DeviceFile } from './device-file.ts';
 import { InputError } from './faults.ts';
 import { farWork } from './far-work.ts';
@@ -25,8 +25,13 @@ export interface Place {
   readonly again?: boolean;
 }
 
-/** The run that answers the question; stored whole when this returns. */
-export async function ask(command: RunCommand, file: DeviceFile, settings: Settings, place: Place): Promise<Asked> {
+/** The run that answers the question, stored whole when this returns; null when a knob brings nothing to the axis. */
+export async function ask(
+  command: RunCommand,
+  file: DeviceFile,
+  settings: Settings,
+  place: Place,
+): Promise<Asked | null> {
   const version = programVersion();
   const question = JSON.stringify([command, version, settings, file.text]);
   const own = runFolder(place.base ?? 'runs', file.path, command, question);
@@ -56,8 +61,9 @@ export async function ask(command: RunCommand, file: DeviceFile, settings: Setti
       options: { ...settings },
     },
   };
-  const { record, arrays } = await farWork<RunOutput>(command, { task: 'run', input });
-  writeRun(folder, record, arrays, copyOf(file));
+  const parts = await farWork<RunOutput>(command, { task: 'run', input });
+  if (parts === null) return null;
+  writeRun(folder, parts.record, parts.arrays, copyOf(file));
   return { run: readRun(folder), folder: shown(folder), reused: false };
 }
 
@@ -124,12 +130,12 @@ function refusePlace(folder: string, command: string, file: DeviceFile): void {
     refuse(`the run "${record.command}" of ${record.device.file}`);
 }
 
-function withoutTables({ record }: LoadedRun): RunOutput['record'] {
+function withoutTables({ record }: LoadedRun): RunParts['record'] {
   const { arrays: _arrays, files: _files, ...rest } = record;
   return rest;
 }
 
-const arraysOf = (run: LoadedRun): RunOutput['arrays'] =>
+const arraysOf = (run: LoadedRun): RunParts['arrays'] =>
   Object.fromEntries(Object.keys(run.record.arrays).map((name) => [name, run.array(name)]));
 
 /** Relative to the current folder where that is shorter. */

@@ -5,7 +5,7 @@ import { readdirSync } from 'node:fs';
 import { basename, join } from 'node:path';
 import { DEFAULT_Q_MIN, deviceFigure, nearestName } from '../src/index.ts';
 import { answerCode, printStory, quoted } from './answer.ts';
-import { ask, shown } from './ask.ts';
+import { ask, type Asked, shown } from './ask.ts';
 import { openDevice } from './device-file.ts';
 import { NOT_FOUND } from './exit-codes.ts';
 import { exportFiles, readFirstFile } from './export.ts';
@@ -48,17 +48,17 @@ async function runDemo(name: string, options: { out?: string; again?: true }): P
   const place = { base: options.out ?? 'runs', ...(options.again ? { again: true } : {}) };
   const settings = commonSettings({});
   let code = 0;
-  const tell = (title: string, asked: Awaited<ReturnType<typeof ask>>): void => {
+  const tell = (title: string, asked: Asked): void => {
     say(ink.dim(`── ${title}`));
     printStory(asked);
     code = Math.max(code, answerCode(asked.run.record));
     say();
   };
-  const modes = await ask('modes', file, { ...settings, assignment: 'poles', qMin: DEFAULT_Q_MIN }, place);
+  const modes = (await ask('modes', file, { ...settings, assignment: 'poles', qMin: DEFAULT_Q_MIN }, place))!;
   tell('1. Where does it resonate?', modes);
-  const threshold = await ask('threshold', file, { ...settings, levelMax: null }, place);
+  const threshold = (await ask('threshold', file, { ...settings, levelMax: null, along: null }, place))!;
   tell('2. When does it lase?', threshold);
-  const absorb = await ask('absorb', file, { ...settings, levelMax: null }, place);
+  const absorb = (await ask('absorb', file, { ...settings, levelMax: null, along: null }, place))!;
   tell('3. Which loss and which wave make it absorb everything?', absorb);
 
   const out = join(place.base, name, 'story');

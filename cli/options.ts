@@ -121,6 +121,24 @@ export function readNumbers(text: string, option: string, count: number, form: s
   );
 }
 
+export interface AlongOption {
+  readonly knob: string;
+  /** That of the file if absent. */
+  readonly range: readonly [number, number] | null;
+}
+
+/** 'gap' or 'gap=0.1,0.4'. */
+export function readAlong(text: string): AlongOption {
+  const [knob, limits, ...rest] = text.split('=');
+  if (knob.trim() === '' || rest.length > 0)
+    throw new InputError('option --along', showValue(text), 'name or name=A,B', 'write --along gap=0.1,0.4');
+  if (limits === undefined) return { knob: knob.trim(), range: null };
+  const range = readPair(limits, '--along');
+  if (!(range[0] < range[1]))
+    throw new InputError('option --along', showValue(text), 'the smaller value first', 'order the two values');
+  return { knob: knob.trim(), range };
+}
+
 function readPair(text: string, option: string): readonly [number, number] {
   const [a, b] = readNumbers(text, option, 2, 'A,B');
   return [a, b];

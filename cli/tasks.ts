@@ -4,6 +4,11 @@ import type { Assignment, Mesh, MeshQuality, ReadOptions, RunContext, RunParts }
 
 export type RunCommand = 'modes' | 'threshold' | 'absorb';
 
+export interface Along {
+  readonly knob: string;
+  readonly range: readonly [number, number];
+}
+
 /** Everything a question depends on besides the device file: defaults filled in, so that equal questions look equal. */
 export interface Settings {
   readonly digits: number;
@@ -14,6 +19,8 @@ export interface Settings {
   readonly qMin?: number;
   /** `threshold` and `absorb`; null: the default of the device. */
   readonly levelMax?: number | null;
+  /** A knob as the parameter instead of pump or loss. */
+  readonly along?: Along | null;
 }
 
 export interface RunInput {
@@ -24,7 +31,8 @@ export interface RunInput {
   readonly context: RunContext;
 }
 
-export type RunOutput = RunParts;
+/** Null when a knob brings no mode to the axis: there is nothing to store. */
+export type RunOutput = RunParts | null;
 
 export interface MeshInput {
   readonly text: string;

@@ -1,18 +1,24 @@
 // What does the thread beside the command compute?
 
+import { availableParallelism } from 'node:os';
 import { parentPort, workerData } from 'node:worker_threads';
 import {
   absorbRecord,
   DEFAULT_Q_MIN,
+  type Device,
+  deviceSize,
   findAbsorption,
+  findKnobCrossings,
   findModes,
   findThresholds,
+  knobRecord,
   measureMesh,
   modesRecord,
   prepare,
   type Progress,
   readDevice,
   resolutionFor,
+  startThreads,
   thresholdRecord,
 } from '../src/index.ts';
 import type { FarMessage, FarTask } from './far-work.ts';
@@ -33,15 +39,34 @@ const progress: Progress = (stage, done) => {
 };
 
 function computeRun(input: RunInput): RunOutput {
-  const { command, text, context } = input;
-  const device = readDevice(text, context.deviceFile, input.read);
-  const { digits, assignment, qMin, levelMax } = input.settings;
+  const { command, text, context, read } = input;
+  const device = readDevice(text, context.deviceFile, read);
+  const { digits, assignment, qMin, levelMax, along } = input.settings;
   if (command === 'modes')
     return modesRecord(device, findModes(device, { digits, qMin: qMin!, assignment: assignment!, progress }), context);
-  const request = { digits, progress, ...(levelMax === null ? {} : { levelMax }) };
+  if (along) {
+    const { knob, range } = along;
+    const at = (value: number): Device =>
+      readDevice(text, context.deviceFile, { ...read, knobs: { ...read.knobs, [knob]: value } });
+    const side = command === 'threshold' ? 'poles' : 'zeros';
+    const found = findKnobCrossings(at, { digits, assignment: side, range, progress });
+    return found.length === 0
+      ? null
+      : knobRecord(device, knob, found, command === 'threshold' ? 'gain' : 'loss', context);
+  }
+  const request = { digits, progress, ...(levelMax === null || levelMax === undefined ? {} : { levelMax }) };
   return command === 'threshold'
     ? thresholdRecord(device, findThresholds(device, request), context)
     : absorbRecord(device, findAbsorption(device, request), context);
+}
+
+/** Larger devices than this are worth the time that threads take to start, in unknowns. */
+const WORTH_THREADS = 3000;
+
+async function useProcessors({ text, context, read }: RunInput): Promise<void> {
+  const { unknowns } = deviceSize(readDevice(text, context.deviceFile, read));
+  const processors = Math.min(16, availableParallelism());
+  if (unknowns > WORTH_THREADS && processors > 1) await startThreads(processors);
 }
 
 function computeMesh({ text, file, read, digits }: MeshInput): MeshOutput {
@@ -55,8 +80,10 @@ function computeMesh({ text, file, read, digits }: MeshInput): MeshOutput {
 
 const { task, input } = workerData as FarTask;
 try {
+  if (task === 'run') await useProcessors(input as RunInput);
   const output = task === 'mesh' ? computeMesh(input as MeshInput) : computeRun(input as RunInput);
-  const moved = 'arrays' in output ? Object.values(output.arrays).map((a) => a.buffer as ArrayBuffer) : [];
+  const moved =
+    output !== null && 'arrays' in output ? Object.values(output.arrays).map((a) => a.buffer as ArrayBuffer) : [];
   tell({ kind: 'done', output }, [...new Set(moved)]);
 } catch (error) {
   tell({ kind: 'fault', report: reportFault(error) });

@@ -33,8 +33,19 @@ export {
 } from './questions/absorb.ts';
 export { defaultLevelMax, type AxisMode, type CrossingsRequest } from './questions/crossings.ts';
 export { prepare, type Prepared, type Scope } from './questions/prepare.ts';
-export { absorbRecord, modesRecord, thresholdRecord, type RunContext, type RunParts } from './questions/record.ts';
+export { findKnobCrossings, type KnobCrossing, type KnobCrossingsRequest } from './questions/knob-crossing.ts';
+export {
+  absorbRecord,
+  knobRecord,
+  modesRecord,
+  thresholdRecord,
+  type RunContext,
+  type RunParts,
+} from './questions/record.ts';
 export { DEFAULT_DIGITS, FEWEST_DIGITS, MOST_DIGITS, resolutionFor, type Resolution } from './accuracy/resolution.ts';
+
+// Threads for large factorizations.
+export { startThreads, stopThreads } from './sparse/threads.ts';
 
 // Meshes and their measures.
 export { measureMesh, type MeshQuality } from './mesh/quality.ts';

@@ -47,7 +47,8 @@ export function modeTableCsv(run: RunView): string {
  * what belongs to the crossing as a whole is repeated.
  */
 export function crossingTableCsv(run: RunView): string {
-  const crossings = listOf<CrossingAnswer>(run.record, 'crossings');
+  const crossings = listOf<AxisAnswer>(run.record, 'crossings');
+  const byKnob = crossings.some((c) => c.knob !== undefined);
   const { length, perLength } = units(run.record);
   const header = [
     'crossing',
@@ -58,6 +59,7 @@ export function crossingTableCsv(run: RunView): string {
     'frequency [THz]',
     'D',
     'D_error',
+    ...(byKnob ? ['knob', 'knob_value', 'knob_error'] : []),
     'multiplicity',
     'label',
     column('re_k_at_zero', perLength),
@@ -75,21 +77,22 @@ export function crossingTableCsv(run: RunView): string {
   const rows = crossings.flatMap((c, i) => {
     const whole: Cell[] = [
       i + 1,
-      c.pump === undefined ? 'absorption' : 'threshold',
+      run.record.command === 'absorb' || c.loss !== undefined ? 'absorption' : 'threshold',
       c.k,
       c.kError,
       c.wavelength,
       c.frequency,
       c.pump ?? c.loss ?? null,
       c.pumpError ?? c.lossError ?? null,
+      ...(byKnob ? [c.knob?.name ?? null, c.knob?.value ?? null, c.knob?.error ?? null] : []),
       c.multiplicity,
       c.label,
-      c.from[0],
-      c.from[1],
+      c.from?.[0] ?? null,
+      c.from?.[1] ?? null,
     ];
     const proof = [...powerCells(c.forward), ...powerCells(c.forward?.ownMesh)];
     const beam = [c.farField?.directionality ?? null, c.farField?.peakAngle ?? null];
-    if (c.bodies.length === 0) return [[...whole, null, null, null, null, null, null, ...proof, ...beam]];
+    if (!c.bodies?.length) return [[...whole, null, null, null, null, null, null, ...proof, ...beam]];
     return c.bodies.map(({ name, permittivity, units: u }): Cell[] => [
       ...whole,
       name,
@@ -177,6 +180,12 @@ export function polePathCsv(run: RunView, markId?: string): string {
     })(),
   );
 }
+
+/** A crossing by pump or loss; or by a knob, which leaves the bodies as the file has them. */
+type AxisAnswer = Omit<CrossingAnswer, 'bodies' | 'from'> &
+  Partial<Pick<CrossingAnswer, 'bodies' | 'from'>> & {
+    readonly knob?: { readonly name: string; readonly value: number; readonly error: number };
+  };
 
 const POWERS = ['incoming', 'outgoing', 'absorbed', 'balance'] as const;
 
