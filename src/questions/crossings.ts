@@ -1,5 +1,6 @@
 // At which real k and real pump (or loss) do the modes of a device meet the real axis?
 
+import { returnedToMode } from '../accuracy/layer-return.ts';
 import { groupWidth } from '../accuracy/mode-ladder.ts';
 import { DEFAULT_DIGITS, HIGHEST_ORDER, resolutionFor } from '../accuracy/resolution.ts';
 import type { Device } from '../device/model.ts';
@@ -200,13 +201,14 @@ function climbCrossing(
         members,
         null,
       );
-      // what the layer returns shifts k by about `returned` times the width the mode would have without level
-      const boundary = layer.returned * Math.abs(slope.im) * here.level;
+      // what the layer returns moves k by that share of twice the half width that the mode has without level
+      const returned = 2 * returnedToMode(layer, { re: here.k, im: 0 }, multipoles);
+      const boundary = returned * Math.abs(slope.im) * here.level;
       return {
         k: here.k,
         kError: Math.max(kStep, spread) + boundary + 1e-14 * here.k,
         level: here.level,
-        levelError: levelStep + layer.returned * here.level + floor,
+        levelError: levelStep + returned * here.level + floor,
         multiplicity,
         label: modeLabel(multipoles),
         group: here.group,

@@ -1,0 +1,36 @@
+// Are lasing thresholds those of the exact solutions? A part of `npm run validate`.
+
+import { describe, expect, test } from 'vitest';
+import { findThresholds } from '../../src/questions/threshold.ts';
+import { diskDevice } from '../validate/devices.ts';
+import { CASE_TIMEOUT, expectKept } from '../validate/expect.ts';
+
+describe('against exact values', () => {
+  test.each([
+    'disk n=2 Ez m=10 k=6.542 threshold',
+    'disk n=3.3 Hz m=1 k=1.110 threshold',
+    'disk in background 1.444 Hz m=4 threshold',
+    'layered core_shell Ez m=3 pumped 0 threshold',
+    'layered metal_core Hz m=3 pumped 1 threshold',
+    'cluster five Ez pumped 0 k=2.450 threshold',
+  ])('%s', expectKept, CASE_TIMEOUT);
+});
+
+test(
+  'the path of each mode begins at its pole without pump and ends on the axis',
+  () => {
+    const answer = findThresholds(diskDevice(2, { polarization: 'Ez', band: [2.9, 3.1] }), { levelMax: 0.6 });
+    expect(answer.crossings.length).toBeGreaterThan(0);
+    for (const { path, k, level } of answer.crossings) {
+      expect(path.levels[0]).toBe(0);
+      expect(path.ks[0]!.im).toBeLessThan(0);
+      // the path is of the starting order, the crossing of the last: they agree to the digits asked for
+      expect(Math.abs(path.levels.at(-1)! / level - 1)).toBeLessThan(1e-5);
+      expect(Math.abs(path.ks.at(-1)!.re / k - 1)).toBeLessThan(1e-5);
+      path.levels.forEach((l, i) => i > 0 && expect(l).toBeGreaterThan(path.levels[i - 1]!));
+    }
+    const levels = answer.crossings.map((c) => c.level);
+    expect(levels).toEqual([...levels].sort((a, b) => a - b));
+  },
+  CASE_TIMEOUT,
+);
