@@ -74,7 +74,8 @@ function makeOperator(space: Space, elements: ElementMatrices, analysis: Analysi
   };
 }
 
-function fillElement(
+/** Writes w_K K_t + w_M M_t of one triangle; the layer is conjugated for incoming waves. */
+export function fillElement(
   into: ComplexArray,
   t: number,
   region: number,

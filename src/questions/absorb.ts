@@ -3,6 +3,7 @@
 import { resolutionFor } from '../accuracy/resolution.ts';
 import type { Device } from '../device/model.ts';
 import type { Complex } from '../numerics/complex.ts';
+import { closeByChannels } from '../operator/channel-boundary.ts';
 import { driveMultipoles, normaliseDrive, power } from '../scattering/amplitudes.ts';
 import {
   absorbedPower,
@@ -27,10 +28,18 @@ export interface PowerBalance {
 /** A drive of unit total power: incoming amplitudes a_m for m = −M … M, its largest real and positive. */
 export interface AbsorbingDrive {
   readonly amplitudes: Multipoles;
-  /** Driven solve on the mesh of the crossing: proves the algebra. */
-  readonly sameMesh: PowerBalance;
-  /** Driven solve on a mesh of its own, one order higher: proves the device. */
-  readonly ownMesh: PowerBalance;
+  /** Driven solves on the mesh of the crossing: prove the algebra. */
+  readonly sameMesh: ForwardCheck;
+  /** Driven solves on a mesh of its own, one order higher: prove the device. */
+  readonly ownMesh: ForwardCheck;
+}
+
+/** Two driven solves with independent open boundaries. */
+export interface ForwardCheck {
+  /** Closed exactly, channel by channel, on the rim: no layer, power balanced to rounding. */
+  readonly channels: PowerBalance;
+  /** Scattered-field form with the outgoing stretched layer; amplitudes from the bodies. */
+  readonly scattered: PowerBalance;
 }
 
 export interface AbsorbingMode extends AxisMode {
@@ -139,34 +148,52 @@ function inner(a: Multipoles, b: Multipoles): Complex {
   return { re, im };
 }
 
-/** Drives the outgoing problem in scattered-field form and counts all power. */
+/** Drives the outgoing problem with both open boundaries and counts all power. */
 function forwardCheck(
   prepared: Prepared,
   order: number,
   mode: AxisMode,
   drives: readonly Multipoles[],
-): PowerBalance[] {
+): ForwardCheck[] {
+  const driveOrder = (drives[0].length / 2 - 1) / 2;
   const problem: ContrastProblem = {
     device: prepared.device,
     space: spaceOf(prepared, order),
     k: mode.k,
     level: mode.level,
     sense: 'loss',
-    order: (drives[0].length / 2 - 1) / 2,
+    order: driveOrder,
   };
+  const k = { re: mode.k, im: 0 };
   const family = familyOf(prepared, order, 'outgoing', 'loss');
-  const factor = family.factorize({ re: mode.k, im: 0 }, mode.level);
-  const driven = driveMultipoles(problem, factor, drives);
-  factor.release();
-  const taken = absorbedPower(
+  const layered = family.factorize(k, mode.level);
+  const scattered = driveMultipoles(problem, layered, drives);
+  layered.release();
+  const closed = closeByChannels(prepared.device, family, CHANNELS_PER_MULTIPOLE * driveOrder).factorize(k, mode.level);
+  const total = drives.map((drive) => closed.drive(drive));
+  closed.release();
+  const takenScattered = absorbedPower(
     problem,
-    driven.map((d) => d.scattered),
+    scattered.map((d) => d.scattered),
     drives,
   );
-  return driven.map(({ outgoing }, j) => {
-    const incoming = power(drives[j]);
-    const out = power(outgoing) / incoming;
-    const absorbed = taken[j].reduce((a, b) => a + b, 0) / incoming;
-    return { incoming: 1, outgoing: out, absorbed, balance: 1 - out - absorbed };
-  });
+  const takenTotal = absorbedPower(
+    problem,
+    total.map((d) => d.field),
+    null,
+  );
+  return drives.map((drive, j) => ({
+    channels: balanceOf(drive, total[j].outgoing, takenTotal[j]),
+    scattered: balanceOf(drive, scattered[j].outgoing, takenScattered[j]),
+  }));
+}
+
+/** Channels beyond the drive's multipoles carry nothing out, but close the near field of the bodies. */
+const CHANNELS_PER_MULTIPOLE = 2;
+
+function balanceOf(drive: Multipoles, outgoing: Multipoles, perBody: Float64Array): PowerBalance {
+  const incoming = power(drive);
+  const out = power(outgoing) / incoming;
+  const absorbed = perBody.reduce((a, b) => a + b, 0) / incoming;
+  return { incoming: 1, outgoing: out, absorbed, balance: 1 - out - absorbed };
 }

@@ -214,9 +214,17 @@ export function knobRecord(
 
 /** Drives and the weaker of the group's proofs. */
 function provenPart(mode: AbsorbingMode): Pick<CrossingAnswer, 'drive' | 'drives' | 'forward'> {
-  const worst = mode.drives.reduce((a, b) => (b.ownMesh.outgoing > a.ownMesh.outgoing ? b : a));
+  const worst = mode.drives.reduce((a, b) => (b.ownMesh.channels.outgoing > a.ownMesh.channels.outgoing ? b : a));
   const drives = mode.drives.map((d) => driveTerms(d.amplitudes));
-  return { drive: drives[0], drives, forward: { ...worst.sameMesh, ownMesh: worst.ownMesh } };
+  return {
+    drive: drives[0],
+    drives,
+    forward: {
+      ...worst.sameMesh.channels,
+      scattered: worst.sameMesh.scattered,
+      ownMesh: { ...worst.ownMesh.channels, scattered: worst.ownMesh.scattered },
+    },
+  };
 }
 
 const part = (j: number, of: number): string => (of > 1 ? ` (${j + 1} of ${of})` : '');

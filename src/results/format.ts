@@ -64,6 +64,11 @@ export interface PowerCheck {
   readonly balance: number;
 }
 
+/** A driven solve closed exactly on the rim, and beside it the scattered-field form with the stretched layer. */
+export interface ForwardAnswer extends PowerCheck {
+  readonly scattered?: PowerCheck;
+}
+
 /** A mode on the real axis: a lasing threshold (pump) or a coherent absorption point (loss). */
 export interface CrossingAnswer {
   readonly k: number;
@@ -85,7 +90,7 @@ export interface CrossingAnswer {
   /** `absorb`: unit total power; one list for each of the `multiplicity` orthonormal drives. */
   readonly drive?: readonly DriveTerm[];
   readonly drives?: readonly (readonly DriveTerm[])[];
-  readonly forward?: PowerCheck & { readonly ownMesh: PowerCheck };
+  readonly forward?: ForwardAnswer & { readonly ownMesh: ForwardAnswer };
   /** `absorb`: outgoing share to be expected on the own mesh from the errors of k and loss. */
   readonly outgoingExpected?: number;
   /** The errors are below the digits asked for. */
