@@ -99,7 +99,11 @@ const LEVEL_ROOM = 1.05;
 
 const LOSSLESS_PAIR = 1e-10;
 
+/** Poles of clusters. */
 const CLUSTER_DIGITS = 7;
+
+/** All crossings: the energy balance of the forward check follows the digits of D, and 1e-9 is asked of it. */
+const CROSSING_DIGITS = 8;
 
 export function allCases(): Case[] {
   return [
@@ -175,7 +179,7 @@ function diskScaling(): Case[] {
         rows: () =>
           modeRows({ device: diskDevice(2 * OUTSIDE, setting), exact: scaled, digits: 8, qMin: disks.lowQ, complete }),
       },
-      ...both(`disk in background ${OUTSIDE} ${pol} m=4`, scaledThreshold, 2, 8, 'm = 4', () =>
+      ...both(`disk in background ${OUTSIDE} ${pol} m=4`, scaledThreshold, 2, CROSSING_DIGITS, 'm = 4', () =>
         diskDevice(2 * OUTSIDE, around),
       ),
     ];
@@ -184,8 +188,13 @@ function diskScaling(): Case[] {
 
 function diskCrossings(): Case[] {
   return disks.thresholds.flatMap((t) =>
-    both(`disk n=${t.n} ${t.pol} m=${t.m} k=${t.k.toFixed(3)}`, t, t.m === 0 ? 1 : 2, 8, `m = ${t.m}`, () =>
-      diskDevice(t.n, { polarization: t.pol, band: bandAbout(t.k) }),
+    both(
+      `disk n=${t.n} ${t.pol} m=${t.m} k=${t.k.toFixed(3)}`,
+      t,
+      t.m === 0 ? 1 : 2,
+      CROSSING_DIGITS,
+      `m = ${t.m}`,
+      () => diskDevice(t.n, { polarization: t.pol, band: bandAbout(t.k) }),
     ),
   );
 }
@@ -284,7 +293,7 @@ function clusterCrossings(): Case[] {
       `cluster ${t.name} ${t.pol} pumped ${t.pumped.join('+')} k=${t.k.toFixed(3)}`,
       t,
       1,
-      CLUSTER_DIGITS,
+      CROSSING_DIGITS,
       '',
       (k) => clusterDevice(clusters.structures[t.name]!, { polarization: t.pol, band: bandAbout(k), pumped: t.pumped }),
       t.name === 'twelve',

@@ -169,12 +169,20 @@ export function absorptionRows(c: CrossingCase): Row[] {
 export function driveRows(mode: AbsorbAnswer['crossings'][number]): Row[] {
   const rows = [count('drives, one a member', mode.multiplicity, mode.drives.length)];
   for (const { sameMesh, ownMesh } of mode.drives) {
-    rows.push(
-      share('outgoing, same mesh', sameMesh.outgoing, 1e-10, NaN),
-      share('outgoing, own mesh', ownMesh.outgoing, Infinity, mode.outgoingExpected),
-      share('energy balance, same mesh', sameMesh.balance, 1e-9, NaN),
-      share('energy balance, own mesh', ownMesh.balance, 1e-9, NaN),
-    );
+    for (const way of ['channels', 'scattered'] as const) {
+      rows.push(
+        share(`outgoing, same mesh, ${way}`, sameMesh[way].outgoing, 1e-10, NaN),
+        // the amplitude follows the error of k, about 2Q δ/k: the same ratio holds for it
+        share(
+          `outgoing amplitude, own mesh, ${way}`,
+          Math.sqrt(Math.abs(ownMesh[way].outgoing)),
+          Infinity,
+          Math.sqrt(mode.outgoingExpected),
+        ),
+        share(`energy balance, same mesh, ${way}`, sameMesh[way].balance, 1e-9, NaN),
+        share(`energy balance, own mesh, ${way}`, ownMesh[way].balance, 1e-9, NaN),
+      );
+    }
   }
   return rows;
 }
