@@ -13,8 +13,8 @@ export default defineConfig({
     // The project promises its times on two cores.
     maxWorkers: 2,
     // A whole solve takes seconds on a slow machine; a test that needs longer says so itself.
-    testTimeout: 60_000,
-    hookTimeout: 120_000,
+    testTimeout: 180_000,
+    hookTimeout: 240_000,
     teardownTimeout: 10_000,
   },
 });

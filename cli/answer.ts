@@ -124,7 +124,7 @@ function printCrossings(record: RunRecord, crossings: readonly AxisAnswer[]): vo
       { head: band.head, align: 'right' },
       { head: withUnit('k', perLength), align: 'right' },
       { head: knob ?? (record.command === 'absorb' ? 'added loss D' : 'pump D'), align: 'right' },
-      { head: record.command === 'absorb' ? 'power loss' : 'power gain' },
+      { head: record.command === 'absorb' ? 'loss in all' : 'net gain' },
       { head: 'total Im ε', align: 'right' },
       { head: '×', align: 'right' },
       { head: 'symmetry' },

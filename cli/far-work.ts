@@ -1,19 +1,9 @@
 // How does long work run beside the command, so that Ctrl-C and the progress line are never kept waiting?
 
 import { Worker } from 'node:worker_threads';
-import { FarError, type FaultReport } from './faults.ts';
+import { FarError } from './faults.ts';
 import { progressLine } from './progress.ts';
-
-/** What the worker is asked: one entry of its table of tasks, and what that task takes. */
-export interface FarTask {
-  readonly task: string;
-  readonly input: unknown;
-}
-
-export type FarMessage =
-  | { readonly kind: 'progress'; readonly stage: string; readonly done: number }
-  | { readonly kind: 'done'; readonly output: unknown }
-  | { readonly kind: 'fault'; readonly report: FaultReport };
+import type { FarMessage, FarTask } from './tasks.ts';
 
 /** Runs a task of `worker.ts` in a thread of its own; arrays come back without being copied. */
 export function farWork<T>(what: string, { task, input }: FarTask): Promise<T> {

@@ -1,6 +1,18 @@
 // What goes to the thread beside the command, and what comes back?
 
+import type { FaultReport } from './faults.ts';
 import type { Assignment, Mesh, MeshQuality, ReadOptions, RunContext, RunParts } from '../src/index.ts';
+
+/** What the worker is asked: one entry of its table of tasks, and what that task takes. */
+export interface FarTask {
+  readonly task: string;
+  readonly input: unknown;
+}
+
+export type FarMessage =
+  | { readonly kind: 'progress'; readonly stage: string; readonly done: number }
+  | { readonly kind: 'done'; readonly output: unknown }
+  | { readonly kind: 'fault'; readonly report: FaultReport };
 
 export type RunCommand = 'modes' | 'threshold' | 'absorb';
 

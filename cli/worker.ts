@@ -21,9 +21,8 @@ import {
   startThreads,
   thresholdRecord,
 } from '../src/index.ts';
-import type { FarMessage, FarTask } from './far-work.ts';
 import { reportFault } from './faults.ts';
-import type { MeshInput, MeshOutput, RunInput, RunOutput } from './tasks.ts';
+import type { FarMessage, FarTask, MeshInput, MeshOutput, RunInput, RunOutput } from './tasks.ts';
 
 /** Milliseconds between two reports. */
 const PACE = 50;
