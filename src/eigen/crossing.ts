@@ -1,7 +1,7 @@
 // At which real k and real level does a mode lie on the real axis?
 
 import { complex, type ComplexArray, modulus } from '../numerics/complex.ts';
-import { inverseStep } from './improve.ts';
+import { inverseStep, residualStep } from './improve.ts';
 import type { EigenProblem } from './problem.ts';
 import { type EigenGroup, rayleighGroups } from './rayleigh.ts';
 
@@ -25,6 +25,8 @@ export interface CrossingRequest {
   readonly columns: number;
   /** Absolute distance within which modes count as one group. */
   readonly groupWidth: number;
+  /** Members of the group that is followed: near the border of `groupWidth` it decides. */
+  readonly multiplicity?: number;
   readonly largestSteps?: number;
 }
 
@@ -36,18 +38,20 @@ export const ROUNDING = 5e-15;
  * gain all their digits in two or three. The level moves by −Im κ / Im κ′, then k by Re(κ + κ′ δ).
  */
 export function findCrossing(problem: EigenProblem, request: CrossingRequest): Crossing | null {
-  const { columns, groupWidth } = request;
+  const { columns } = request;
   let { k, level, space } = request;
+  // with neighbours in the space, plain inverse iteration would turn all columns into the mode next to the shift
+  const improve = columns > (request.multiplicity ?? columns) ? residualStep : inverseStep;
   let last: Crossing | null = null;
   const limit = request.largestSteps ?? 10;
   for (let step = 1; step <= limit; step++) {
     const inverse = problem.factorize(complex(k, 0), level);
-    for (let i = 0; i < 2; i++) space = inverseStep(problem, inverse, complex(k), level, space, columns);
+    for (let i = 0; i < 2; i++) space = improve(problem, inverse, complex(k), level, space, columns);
     inverse.release();
     const before = { k, level };
     let group: EigenGroup | null = null;
     for (let inner = 0; inner < 6; inner++) {
-      group = nearest(rayleighGroups(problem, complex(k), level, space, columns, groupWidth), k);
+      group = groupAt(problem, request, k, level, space);
       if (!group || group.slope.im === 0) return last;
       const move = -group.k.im / group.slope.im;
       level += move;
@@ -63,6 +67,26 @@ export function findCrossing(problem: EigenProblem, request: CrossingRequest): C
     if (converged) return last;
   }
   return last;
+}
+
+/** Factors on the width, tried in turn until the nearest group has the members wanted. */
+const WIDTHS = [1, 4, 1 / 4, 16, 1 / 16];
+
+function groupAt(
+  problem: EigenProblem,
+  { columns, groupWidth, multiplicity }: CrossingRequest,
+  k: number,
+  level: number,
+  space: ComplexArray,
+): EigenGroup | null {
+  let first: EigenGroup | null = null;
+  for (const factor of WIDTHS) {
+    const group = nearest(rayleighGroups(problem, complex(k), level, space, columns, factor * groupWidth), k);
+    if (!group) return first;
+    if (multiplicity === undefined || group.multiplicity === multiplicity) return group;
+    first ??= group;
+  }
+  return first;
 }
 
 function nearest(groups: readonly EigenGroup[], k: number): EigenGroup | null {

@@ -100,7 +100,7 @@ function groupSlope(problem: EigenProblem, k: Complex, level: number, U: Complex
   return scale(trace, -1 / columns);
 }
 
-/** Offsets δ and vectors of Σ f_j(k) P_j + δ Σ f_j′(k) P_j; null where the second matrix is singular. */
+/** Offsets δ and vectors of Σ f_j(k) P_j + δ Σ f_j′(k) P_j; null where the second matrix is singular or not finite. */
 function smallPencil(
   problem: EigenProblem,
   projected: readonly ComplexArray[],
@@ -120,6 +120,7 @@ function smallPencil(
       slope[s + 1] = slope[s + 1] + byK.re * b + byK.im * a;
     }
   });
+  if (!slope.every(Number.isFinite)) return null;
   if (columns === 1) {
     const d = complex(slope[0], slope[1]);
     if (modulus(d) === 0) return null;
