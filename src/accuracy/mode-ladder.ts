@@ -102,13 +102,14 @@ export function climbModes(family: (order: number) => DeviceFamily, request: Mod
     const groupsUp = groupsAt(up, higher);
     const owned = inWindow(tiles, groups);
     covered &&= owned.every((o) => stillThere(o.group, groupsUp[o.tile]));
-    const errors = owned.map((o) => discretization(o.group, groupsUp[o.tile]));
-    const reached = owned.every((o, i) => errors[i] <= 10 ** -digits * modulus(o.group.k));
+    const goal = 10 ** -digits;
+    const rows = owned.flatMap((o) => rowsOf(here, up, level, goal, o.group, groupsUp[o.tile]));
+    const reached = rows.every((row) => row.error <= goal * modulus(row.group.k));
     if (reached || order + 1 >= HIGHEST_ORDER) {
       const modes: FoundMode[] = [];
       const dropped: { k: Complex; reason: string }[] = [];
-      for (const [i, o] of owned.entries()) {
-        const { k, vectors, multiplicity } = o.group;
+      for (const { group, error } of rows) {
+        const { k, vectors, multiplicity } = group;
         const check = checkLayer(here, layer, k, level, vectors, multiplicity);
         if (check.sensitivity > LAYER_MODE_SENSITIVITY) {
           dropped.push({
@@ -117,7 +118,7 @@ export function climbModes(family: (order: number) => DeviceFamily, request: Mod
           });
           continue;
         }
-        modes.push({ group: o.group, layer: check, error: errorParts(o.group, errors[i], layer) });
+        modes.push({ group, layer: check, error: errorParts(group, error, layer) });
       }
       return { modes: joinUnresolved(modes), dropped, covered, order, reached };
     }
@@ -190,17 +191,64 @@ const LARGEST_MOVE = 0.02;
 const stillThere = (group: EigenGroup, higher: readonly EigenGroup[]): boolean =>
   discretization(group, higher) <= LARGEST_MOVE * modulus(group.k);
 
-/** Distance to the same group one order higher; a group that has split there counts by its farthest part. */
-function discretization(group: EigenGroup, higher: readonly EigenGroup[]): number {
+/** A row of the answer with what the next order says of it. */
+interface LadderRow {
+  readonly group: EigenGroup;
+  readonly error: number;
+}
+
+/**
+ * One row a group; or one a member, where the members stay apart by more than the goal whatever the order: then they are
+ * modes of their own that the group width has caught, such as the pair of a slightly dented disk.
+ */
+function rowsOf(
+  here: DeviceFamily,
+  up: DeviceFamily,
+  level: number,
+  goal: number,
+  group: EigenGroup,
+  higher: readonly EigenGroup[],
+): LadderRow[] {
+  const whole = { group, error: discretization(group, higher) };
+  if (group.multiplicity === 1 || group.spread <= goal * modulus(group.k)) return [whole];
+  const same = sameMembers(group, higher);
+  const vectors = new Float64Array(same.reduce((sum, g) => sum + g.vectors.length, 0));
+  let at = 0;
+  for (const g of same) {
+    vectors.set(g.vectors, at);
+    at += g.vectors.length;
+  }
+  const count = same.reduce((sum, g) => sum + g.multiplicity, 0);
+  if (count !== group.multiplicity) return [whole];
+  const [mean] = rayleighGroups(up, group.k, level, vectors, count, Infinity, false);
+  if (!mean || Math.abs(mean.spread / group.spread - 1) > 0.2) return [whole];
+  if (group.spread < 3 * modulus(subtract(mean.k, group.k))) return [whole];
+  const parts = rayleighGroups(here, group.k, level, group.vectors, count, group.spread / 2);
+  const partsUp = rayleighGroups(up, group.k, level, vectors, count, group.spread / 2, false);
+  return parts.map((part) => ({ group: part, error: discretization(part, partsUp) }));
+}
+
+/** The groups one order higher that hold as many members, nearest first. */
+function sameMembers(group: EigenGroup, higher: readonly EigenGroup[]): EigenGroup[] {
   const near = [...higher].sort((a, b) => modulus(subtract(a.k, group.k)) - modulus(subtract(b.k, group.k)));
+  const out: EigenGroup[] = [];
   let count = 0;
-  let error = group.spread;
   for (const g of near) {
     if (count >= group.multiplicity) break;
-    error = Math.max(error, modulus(subtract(g.k, group.k)));
+    out.push(g);
     count += g.multiplicity;
   }
-  return count >= group.multiplicity ? error : Infinity;
+  return out;
+}
+
+/**
+ * Distance to the same group one order higher; a group that has split there counts by its farthest part. Infinity where
+ * members are missing there.
+ */
+function discretization(group: EigenGroup, higher: readonly EigenGroup[]): number {
+  const same = sameMembers(group, higher);
+  if (same.reduce((sum, g) => sum + g.multiplicity, 0) < group.multiplicity) return Infinity;
+  return Math.max(group.spread, ...same.map((g) => modulus(subtract(g.k, group.k))));
 }
 
 /** Rows closer than their errors are one row: a cluster of higher multiplicity, its spread part of the error. */
@@ -251,7 +299,8 @@ function join(a: FoundMode, b: FoundMode): FoundMode {
 function errorParts(group: EigenGroup, discretizationError: number, layer: LayerPlan): ErrorParts {
   const k = modulus(group.k);
   return {
-    discretization: discretizationError,
+    // an error as large as the number says that nothing is known
+    discretization: Math.min(discretizationError, k),
     boundary: returnedAt(layer, group.k) * 2 * Math.abs(group.k.im),
     algebra: 1e-14 * k,
   };

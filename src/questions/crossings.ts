@@ -10,7 +10,7 @@ import { followCluster, type ModePath } from '../eigen/follow.ts';
 import { type EigenGroup, gather, rayleighGroups } from '../eigen/rayleigh.ts';
 import { modesInWindow, ownGroups } from '../eigen/window.ts';
 import { type Complex, modulus } from '../numerics/complex.ts';
-import type { LevelSense } from '../operator/device-family.ts';
+import type { DeviceFamily, LevelSense } from '../operator/device-family.ts';
 import { multipoleJumps, multipoleOrder, type Multipoles } from '../scattering/contrast.ts';
 import { modeLabel } from './label.ts';
 import { expectedModes } from './mode-count.ts';
@@ -46,6 +46,8 @@ export interface CrossingsAnswer {
   readonly crossings: readonly AxisMode[];
   /** Modes that were followed and did not cross in the band below levelMax. */
   readonly others: readonly ModePath[];
+  /** Modes of the band that lie beyond the axis at level 0: under gain the device lases without pump. */
+  readonly beyond: readonly Complex[];
   readonly levelMax: number;
   readonly covered: boolean;
   readonly digits: number;
@@ -98,18 +100,14 @@ export function findCrossings(device: Device, sense: LevelSense, request: Crossi
   });
   const width = groupWidth(digits, kMax);
   const groups = found.tiles.map((t) => rayleighGroups(family, t.shift, 0, t.vectors, t.ks.length, width));
-  const start = ownGroups(found.tiles, groups, width)
-    .map((o) => o.group)
-    .filter((g) => g.k.re > 0 && mayCross(g, levelMax, sense));
+  const all = ownGroups(found.tiles, groups, width).map((o) => o.group);
+  const beyond = all.map((g) => g.k).filter((k) => k.re >= kMin && k.re <= kMax && !(toAxis(k, sense) > 0));
+  const start = all.filter((g) => g.k.re > 0 && mayCross(g, levelMax, sense));
 
   // 2 followed in clusters to the axis
-  const clusters = gather(
-    start.map((g) => g.k),
-    CLUSTER_WIDTH * kMax,
-  );
+  const clusters = clustersOf(start, CLUSTER_WIDTH * kMax);
   const paths: ModePath[] = [];
-  clusters.forEach((members, i) => {
-    const list = members.map((m) => start[m]);
+  clusters.forEach((list, i) => {
     const columns = list.reduce((sum, g) => sum + g.multiplicity, 0);
     const vectors = new Float64Array(2 * family.size * columns);
     let at = 0;
@@ -132,7 +130,7 @@ export function findCrossings(device: Device, sense: LevelSense, request: Crossi
 
   // 3 polished with their errors
   const inBand = paths.filter((p) => p.crossing && p.crossing.k >= kMin && p.crossing.k <= kMax);
-  const crossings = inBand.map((path, i) => {
+  const crossings = inBand.flatMap((path, i) => {
     request.progress?.('polishing', i / inBand.length);
     return climbCrossing(prepared, direction, sense, path, digits, width);
   });
@@ -140,6 +138,7 @@ export function findCrossings(device: Device, sense: LevelSense, request: Crossi
   return {
     crossings,
     others: paths.filter((p) => !inBand.includes(p)),
+    beyond,
     levelMax,
     covered: found.covered,
     digits,
@@ -151,10 +150,25 @@ export function findCrossings(device: Device, sense: LevelSense, request: Crossi
 /** Modes closer than this (relative) are followed together. */
 const CLUSTER_WIDTH = 2e-3;
 
+/** In dense spectra clusters are cut until they have no more members: one shift serves them all. */
+const MOST_TOGETHER = 8;
+
+function clustersOf(groups: readonly EigenGroup[], width: number): EigenGroup[][] {
+  const ks = groups.map((g) => g.k);
+  return gather(ks, width).flatMap((indices) => {
+    const list = indices.map((i) => groups[i]);
+    const members = list.reduce((sum, g) => sum + g.multiplicity, 0);
+    return members > MOST_TOGETHER && list.length > 1 ? clustersOf(list, width / 2) : [list];
+  });
+}
+
+/** What a mode at level 0 lacks to the axis; negative beyond it. */
+const toAxis = (k: Complex, sense: LevelSense): number => (sense === 'gain' ? -k.im : k.im);
+
 /** A mode whose tangent needs much more than the largest level is not followed; twice leaves room for curvature. */
 function mayCross(group: EigenGroup, levelMax: number, sense: LevelSense): boolean {
   const toward = sense === 'gain' ? group.slope.im : -group.slope.im;
-  const distance = sense === 'gain' ? -group.k.im : group.k.im;
+  const distance = toAxis(group.k, sense);
   return distance > 0 && toward > 0 && distance / toward < 2 * levelMax;
 }
 
@@ -164,7 +178,10 @@ function mayCross(group: EigenGroup, levelMax: number, sense: LevelSense): boole
  */
 const SHARE_OF_GOAL = 0.1;
 
-/** Raises the order until k and the level have their digits; the errors come from one order more. */
+/**
+ * Raises the order until k and the level have their digits; the errors come from one order more. A group whose members
+ * stay apart by more than the digits allow, whatever the order, is taken apart.
+ */
 function climbCrossing(
   prepared: Prepared,
   direction: 'outgoing' | 'incoming',
@@ -172,24 +189,37 @@ function climbCrossing(
   path: ModePath,
   digits: number,
   width: number,
-): AxisMode {
+  startOrder = resolutionFor(digits).order,
+): AxisMode[] {
   const { device, layer } = prepared;
-  let order = resolutionFor(digits).order;
+  let order = startOrder;
   let here: Crossing = path.crossing!;
   for (;;) {
     const up = familyOf(prepared, order + 1, direction, sense);
     const columns = here.group.multiplicity;
-    const next = findCrossing(up, {
+    const tried = findCrossing(up, {
       k: here.k,
       level: here.level,
       space: embed(spaceOf(prepared, order + 1), spaceOf(prepared, order), here.group.vectors, columns),
       columns,
       groupWidth: width,
+      multiplicity: columns,
     });
+    const next = tried?.group.multiplicity === columns ? tried : null;
     const kStep = next ? Math.abs(next.k - here.k) : Infinity;
     const levelStep = next ? Math.abs(next.level - here.level) : Infinity;
     const goal = SHARE_OF_GOAL * 10 ** -digits;
     const floor = (ROUNDING * here.k) / Math.abs(here.group.slope.im);
+    const family = familyOf(prepared, order, direction, sense);
+    if (next && trulyApart(here.group, next.group, kStep, 10 ** -digits * here.k)) {
+      const parts = takeApart(family, here);
+      if (parts) {
+        const finer = here.group.spread / 2;
+        return parts.flatMap((part) =>
+          climbCrossing(prepared, direction, sense, pathTo(path, part), digits, finer, order),
+        );
+      }
+    }
     const reached = kStep <= goal * here.k && levelStep <= Math.max(goal * here.level, floor);
     if (reached || !next || order + 1 >= HIGHEST_ORDER) {
       const { vectors, multiplicity, spread, slope } = here.group;
@@ -204,21 +234,72 @@ function climbCrossing(
       // what the layer returns moves k by that share of twice the half width that the mode has without level
       const returned = 2 * returnedToMode(layer, { re: here.k, im: 0 }, multipoles);
       const boundary = returned * Math.abs(slope.im) * here.level;
-      return {
-        k: here.k,
-        kError: Math.max(kStep, spread) + boundary + 1e-14 * here.k,
-        level: here.level,
-        levelError: levelStep + returned * here.level + floor,
-        multiplicity,
-        label: modeLabel(multipoles),
-        group: here.group,
-        order,
-        multipoles,
-        path: { levels: path.levels, ks: path.ks },
-        reached,
-      };
+      const levelSpread = imaginarySpread(family, here) / Math.abs(slope.im);
+      return [
+        {
+          k: here.k,
+          // an error as large as the number says that nothing is known
+          kError: Math.min(here.k, Math.max(kStep, spread) + boundary + 1e-14 * here.k),
+          level: here.level,
+          levelError: Math.min(here.level, Math.max(levelStep, levelSpread) + returned * here.level + floor),
+          multiplicity,
+          label: modeLabel(multipoles),
+          group: here.group,
+          order,
+          multipoles,
+          path: { levels: path.levels, ks: path.ks },
+          reached,
+        },
+      ];
     }
     order++;
     here = next;
   }
+}
+
+/** Members are modes of their own when the next order leaves them as far apart, farther than it moves their mean. */
+function trulyApart(group: EigenGroup, next: EigenGroup, kStep: number, goal: number): boolean {
+  if (group.multiplicity === 1 || group.spread <= goal) return false;
+  return group.spread > 3 * kStep && Math.abs(next.spread / group.spread - 1) < 0.2;
+}
+
+/** Crossings of the parts of a group, each found anew; null where they do not stay apart. */
+function takeApart(family: DeviceFamily, { k, level, group }: Crossing): Crossing[] | null {
+  const { vectors, multiplicity: columns, spread } = group;
+  const parts = rayleighGroups(family, { re: k, im: 0 }, level, vectors, columns, spread / 2);
+  const out: Crossing[] = [];
+  for (const { k: from, slope, multiplicity } of parts) {
+    const move = -from.im / slope.im;
+    const found = findCrossing(family, {
+      k: from.re + slope.re * move,
+      level: level + move,
+      space: vectors,
+      columns,
+      groupWidth: spread / 2,
+      multiplicity,
+    });
+    const twin = found && out.some((o) => Math.abs(o.k - found.k) + Math.abs(o.level - found.level) < 0.01 * spread);
+    if (!found?.converged || twin || !(found.level > 0) || found.group.multiplicity !== multiplicity) return null;
+    out.push(found);
+  }
+  return out.length > 1 ? out : null;
+}
+
+/** The way of the group with the part's own end. */
+function pathTo(path: ModePath, crossing: Crossing): ModePath {
+  const keep = path.levels.map((level, i) => level < crossing.level && i + 1 < path.levels.length);
+  return {
+    ...path,
+    multiplicity: crossing.group.multiplicity,
+    levels: [...path.levels.filter((_, i) => keep[i]), crossing.level],
+    ks: [...path.ks.filter((_, i) => keep[i]), { re: crossing.k, im: 0 }],
+    crossing,
+  };
+}
+
+/** Largest |Im k| of a member while the mean lies on the axis. */
+function imaginarySpread(family: DeviceFamily, { k, level, group }: Crossing): number {
+  if (group.multiplicity === 1) return 0;
+  const members = rayleighGroups(family, { re: k, im: 0 }, level, group.vectors, group.multiplicity, 0, false);
+  return Math.max(0, ...members.map((m) => Math.abs(m.k.im)));
 }

@@ -27,8 +27,11 @@ export function modesSentence(device: Device, answer: ModesAnswer): string {
 /** "Lases first at 1.5231 um ± 0.0002 (k = 4.1253 /um) with 38.2 /cm (166 dB/cm) in resonator; the next needs 12 % more." */
 export function thresholdSentence(device: Device, answer: ThresholdAnswer): string {
   const first = answer.crossings[0];
-  if (!first) return `No lasing threshold between ${bandText(device)} up to D = ${answer.levelMax}.`;
-  return `Lases first at ${placeText(device, first.k, first.kError)} with ${levelText(device, first, 'gain')}${next(answer.crossings)}.`;
+  const count = answer.beyond.length;
+  const without =
+    count === 0 ? '' : ` ${count} ${count > 1 ? 'modes lase' : 'mode lases'} without pump, by the gain in the file.`;
+  if (!first) return `No lasing threshold between ${bandText(device)} up to D = ${answer.levelMax}.${without}`;
+  return `Lases first at ${placeText(device, first.k, first.kError)} with ${levelText(device, first, 'gain')}${next(answer.crossings)}.${without}`;
 }
 
 /** "Absorbs everything first at … with … of loss in …; the next needs 12 % more." */
@@ -77,11 +80,19 @@ export function placeText(device: Device, k: number, kError: number): string {
   return `${toError(value, error)}${unitText(device)} ± ${errorText(error)} (${kText})`;
 }
 
-/** "D = 0.0092002 ± 3e-7, 38.2 /cm (166 dB/cm), in rim". */
+/** "D = 0.0092002 ± 3e-7, 38.2 /cm (166 dB/cm) in rim"; the coefficient is that of D alone, not of the body's own loss. */
 function levelText(device: Device, mode: AxisMode, sense: 'gain' | 'loss'): string {
   const active = device.bodies.filter((b) => b.pumpWeight > 0);
-  const names = [...new Set(active.map((b) => (active.length > 1 ? b.group : b.name)))];
+  const nameOf = (b: (typeof active)[number]): string => (active.length > 1 ? b.group : b.name);
+  const names = [...new Set(active.map(nameOf))];
   const lead = active[0];
+  const alike = active.every(
+    (b) =>
+      b.pumpWeight === lead.pumpWeight &&
+      b.permittivity.re === lead.permittivity.re &&
+      b.permeability.re === lead.permeability.re &&
+      b.permeability.im === lead.permeability.im,
+  );
   const report = gainReport(
     (sense === 'gain' ? 1 : -1) * mode.level * lead.pumpWeight,
     { re: lead.permittivity.re, im: 0 },
@@ -94,5 +105,8 @@ function levelText(device: Device, mode: AxisMode, sense: 'gain' | 'loss'): stri
       ? ''
       : `, ${significant(Math.abs(report.perCentimetre), 3)} /cm (${significant(Math.abs(report.decibelPerCentimetre!), 3)} dB/cm)`;
   const verb = sense === 'gain' ? '' : 'added loss ';
-  return `${verb}D = ${toError(mode.level, mode.levelError)} ± ${errorText(mode.levelError)}${engineer} in ${names.join(', ')}`;
+  const level = `${verb}D = ${toError(mode.level, mode.levelError)} ± ${errorText(mode.levelError)}`;
+  // weights or materials that differ: the coefficient is the first body's
+  if (!alike && engineer !== '') return `${level} in ${names.join(', ')} (${engineer.slice(2)} in ${nameOf(lead)})`;
+  return `${level}${engineer} in ${names.join(', ')}`;
 }
