@@ -69,7 +69,7 @@ function ladder({ device, near, side, order, levels, layerTolerance }: Ladder): 
     const pair = Math.min(2, found.ks.length);
     const groups = rayleighGroups(
       family,
-      found.ks[0]!,
+      found.ks[0],
       0,
       found.vectors.subarray(0, 2 * family.size * pair),
       pair,
@@ -78,7 +78,7 @@ function ladder({ device, near, side, order, levels, layerTolerance }: Ladder): 
     groups.sort(
       (a, b) => Math.hypot(a.k.re - near.re, a.k.im - near.im) - Math.hypot(b.k.re - near.re, b.k.im - near.im),
     );
-    out.push(groups[0]!.k);
+    out.push(groups[0].k);
   }
   return out;
 }

@@ -26,7 +26,7 @@ test('two resonances of multiplicity 1, both to the digits asked for, at an orde
   expect(m1.map((m) => m.multiplicity)).toEqual([1, 1]);
   expect(answer.reached).toBe(true);
   expect(answer.order).toBeLessThan(10);
-  const split = Math.abs(m1[0]!.k.re - m1[1]!.k.re) / m1[0]!.k.re;
+  const split = Math.abs(m1[0].k.re - m1[1].k.re) / m1[0].k.re;
   expect(split).toBeGreaterThan(1e-5);
   expect(split).toBeLessThan(1e-4);
 });

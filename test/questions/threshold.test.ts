@@ -23,11 +23,11 @@ test(
     expect(answer.crossings.length).toBeGreaterThan(0);
     for (const { path, k, level } of answer.crossings) {
       expect(path.levels[0]).toBe(0);
-      expect(path.ks[0]!.im).toBeLessThan(0);
+      expect(path.ks[0].im).toBeLessThan(0);
       // the path is of the starting order, the crossing of the last: they agree to the digits asked for
       expect(Math.abs(path.levels.at(-1)! / level - 1)).toBeLessThan(1e-5);
       expect(Math.abs(path.ks.at(-1)!.re / k - 1)).toBeLessThan(1e-5);
-      path.levels.forEach((l, i) => i > 0 && expect(l).toBeGreaterThan(path.levels[i - 1]!));
+      path.levels.forEach((l, i) => i > 0 && expect(l).toBeGreaterThan(path.levels[i - 1]));
     }
     const levels = answer.crossings.map((c) => c.level);
     expect(levels).toEqual([...levels].sort((a, b) => a - b));

@@ -203,7 +203,7 @@ function layeredPoles(): Case[] {
   const out: Case[] = [];
   const lowQ = 3;
   for (const name of Object.keys(layered.structures)) {
-    const structure = layered.structures[name]!;
+    const structure = layered.structures[name];
     const lossless = structure.eps.every((e) => typeof e === 'number');
     for (const pol of POLARIZATIONS) {
       for (const band of [
@@ -253,7 +253,7 @@ function layeredCrossings(): Case[] {
       t.m === 0 ? 1 : 2,
       8,
       `m = ${t.m}`,
-      (k) => layeredDevice(layered.structures[t.name]!, { polarization: t.pol, band: bandAbout(k), pumped: t.pumped }),
+      (k) => layeredDevice(layered.structures[t.name], { polarization: t.pol, band: bandAbout(k), pumped: t.pumped }),
     ),
   );
 }
@@ -275,7 +275,7 @@ function clusterPoles(): Case[] {
         long: entry.name === 'twelve',
         rows: () =>
           modeRows({
-            device: clusterDevice(clusters.structures[entry.name]!, { polarization: entry.pol, band }),
+            device: clusterDevice(clusters.structures[entry.name], { polarization: entry.pol, band }),
             exact,
             digits: CLUSTER_DIGITS,
             qMin: lowQ,
@@ -295,7 +295,7 @@ function clusterCrossings(): Case[] {
       1,
       CROSSING_DIGITS,
       '',
-      (k) => clusterDevice(clusters.structures[t.name]!, { polarization: t.pol, band: bandAbout(k), pumped: t.pumped }),
+      (k) => clusterDevice(clusters.structures[t.name], { polarization: t.pol, band: bandAbout(k), pumped: t.pumped }),
       t.name === 'twelve',
     ),
   );

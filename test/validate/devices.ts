@@ -38,7 +38,7 @@ export function layeredDevice({ radii, eps }: Layers, setting: Setting): Device 
     const shape = open
       ? { ring: { center: [0, 0], outer: radii[1], inner: radii[0] } }
       : { disk: { center: [0, 0], radius: radii[i] } };
-    bodies.push({ index: i, eps: eps[i]!, shape });
+    bodies.push({ index: i, eps: eps[i], shape });
   }
   return device(bodies, setting);
 }
