@@ -2,7 +2,8 @@
 
 import { resolutionFor } from '../accuracy/resolution.ts';
 import type { Device } from '../device/model.ts';
-import type { Complex } from '../numerics/complex.ts';
+import { scaleColumn, transposeProduct } from '../eigen/columns.ts';
+import type { Complex, ComplexArray } from '../numerics/complex.ts';
 import { closeByChannels } from '../operator/channel-boundary.ts';
 import { driveMultipoles, normaliseDrive, power } from '../scattering/amplitudes.ts';
 import {
@@ -43,9 +44,9 @@ export interface ForwardCheck {
 }
 
 export interface AbsorbingMode extends AxisMode {
-  /** One orthonormal drive a member of the degenerate group. */
+  /** One orthonormal drive a member of the degenerate group; the group's vectors are the fields under these drives. */
   readonly drives: readonly AbsorbingDrive[];
-  /** Largest outgoing share to be expected on the own mesh from kError: (2Q δ/k)², Q and δ of the crossing's zero. */
+  /** Largest outgoing share to be expected on the own mesh, from the errors of k and level on both meshes. */
   readonly outgoingExpected: number;
 }
 
@@ -104,38 +105,66 @@ export function proveKnobCrossing(crossing: KnobCrossing): AbsorbingMode {
 }
 
 function prove(prepared: Prepared, own: Prepared, mode: AxisMode): AbsorbingMode {
-  // b − a of a field without outgoing waves: the drive is its negative
-  const incoming = mode.multipoles.map((a) => Float64Array.from(a, (v) => -v));
-  const drives = orthonormalDrives(incoming);
+  const { drives, vectors } = orthonormalDrives(mode);
   const same = forwardCheck(prepared, mode.order, mode, drives);
   const other = forwardCheck(own, mode.order + 1, mode, drives);
-  // |S| near the zero z and its pole at about z − 2i|Im|: |δ| / |z − p|, with |z − p| = D |dk/dD| per unit of level
-  const width = Math.abs(mode.group.slope.im) * mode.level;
-  const off = mode.kError + Math.abs(mode.group.slope.im) * mode.levelError;
+  // both meshes are off: twice the distance from the zero
+  const off = 2 * (mode.kError + Math.abs(mode.group.slope.im) * mode.levelError);
   return {
     ...mode,
+    group: { ...mode.group, vectors },
+    multipoles: drives.map((a) => Float64Array.from(a, (v) => -v)),
     drives: drives.map((amplitudes, i) => ({ amplitudes, sameMesh: same[i], ownMesh: other[i] })),
-    outgoingExpected: (off / Math.max(width, 1e-300)) ** 2,
+    outgoingExpected: Math.min(1, (off * outgoingPerDetuning(prepared, mode, vectors)) ** 2),
   };
 }
 
-/** Gram–Schmidt on the members' incoming amplitudes; the first member of the group leads. */
-function orthonormalDrives(incoming: readonly Multipoles[]): Multipoles[] {
-  const out: Multipoles[] = [];
-  for (const a of incoming) {
-    const v = Float64Array.from(a);
+/**
+ * |db/dk| for a drive of unit power. Green's second identity between the fields at the zero and beside it gives
+ * 8 p_b Σ (−1)^m a_{−m} b_m = ± δk uᵀA_k u, A_k = ∂A/∂k with the incoming layer; of a group the Frobenius mean. For a
+ * lossless body of flat loss this is 1/(2 D |dk/dD|): the zero's distance from its pole.
+ */
+function outgoingPerDetuning(prepared: Prepared, mode: AxisMode, vectors: ComplexArray): number {
+  const family = familyOf(prepared, mode.order, 'incoming', 'loss');
+  const n = family.size;
+  const { multiplicity: columns } = mode;
+  const work = new Float64Array(2 * n * columns);
+  family.multiplyInto(work, { re: mode.k, im: 0 }, mode.level, 'byK', vectors, columns);
+  const { permittivity, permeability } = prepared.device.background;
+  const background = prepared.device.polarization === 'Ez' ? permeability : permittivity;
+  return (background * Math.hypot(...transposeProduct(vectors, columns, work, columns, n))) / (8 * Math.sqrt(columns));
+}
+
+/**
+ * Gram–Schmidt on the members' incoming amplitudes, the first member leading, and the fields that belong to the results:
+ * b − a of a field without outgoing waves is minus its drive.
+ */
+function orthonormalDrives(mode: AxisMode): { readonly drives: Multipoles[]; readonly vectors: ComplexArray } {
+  const n = mode.group.vectors.length / (2 * mode.multiplicity);
+  const vectors = Float64Array.from(mode.group.vectors);
+  const drives: Multipoles[] = [];
+  mode.multipoles.forEach((jump, j) => {
+    const drive = jump.map((v) => -v);
     for (let pass = 0; pass < 2; pass++) {
-      for (const u of out) {
-        const c = inner(u, v);
-        for (let i = 0; i < v.length; i += 2) {
-          v[i] = v[i] - (c.re * u[i] - c.im * u[i + 1]);
-          v[i + 1] = v[i + 1] - (c.re * u[i + 1] + c.im * u[i]);
-        }
-      }
+      drives.forEach((other, i) => {
+        const c = inner(other, drive);
+        takeAway(drive, other, c);
+        takeAway(vectors.subarray(2 * n * j, 2 * n * (j + 1)), vectors.subarray(2 * n * i, 2 * n * (i + 1)), c);
+      });
     }
-    out.push(normaliseDrive(v).drive);
+    const { drive: unit, factor } = normaliseDrive(drive);
+    drives.push(unit);
+    scaleColumn(vectors, j, n, factor.re, factor.im);
+  });
+  return { drives, vectors };
+}
+
+/** x ← x − c y. */
+function takeAway(x: ComplexArray, y: ComplexArray, c: Complex): void {
+  for (let i = 0; i < x.length; i += 2) {
+    x[i] = x[i] - (c.re * y[i] - c.im * y[i + 1]);
+    x[i + 1] = x[i + 1] - (c.re * y[i + 1] + c.im * y[i]);
   }
-  return out;
 }
 
 function inner(a: Multipoles, b: Multipoles): Complex {

@@ -134,6 +134,9 @@ function polish(
   let k = ends[0].k.re;
   let at = p0;
   let side = 0;
+  // |d Im k / d knob| from the last two searches; the chord of the samples until then
+  let steepness = Math.abs(slopeIm);
+  let before: { readonly value: number; readonly f: number } | null = null;
   for (let step = 0; step < MOST_STEPS; step++) {
     const value = (p0 * f1 - p1 * f0) / (f1 - f0);
     const guess = k + slopeRe * (value - at);
@@ -150,10 +153,13 @@ function polish(
     k = mode.k.re;
     at = value;
     const f = mode.k.im;
+    if (before && Math.abs(f - before.f) > 10 * mode.kError)
+      steepness = Math.abs((f - before.f) / (value - before.value));
+    before = { value, f };
     if (Math.abs(f) <= mode.kError || step === MOST_STEPS - 1) {
       return {
         value,
-        valueError: (Math.abs(f) + mode.kError) / Math.abs(slopeIm),
+        valueError: (Math.abs(f) + mode.kError) / steepness,
         k,
         kError: mode.kError + Math.abs((slopeRe * f) / slopeIm),
         multiplicity: mode.multiplicity,

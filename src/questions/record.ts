@@ -161,7 +161,9 @@ export function knobRecord(
   if (!first) throw new RangeError('a run needs at least one crossing');
   const proofs = sense === 'loss' ? crossings.map(proveKnobCrossing) : [];
   const book = openBook(first.device, first.answer.prepared, first.answer.order, context);
-  first.mode.vectors.forEach((vector, j) =>
+  const driven = proofs[0]?.group.vectors;
+  const n = first.mode.vectors[0].length / 2;
+  first.mode.vectors.forEach((own, j) =>
     book.addField({
       id: j === 0 ? 'axis-1' : `axis-1-${j + 1}`,
       label: `${sense === 'gain' ? 'lasing' : 'absorbing'} mode, ${knob} = ${first.value.toPrecision(6)}${part(j, first.multiplicity)}`,
@@ -169,7 +171,7 @@ export function knobRecord(
       k: [first.k, 0],
       level: null,
       order: first.answer.order,
-      vector,
+      vector: driven ? driven.subarray(2 * n * j, 2 * n * (j + 1)) : own,
       drive: proofs[0] ? driveTerms(proofs[0].drives[j].amplitudes) : null,
       pattern: sense === 'gain' && j === 0 ? first.mode.farField : null,
     }),
@@ -396,10 +398,12 @@ function openBook(device: Device, prepared: Prepared, order: number, context: Ru
       const space = spaceOf(prepared, input.order);
       const raw = sampleField(space, display, input.vector);
       const peak = largestValue(raw);
-      const by = { re: peak.re / peak.norm, im: -peak.im / peak.norm };
+      // a driven field keeps the size and phase that its drive gives it; a mode's largest value becomes 1
+      const scale = input.drive ? Math.sqrt(peak.norm) : 1;
+      const by = input.drive ? { re: 1, im: 0 } : { re: peak.re / peak.norm, im: -peak.im / peak.norm };
       const coefficients = turned(Float64Array.from(input.vector), by);
       arrays[`field-${input.id}`] = coefficients;
-      arrays[`display-${input.id}`] = sampleField(space, display, coefficients);
+      arrays[`display-${input.id}`] = sampleField(space, display, coefficients).map((v) => v / scale);
       if (input.pattern) arrays[`far-${input.id}`] = input.pattern;
       fields.push({
         id: input.id,
@@ -410,7 +414,7 @@ function openBook(device: Device, prepared: Prepared, order: number, context: Ru
         coefficients: `field-${input.id}`,
         order: input.order,
         display: `display-${input.id}`,
-        scale: 1,
+        scale,
         drive: input.drive,
         farField: input.pattern ? `far-${input.id}` : null,
       });

@@ -140,7 +140,7 @@ export interface RunField {
   readonly k: Pair;
   /** Pump or loss D at which it was computed, or null. */
   readonly level: number | null;
-  /** Array name: interleaved complex coefficients of the finite-element space, scaled so that max |u| is about 1. */
+  /** Array name: interleaved complex coefficients of the finite-element space: max |u| about 1, or the field under `drive`. */
   readonly coefficients: string;
   /** Order of its space; absent: `mesh.order`. */
   readonly order?: number;

@@ -5,7 +5,7 @@ import { tabulateBasis } from '../elements/basis.ts';
 import { MAP_STRIDE, mapInto, tabulateMap } from '../elements/curved-map.ts';
 import type { Space } from '../elements/space.ts';
 import { BACKGROUND } from '../mesh/mesh.ts';
-import { type Complex, type ComplexArray, scale, subtract } from '../numerics/complex.ts';
+import { type Complex, type ComplexArray, modulus, scale, subtract } from '../numerics/complex.ts';
 import { triangleRule } from '../numerics/quadrature.ts';
 import { type LevelSense, regionMaterial } from '../operator/device-family.ts';
 import { addIncident, evaluateWaves, regularWaves, type RegularWaves, waveInto } from './regular-waves.ts';
@@ -139,7 +139,7 @@ export function absorbedPower(
 export function multipoleOrder(device: Device, bodyRadius: number, k: number): number {
   let index = Math.sqrt(device.background.permittivity * device.background.permeability);
   for (const b of device.bodies) {
-    index = Math.max(index, Math.sqrt(Math.hypot(b.permittivity.re, b.permittivity.im) * Math.abs(b.permeability.re)));
+    index = Math.max(index, Math.sqrt(modulus(b.permittivity) * modulus(b.permeability)));
   }
   const x = index * k * bodyRadius;
   return Math.min(200, Math.ceil(x + 3 * Math.cbrt(x)) + 6);
