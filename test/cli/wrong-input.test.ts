@@ -55,6 +55,7 @@ test.each([
   ['a missing file name', ['modes'], /FILE/],
   ['digits out of range', ['modes', 'disk.yaml', '--digits', '40'], /from 2 to 11/],
   ['an unknown knob', ['modes', 'disk.yaml', '--knob', 'radios=1'], /"radius"/],
+  ['an unknown knob to go along', ['absorb', 'disk.yaml', '--along', 'radios=1,2'], /write radius/],
   ['a band that is no band', ['modes', 'disk.yaml', '--band', '3'], /A,B/],
   ['a place below a file', ['modes', 'disk.yaml', '--out', 'disk.yaml/run'], /below the file/],
   ['a run that is none', ['export', 'disk.yaml'], /run folder/],
