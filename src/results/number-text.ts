@@ -2,7 +2,7 @@
 
 /**
  * The value to the last digit that the error leaves standing, with the error to one or two figures:
- * "5.970516 ± 0.000001", "0.0092002 ± 3e-7". An error of 0 or beyond double precision gives 12 figures.
+ * "5.970516 ± 1e-6", "0.0092002 ± 3e-7". An error of 0 or beyond double precision gives 12 figures.
  */
 export function withError(value: number, error: number): string {
   return `${toError(value, error)} ± ${errorText(error)}`;
