@@ -46,7 +46,7 @@ export interface CrossingsAnswer {
   readonly crossings: readonly AxisMode[];
   /** Modes that were followed and did not cross in the band below levelMax. */
   readonly others: readonly ModePath[];
-  /** Modes of the band that lie beyond the axis at level 0: under gain the device lases without pump. */
+  /** Modes of the band that lie beyond the axis at level 0, each member of a group: under gain they lase without pump. */
   readonly beyond: readonly Complex[];
   readonly levelMax: number;
   readonly covered: boolean;
@@ -101,7 +101,9 @@ export function findCrossings(device: Device, sense: LevelSense, request: Crossi
   const width = groupWidth(digits, kMax);
   const groups = found.tiles.map((t) => rayleighGroups(family, t.shift, 0, t.vectors, t.ks.length, width));
   const all = ownGroups(found.tiles, groups, width).map((o) => o.group);
-  const beyond = all.map((g) => g.k).filter((k) => k.re >= kMin && k.re <= kMax && !(toAxis(k, sense) > 0));
+  const beyond = all
+    .filter(({ k }) => k.re >= kMin && k.re <= kMax && !(toAxis(k, sense) > 0))
+    .flatMap(({ k, multiplicity }) => Array.from({ length: multiplicity }, () => k));
   const start = all.filter((g) => g.k.re > 0 && mayCross(g, levelMax, sense));
 
   // 2 followed in clusters to the axis
