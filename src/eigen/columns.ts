@@ -139,3 +139,16 @@ export function orthonormalise(
   }
   return { h, r };
 }
+
+/**
+ * The columns as an orthonormal basis of what they span. Members of a degenerate group may have grown nearly parallel,
+ * which costs the block Rayleigh functional the square of their condition; columns that depend on the others altogether
+ * only get norm 1.
+ */
+export function orthonormalBasis(x: ComplexArray, columns: number, n: number): ComplexArray {
+  if (columns === 1) return normaliseColumns(x, columns, n);
+  const before = Float64Array.from(x);
+  const { r } = orthonormalise(x, columns, new Float64Array(0), 0, n);
+  for (let j = 0; j < columns; j++) if (r[2 * (j + j * columns)] === 0) return normaliseColumns(before, columns, n);
+  return x;
+}

@@ -1,11 +1,11 @@
 // How is a nearly right space of eigenvectors made right?
 
 import type { Complex, ComplexArray } from '../numerics/complex.ts';
-import { addProduct, normaliseColumns, transposeProduct } from './columns.ts';
+import { addProduct, normaliseColumns, orthonormalBasis, transposeProduct } from './columns.ts';
 import { luFactor, luSolveInto } from '../numerics/lu.ts';
 import type { EigenProblem, Inverse } from './problem.ts';
 
-/** Inverse iteration, one step: U ← A(shift)⁻¹ A_k U, columns scaled to norm 1. Best with a shift close to the cluster. */
+/** Inverse iteration, one step: U ← A(shift)⁻¹ A_k U, columns orthonormal. Best with a shift close to the cluster. */
 export function inverseStep(
   problem: EigenProblem,
   inverse: Inverse,
@@ -17,7 +17,7 @@ export function inverseStep(
   const work = new Float64Array(2 * problem.size * columns);
   problem.multiplyInto(work, k, level, 'byK', U, columns);
   inverse.solveInto(work, work, columns);
-  return normaliseColumns(work, columns, problem.size);
+  return orthonormalBasis(work, columns, problem.size);
 }
 
 /**

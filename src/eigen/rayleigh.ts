@@ -12,7 +12,7 @@ import {
 } from '../numerics/complex.ts';
 import { eigenGeneral } from '../numerics/eigenvalues.ts';
 import { luFactor, luSolveInto } from '../numerics/lu.ts';
-import { combine, normaliseColumns, transposeProduct } from './columns.ts';
+import { combine, normaliseColumns, orthonormalBasis, transposeProduct } from './columns.ts';
 import type { EigenProblem } from './problem.ts';
 
 /** Members of a cluster that agree within the tolerance: one row of an answer. */
@@ -52,8 +52,10 @@ export function rayleighGroups(
   if (!first) return [];
   return gather(first.offsets, tolerance).flatMap((members) => {
     const count = members.length;
-    const y = new Float64Array(2 * columns * count);
+    let y: ComplexArray = new Float64Array(2 * columns * count);
     members.forEach((i, j) => y.set(first.vectors.subarray(2 * columns * i, 2 * columns * (i + 1)), 2 * columns * j));
+    // eigenvectors of a degenerate group are those of rounding, as parallel as it likes: its span is what counts
+    y = orthonormalBasis(y, count, columns);
     const own = projected.map((p) =>
       transposeProduct(y, count, combine(p, columns, y, count, columns), count, columns),
     );

@@ -222,7 +222,10 @@ function climbCrossing(
         );
       }
     }
-    const reached = kStep <= goal * here.k && levelStep <= Math.max(goal * here.level, floor);
+    // what still splits a degenerate pair, less with each order, is error too
+    const levelSpread = imaginarySpread(family, here) / Math.abs(here.group.slope.im);
+    const splitting = next && next.group.spread < here.group.spread / 2 ? levelSpread : 0;
+    const reached = kStep <= goal * here.k && Math.max(levelStep, splitting) <= Math.max(goal * here.level, floor);
     if (reached || !next || order + 1 >= HIGHEST_ORDER) {
       const { vectors, multiplicity, spread, slope } = here.group;
       const n = vectors.length / (2 * multiplicity);
@@ -236,7 +239,6 @@ function climbCrossing(
       // what the layer returns moves k by that share of twice the half width that the mode has without level
       const returned = 2 * returnedToMode(layer, { re: here.k, im: 0 }, multipoles);
       const boundary = returned * Math.abs(slope.im) * here.level;
-      const levelSpread = imaginarySpread(family, here) / Math.abs(slope.im);
       return [
         {
           k: here.k,
