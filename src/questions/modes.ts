@@ -80,7 +80,7 @@ export function findModes(device: Device, request: ModesRequest = {}): ModesAnsw
   if (!(qMin >= 0.5)) throw new RangeError(`the lowest Q came as ${qMin}; expected 0.5 or more`);
   const resolution = resolutionFor(digits);
   const { kMin, kMax } = device.band;
-  const wedge = wedgeFor(device, assignment, kMin, kMax, 1 / (2 * qMin));
+  const wedge = wedgeFor(device, assignment, kMin, kMax, 1 / (2 * qMin), 10 ** -digits);
   request.progress?.('meshing', 0);
   const prepared = prepare(device, { kMin, kMax, slope: 1 / (2 * qMin) }, resolution);
   const direction = assignment === 'poles' ? 'outgoing' : 'incoming';
@@ -110,11 +110,20 @@ export function findModes(device: Device, request: ModesRequest = {}): ModesAnsw
   };
 }
 
-/** Poles of passive devices lie below the axis; zeros lie on either side of it as soon as there is loss. */
-export function wedgeFor(device: Device, assignment: Assignment, kMin: number, kMax: number, slope: number): Wedge {
+/**
+ * Poles of passive devices lie below the axis; zeros lie on either side of it as soon as there is loss. `sliver` is what
+ * the discretisation may lift a mode of very high Q across the axis by, relative.
+ */
+export function wedgeFor(
+  device: Device,
+  assignment: Assignment,
+  kMin: number,
+  kMax: number,
+  slope: number,
+  sliver = 1e-9,
+): Wedge {
   const gain = device.bodies.some((b) => b.permittivity.im < 0 || b.permeability.im < 0);
   const loss = device.bodies.some((b) => b.permittivity.im > 0 || b.permeability.im > 0);
-  const sliver = 1e-9;
   return assignment === 'poles'
     ? { kMin, kMax, low: slope, high: gain ? slope : sliver }
     : { kMin, kMax, low: loss ? slope : sliver, high: slope };

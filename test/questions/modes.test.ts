@@ -36,6 +36,15 @@ describe('laws', () => {
     });
   });
 
+  test('a mode of Q = 1e8 is not lost when the discretisation lifts it across the axis', () => {
+    const answer = findModes(diskDevice(3.3, { polarization: 'Ez', band: [4.68, 4.72] }), { qMin: 1000 });
+    const mode = answer.modes.find((m) => m.label === 'm = 12');
+    // mpmath 50 digits: secant on the exact transcendental equation (test/checks/disk-modes.json)
+    const exact = { re: 4.7023611936648635, im: -2.459309577150541e-8 };
+    expect(mode?.multiplicity).toBe(2);
+    expect(Math.hypot(mode!.k.re - exact.re, mode!.k.im - exact.im)).toBeLessThan(1e-5 * exact.re);
+  });
+
   test('a window without modes is empty, covered and reached', () => {
     const answer = findModes(diskDevice(1.5, { polarization: 'Hz', band: [0.5, 0.6] }), { qMin: 10 });
     expect(answer.modes).toEqual([]);
