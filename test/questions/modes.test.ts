@@ -38,11 +38,15 @@ describe('laws', () => {
 
   test('a mode of Q = 1e8 is not lost when the discretisation lifts it across the axis', () => {
     const answer = findModes(diskDevice(3.3, { polarization: 'Ez', band: [4.68, 4.72] }), { qMin: 1000 });
-    const mode = answer.modes.find((m) => m.label === 'm = 12');
     // mpmath 50 digits: secant on the exact transcendental equation (test/checks/disk-modes.json)
     const exact = { re: 4.7023611936648635, im: -2.459309577150541e-8 };
-    expect(mode?.multiplicity).toBe(2);
-    expect(Math.hypot(mode!.k.re - exact.re, mode!.k.im - exact.im)).toBeLessThan(1e-5 * exact.re);
+    // found by its place: at five digits its label may drown, since so little of it reaches the rim
+    const mode = answer.modes.find((m) => Math.abs(m.k.re - exact.re) < 1e-3);
+    expect(answer.modes.map((m) => m.multiplicity)).toEqual([2]);
+    const { k, kError } = answer.modes[0];
+    const distance = Math.hypot(k.re - exact.re, k.im - exact.im);
+    expect(distance).toBeLessThan(1e-5 * exact.re);
+    expect(distance).toBeLessThan(3 * kError);
   });
 
   test('a window without modes is empty, covered and reached', () => {
