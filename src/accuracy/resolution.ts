@@ -17,7 +17,7 @@ export const MOST_DIGITS = 11;
 export const DEFAULT_DIGITS = 5;
 
 /** Highest order the ladder climbs to. */
-export const HIGHEST_ORDER = 14;
+export const HIGHEST_ORDER = 16;
 
 /**
  * Rule of the start; the error from one order more decides whether the order is raised.

@@ -1,6 +1,6 @@
 // How does an open device end: where, how thick, and with which stretched coefficients?
 
-import { argument, complex, type Complex, modulus, multiply, scale } from '../numerics/complex.ts';
+import { argument, complex, type Complex, type ComplexArray, modulus, multiply, scale } from '../numerics/complex.ts';
 import { logHankel } from '../numerics/cylinder-functions.ts';
 
 /** A radial stretched layer R ≤ r ≤ R + L in which r̃ = R + (r − R) e^{iθ}: outgoing waves decay. */
@@ -26,15 +26,24 @@ export interface LayerRequest {
   readonly backgroundIndex: number;
   /** Relative amplitude that may return. */
   readonly tolerance: number;
+  /** Multipoles |m| up to here keep the tolerance as well, of x = n_b k bodyRadius; by default those that radiate freely. */
+  readonly highestOrder?: (x: number) => number;
 }
 
 /** Rotation of the layer. Above 60° no layer mode lies above the ray arg k = −θ; 75° keeps poles down to Q ≈ 0.5 clear of it. */
 export const LAYER_ANGLE = (75 * Math.PI) / 180;
 
+/** Step by which the layer is lengthened until high multipoles keep the tolerance. */
+const LENGTHENING = 1.02;
+
+/** Longest layer, in lengths that the law alone would give: multipoles that need more leave no power. */
+const LONGEST_LAYER = 4;
+
 /**
  * Chooses rim and layer. The rim keeps a gap of a quarter background wavelength to the bodies, but at least a tenth and
  * at most a half of their radius; the layer is as thick as the tolerance asks at the longest wavelength.
- * Error law: 2 exp(−2 k L sin θ), right within 16 % for θ from 45° to 80° (measured on disks, orders 4 to 8).
+ * Error law: 2 exp(−2 k L sin θ), right within 16 % for θ from 45° to 80° (measured on disks, orders 4 to 8); then longer
+ * until the exact return of each multipole keeps the tolerance at both ends of the band.
  * @throws RangeError when the window's argument reaches the layer's angle.
  */
 export function planLayer(request: LayerRequest): LayerPlan {
@@ -47,15 +56,27 @@ export function planLayer(request: LayerRequest): LayerPlan {
   const wavelength = (2 * Math.PI) / (kMax * backgroundIndex);
   const gap = Math.min(Math.max(wavelength / 4, bodyRadius / 10), bodyRadius / 2);
   const rate = 2 * kMin * backgroundIndex * Math.sin(room);
-  const length = Math.log(2 / tolerance) / rate;
   const rimRadius = bodyRadius + gap;
-  return {
+  const shortest = Math.log(2 / tolerance) / rate;
+  const planOf = (length: number): LayerPlan => ({
     rimRadius,
     endRadius: rimRadius + length,
     angle: LAYER_ANGLE,
     backgroundIndex,
     returned: 2 * Math.exp(-rate * length),
+  });
+  const keepsAt = (plan: LayerPlan, k: number): boolean => {
+    const x = backgroundIndex * k * bodyRadius;
+    const M = Math.ceil(request.highestOrder?.(x) ?? x);
+    return Math.max(...returnedOrders(plan, complex(k), M)) <= tolerance;
   };
+  let length = shortest;
+  let plan = planOf(length);
+  while (length < LONGEST_LAYER * shortest && !(keepsAt(plan, kMin) && keepsAt(plan, kMax))) {
+    length *= LENGTHENING;
+    plan = planOf(length);
+  }
+  return plan;
 }
 
 /** What the layer's end returns at one k, relative amplitude. */
@@ -70,12 +91,25 @@ export function returnedAt(plan: LayerPlan, k: Complex): number {
  * For incoming layers the roles change, which equals the conjugate k.
  */
 export function returnedOrders(plan: LayerPlan, k: Complex, M: number): Float64Array {
+  const factors = returnFactors(plan, complex(k.re, -Math.abs(k.im)), M);
+  return Float64Array.from({ length: M + 1 }, (_, m) => Math.hypot(factors[2 * m], factors[2 * m + 1]));
+}
+
+/** a_m/b_m = −H⁽¹⁾_m(z)/H⁽²⁾_m(z) itself, |m| = 0 … M, interleaved, behind the outgoing layer. */
+export function returnFactors(plan: LayerPlan, k: Complex, M: number): ComplexArray {
   const length = plan.endRadius - plan.rimRadius;
   const end = complex(plan.rimRadius + length * Math.cos(plan.angle), length * Math.sin(plan.angle));
-  const z = scale(multiply(complex(k.re, -Math.abs(k.im)), end), plan.backgroundIndex);
-  const out = logHankel(1, M, z);
+  const z = scale(multiply(k, end), plan.backgroundIndex);
+  const forth = logHankel(1, M, z);
   const back = logHankel(2, M, z);
-  return Float64Array.from({ length: M + 1 }, (_, m) => Math.exp(out[2 * m] - back[2 * m]));
+  const factors = new Float64Array(2 * (M + 1));
+  for (let m = 0; m <= M; m++) {
+    const size = -Math.exp(forth[2 * m] - back[2 * m]);
+    const phase = forth[2 * m + 1] - back[2 * m + 1];
+    factors[2 * m] = size * Math.cos(phase);
+    factors[2 * m + 1] = size * Math.sin(phase);
+  }
+  return factors;
 }
 
 /**

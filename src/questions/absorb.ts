@@ -1,6 +1,6 @@
 // Which loss, frequency and input wave make a device absorb everything, and is it so?
 
-import { resolutionFor } from '../accuracy/resolution.ts';
+import { HIGHEST_ORDER, resolutionFor } from '../accuracy/resolution.ts';
 import type { Device } from '../device/model.ts';
 import { scaleColumn, transposeProduct } from '../eigen/columns.ts';
 import type { Complex, ComplexArray } from '../numerics/complex.ts';
@@ -66,7 +66,7 @@ const OWN_MESH_REFINEMENT = 0.83;
 export function findAbsorption(device: Device, request: CrossingsRequest = {}): AbsorbAnswer {
   const answer = findCrossings(device, 'loss', request);
   const resolution = resolutionFor(answer.digits);
-  const own = prepare(device, answer.prepared.scope, resolution, OWN_MESH_REFINEMENT);
+  const own = prepare(device, answer.prepared.scope, resolution, OWN_MESH_REFINEMENT, highestDriven(answer.crossings));
   const crossings = answer.crossings.map((mode, i) => {
     request.progress?.('forward checks', i / answer.crossings.length);
     return prove(answer.prepared, own, mode);
@@ -100,8 +100,22 @@ export function proveKnobCrossing(crossing: KnobCrossing): AbsorbingMode {
     path: crossing.path,
     reached: crossing.reached,
   };
-  const own = prepare(device, prepared.scope, resolutionFor(digits), OWN_MESH_REFINEMENT);
+  const own = prepare(device, prepared.scope, resolutionFor(digits), OWN_MESH_REFINEMENT, highestDriven([axis]));
   return prove(prepared, own, axis);
+}
+
+/** Highest |m| that holds more than 1e-9 of a member's power, at any k. */
+function highestDriven(modes: readonly Pick<AxisMode, 'multipoles'>[]): () => number {
+  let highest = 0;
+  for (const amplitudes of modes.flatMap((mode) => mode.multipoles)) {
+    const M = (amplitudes.length / 2 - 1) / 2;
+    const least = 1e-9 * power(amplitudes);
+    for (let m = -M; m <= M; m++) {
+      const i = 2 * (m + M);
+      if (amplitudes[i] ** 2 + amplitudes[i + 1] ** 2 > least) highest = Math.max(highest, Math.abs(m));
+    }
+  }
+  return () => highest;
 }
 
 function prove(prepared: Prepared, own: Prepared, mode: AxisMode): AbsorbingMode {
@@ -185,29 +199,30 @@ function forwardCheck(
   drives: readonly Multipoles[],
 ): ForwardCheck[] {
   const driveOrder = (drives[0].length / 2 - 1) / 2;
-  const problem: ContrastProblem = {
+  const problemAt = (p: number): ContrastProblem => ({
     device: prepared.device,
-    space: spaceOf(prepared, order),
+    space: spaceOf(prepared, p),
     k: mode.k,
     level: mode.level,
     sense: 'loss',
     order: driveOrder,
-  };
+  });
   const k = { re: mode.k, im: 0 };
-  const family = familyOf(prepared, order, 'outgoing', 'loss');
-  const layered = family.factorize(k, mode.level);
-  const scattered = driveMultipoles(problem, layered, drives);
+  const higher = Math.min(order + SCATTERED_ORDERS, HIGHEST_ORDER);
+  const layered = familyOf(prepared, higher, 'outgoing', 'loss').factorize(k, mode.level);
+  const scattered = driveMultipoles(problemAt(higher), layered, drives);
   layered.release();
+  const family = familyOf(prepared, order, 'outgoing', 'loss');
   const closed = closeByChannels(prepared.device, family, CHANNELS_PER_MULTIPOLE * driveOrder).factorize(k, mode.level);
   const total = drives.map((drive) => closed.drive(drive));
   closed.release();
   const takenScattered = absorbedPower(
-    problem,
+    problemAt(higher),
     scattered.map((d) => d.scattered),
     drives,
   );
   const takenTotal = absorbedPower(
-    problem,
+    problemAt(order),
     total.map((d) => d.field),
     null,
   );
@@ -216,6 +231,12 @@ function forwardCheck(
     scattered: balanceOf(drive, scattered[j].outgoing, takenScattered[j]),
   }));
 }
+
+/**
+ * The channels balance whatever the mesh. The scattered form does not: its incident field is exact, its answer discrete,
+ * and a sharp mode amplifies the difference. It is solved so many orders above the mode's.
+ */
+const SCATTERED_ORDERS = 2;
 
 /** Channels beyond the drive's multipoles carry nothing out, but close the near field of the bodies. */
 const CHANNELS_PER_MULTIPOLE = 2;

@@ -41,8 +41,17 @@ const LARGEST_ARC = 0.6;
  */
 const LAYER_COARSENING = 3;
 
-/** Meshes the device. `refine` < 1 asks for smaller triangles than the rule: an independent mesh for a forward check. */
-export function prepare(device: Device, scope: Scope, resolution: Resolution, refine = 1): Prepared {
+/**
+ * Meshes the device. `refine` < 1 asks for smaller triangles than the rule: an independent mesh for a forward check. The
+ * layer serves the multipoles |m| ≤ `highestOrder` of x = n_b k × body radius; by default those that radiate freely.
+ */
+export function prepare(
+  device: Device,
+  scope: Scope,
+  resolution: Resolution,
+  refine = 1,
+  highestOrder?: (x: number) => number,
+): Prepared {
   const index = Math.sqrt(device.background.permittivity * device.background.permeability);
   const { center, radius } = boundingCircle(device.bodies.map((b) => b.shape));
   const layer = planLayer({
@@ -52,6 +61,7 @@ export function prepare(device: Device, scope: Scope, resolution: Resolution, re
     largestArgument: Math.atan(scope.slope),
     backgroundIndex: index,
     tolerance: resolution.layerTolerance,
+    ...(highestOrder === undefined ? {} : { highestOrder }),
   });
   const size = (n: number): number => (refine * resolution.sizeInWavelengths * 2 * Math.PI) / (scope.kMax * n);
   const { mesh, notes } = meshDeviceWithNotes(device.bodies, {

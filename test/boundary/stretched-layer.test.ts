@@ -88,13 +88,19 @@ describe('plan', () => {
   };
 
   test('returns the tolerance at the longest wavelength and widest argument, less elsewhere', () => {
-    const made = planLayer(request);
+    const made = planLayer({ ...request, highestOrder: () => 0 });
     expect(made.angle).toBe(LAYER_ANGLE);
     expect(made.returned).toBeCloseTo(1e-7, 15);
     expect(returnedAt(made, complex(2 * Math.cos(0.05), -2 * Math.sin(0.05)))).toBeCloseTo(1e-7, 15);
     expect(returnedAt(made, complex(3, 0))).toBeLessThan(1e-7);
     expect(made.rimRadius).toBeGreaterThan(1.5);
     expect(made.endRadius).toBeGreaterThan(made.rimRadius);
+  });
+
+  test.each([0, 5, 12, 20])('is long enough for the multipoles up to %i', (M) => {
+    const made = planLayer({ ...request, highestOrder: () => M });
+    for (const k of [2, 3]) expect(Math.max(...returnedOrders(made, complex(k), M))).toBeLessThanOrEqual(1e-7);
+    expect(made.endRadius).toBeGreaterThanOrEqual(planLayer({ ...request, highestOrder: () => 0 }).endRadius);
   });
 
   test('scaling: lengths by s and k by 1/s, or index by n and k by 1/n', () => {

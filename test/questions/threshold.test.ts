@@ -34,3 +34,19 @@ test(
   },
   CASE_TIMEOUT,
 );
+
+test(
+  'a mode sharper than the digits is followed, though the discretisation may lift it across the axis',
+  () => {
+    const answer = findThresholds(diskDevice(3.3, { polarization: 'Ez', band: [4.68, 4.72] }));
+    // mpmath, 50 digits: secant on the exact transcendental equation, m = 12, Q = 9.6e7
+    const exact = { k: 4.702361193664866, level: 1.1509522389432554e-7 };
+    expect(answer.beyond).toEqual([]);
+    const { k, kError, level, levelError, multiplicity } = answer.crossings[0];
+    expect(multiplicity).toBe(2);
+    expect(Math.abs(k - exact.k)).toBeLessThan(3 * kError);
+    expect(Math.abs(level - exact.level)).toBeLessThan(3 * levelError);
+    expect(Math.abs(level - exact.level)).toBeLessThan(1e-5 * exact.level);
+  },
+  CASE_TIMEOUT,
+);
