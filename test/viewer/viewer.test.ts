@@ -23,7 +23,14 @@ type Command = (typeof COMMANDS)[number];
 let base: string;
 let browser: Browser;
 const servers = new Map<Command, RunServer>();
-const runs = new Map(COMMANDS.map((command) => [command, syntheticRun(command, { rings: 24, sectors: 72 })]));
+const runs = new Map(COMMANDS.map((command) => [command, withPair(syntheticRun(command, { rings: 24, sectors: 72 }))]));
+
+/** The first field twice: the two modes of a degenerate pair. */
+function withPair<R extends ReturnType<typeof syntheticRun>>(run: R): R {
+  const [first] = run.record.fields;
+  const second = { ...first, id: `${first.id}-2`, label: `${first.label} (2 of 2)` };
+  return { ...run, record: { ...run.record, fields: [...run.record.fields, second] } };
+}
 
 beforeAll(async () => {
   base = mkdtempSync(join(tmpdir(), 'wavewell-viewer-'));
@@ -257,6 +264,18 @@ describe('numbers', () => {
     await page.getByText('read first').click();
     for (const caution of runs.get('absorb')!.record.cautions)
       expect(await page.textContent('#sheet')).toContain(caution);
+  });
+
+  test('each mode of a degenerate pair can be shown', async () => {
+    await open('modes', { still: true });
+    const first = runs.get('modes')!.record.fields[0].id;
+    await page.evaluate((field) => window.wavewell!.set({ field }), first);
+    await page.getByText('second', { exact: true }).click();
+    expect((await state()).field).toBe(`${first}-2`);
+    await page.waitForFunction(() => window.wavewell!.ready());
+    expect(await page.getAttribute('.members [aria-checked="true"]', 'aria-checked')).toBe('true');
+    await page.getByText('first', { exact: true }).click();
+    expect((await state()).field).toBe(first);
   });
 
   test('the far field stands beside a lasing one', async () => {

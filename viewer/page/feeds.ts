@@ -1,7 +1,7 @@
 // What must be sent in, what comes back, and where does the light go?
 
 import type { DriveTerm, PowerCheck, RunField, RunRecord } from '../../src/results/format.ts';
-import { html, rows, svg } from './dom.ts';
+import { html, rows, svg, wordButton } from './dom.ts';
 import { crossingAnswer } from './facts.ts';
 import { degrees, figure } from './numbers.ts';
 import type { PageRun } from './run.ts';
@@ -14,6 +14,7 @@ export function createFeeds(host: HTMLElement, run: PageRun, store: Store, all: 
     const turn = ++latest;
     const field = run.record.fields.find((one) => one.id === id);
     const parts: Node[] = [];
+    if (field) parts.push(...memberWords(run.record, field, store));
     if (field?.drive) parts.push(...driveStrip(run.record, field, field.drive, all));
     if (field?.farField) {
       const [power] = await run.arrays([field.farField]);
@@ -22,6 +23,32 @@ export function createFeeds(host: HTMLElement, run: PageRun, store: Store, all: 
     if (turn === latest) host.replaceChildren(...parts);
   };
   store.on(['field'], (state) => void show(state));
+}
+
+/** Fields of one group of modes: `axis-1`, `axis-1-2`, … */
+const groupId = (record: RunRecord, id: string): string => {
+  const [, lead] = /^(.+)-\d+$/.exec(id) ?? [];
+  return lead !== undefined && record.fields.some((one) => one.id === lead) ? lead : id;
+};
+
+const MEMBERS = ['first', 'second', 'third', 'fourth', 'fifth', 'sixth'];
+
+/** One word for each mode of a degenerate group, which is as good as any mix of them. */
+function memberWords(record: RunRecord, field: RunField, store: Store): Node[] {
+  const lead = groupId(record, field.id);
+  const members = record.fields.filter((one) => groupId(record, one.id) === lead);
+  if (members.length < 2) return [];
+  const words = members.map((one, j) =>
+    wordButton(MEMBERS[j] ?? `${j + 1}`, () => store.set({ field: one.id }), {
+      role: 'radio',
+      'aria-checked': String(one.id === field.id),
+    }),
+  );
+  const what = field.drive ? 'drives' : 'modes';
+  return [
+    html('p', { class: 'soft' }, `${members.length} independent ${what} at this k`),
+    html('div', { class: 'views members', role: 'radiogroup', 'aria-label': `Which of the ${what}` }, ...words),
+  ];
 }
 
 /** Amplitude and phase, for tables: degrees, of e^{−iωt}. */
@@ -45,8 +72,6 @@ function driveStrip(record: RunRecord, field: RunField, drive: readonly DriveTer
     more.addEventListener('click', all);
     parts.push(more);
   }
-  const drives = answer?.drives?.length ?? 1;
-  if (drives > 1) parts.push(html('p', { class: 'soft' }, `One of ${drives} independent drives of this mode.`));
   if (answer?.forward) parts.push(...proof(answer.forward));
   return parts;
 }
