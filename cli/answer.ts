@@ -1,6 +1,7 @@
 // How is the answer of a run printed, and is it one?
 
 import {
+  type CompleteAnswer,
   type CrossingAnswer,
   ENERGY_UNITS,
   errorText,
@@ -61,21 +62,34 @@ export function printStory({ run, folder, reused }: Asked): void {
   sayFacts([['run ', reused ? `${folder}  (read back: same file, same options; --again computes anew)` : folder]]);
 }
 
-/** Found, searched to the end, with the digits asked for. */
+/** Found, all of it, with the digits asked for. */
 export function answerCode({ answer }: RunRecord): number {
   const modes = answer['modes'] as readonly unknown[] | undefined;
   const crossings = answer['crossings'] as readonly CrossingAnswer[] | undefined;
   const found = (modes ?? crossings ?? []).length > 0;
   const reached = answer['reached'] !== false && (crossings ?? []).every((c) => c.reached !== false);
-  return found && reached && answer['covered'] !== false ? DONE : NOT_FOUND;
+  return found && reached && isWhole(answer) ? DONE : NOT_FOUND;
+}
+
+/** Proven by the count; without one, searched to the end. */
+function isWhole(answer: RunRecord['answer']): boolean {
+  const complete = answer['complete'] as CompleteAnswer | undefined;
+  return complete ? complete.proven : answer['covered'] !== false;
 }
 
 function printDoubts({ answer }: RunRecord): void {
   const crossings = (answer['crossings'] ?? []) as readonly CrossingAnswer[];
-  if (answer['covered'] === false)
+  const complete = answer['complete'] as CompleteAnswer | undefined;
+  if (complete) sayComplete(complete);
+  else if (answer['covered'] === false)
     say(ink.yellow('Part of the window could not be searched: the list may lack modes.'));
   if (answer['reached'] === false || crossings.some((c) => c.reached === false))
     say(ink.yellow('The digits asked for were not reached; the errors say how far the numbers go.'));
+}
+
+function sayComplete({ found, counted, proven, reason }: CompleteAnswer): void {
+  if (proven) say(`complete: ${String(found)} of ${String(counted)}`);
+  else say(ink.yellow(`not proven complete: ${String(found)} found, ${reason}`));
 }
 
 function printModes(record: RunRecord, modes: readonly ModeAnswer[]): void {

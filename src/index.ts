@@ -55,6 +55,7 @@ export { BACKGROUND, LAYER, type Mesh } from './mesh/mesh.ts';
 export { readRun, runFolder, RunStoreError, writeRun, type LoadedRun } from './results/store.ts';
 export { RunFormatError } from './results/bytes.ts';
 export type {
+  CompleteAnswer,
   CrossingAnswer,
   DriveTerm,
   LevelAnswer,

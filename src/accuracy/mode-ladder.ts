@@ -3,7 +3,16 @@
 import { embed } from '../elements/space.ts';
 import { residualStep } from '../eigen/improve.ts';
 import { type EigenGroup, rayleighGroups } from '../eigen/rayleigh.ts';
-import { modesInWindow, type OwnedGroup, ownGroups, type Tile, type Wedge, wedgeHolds } from '../eigen/window.ts';
+import {
+  modesInWindow,
+  type OwnedGroup,
+  ownGroups,
+  type Tile,
+  type Wedge,
+  wedgeHolds,
+  type WindowAnswer,
+  type WindowRequest,
+} from '../eigen/window.ts';
 import { type LayerPlan, returnedAt } from '../boundary/stretched-layer.ts';
 import { type Complex, modulus, subtract } from '../numerics/complex.ts';
 import type { DeviceFamily } from '../operator/device-family.ts';
@@ -42,6 +51,8 @@ export interface ModeSearchRequest {
   readonly startOrder: number;
   readonly layer: LayerPlan;
   readonly expected: (a: number, b: number) => number;
+  /** How the window is searched; `modesInWindow` if absent. */
+  readonly search?: (problem: DeviceFamily, request: WindowRequest) => WindowAnswer;
   readonly progress?: (stage: string, done: number) => void;
 }
 
@@ -74,7 +85,7 @@ export function climbModes(family: (order: number) => DeviceFamily, request: Mod
   let order = request.startOrder;
   let here = family(order);
   const search = family(Math.min(order, SEARCH_ORDER));
-  const found = modesInWindow(search, {
+  const found = (request.search ?? modesInWindow)(search, {
     wedge: widened(wedge),
     level,
     expected: request.expected,

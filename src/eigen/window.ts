@@ -61,7 +61,8 @@ export function modesInWindow(problem: EigenProblem, request: WindowRequest): Wi
     const radius = tileRadius(part, shift) * 1.02;
     const center = shift.re * shift.re - shift.im * shift.im;
     const count = expected(Math.sqrt(Math.max(0, center - radius)), Math.sqrt(center + radius));
-    if (count > perTile && depth < 10 && radius > 0.02 * center) {
+    const crowded = count > perTile && radius > 0.02 * center;
+    if (depth < 10 && (crowded || radius > LARGEST_SHARE * distanceToCut(shift))) {
       for (const half of cut(part)) visit(half, depth + 1, failures);
       return;
     }
@@ -86,6 +87,16 @@ export function modesInWindow(problem: EigenProblem, request: WindowRequest): Wi
   return { tiles, covered };
 }
 
+/** Largest radius of a disc as a share of its distance to the cut: a contour about it must stay where Re k > 0. */
+const LARGEST_SHARE = 0.85;
+
+/** How far the shift is, in k², from the negative real axis, where k = √(k²) jumps. */
+function distanceToCut(shift: Complex): number {
+  const re = shift.re * shift.re - shift.im * shift.im;
+  const im = 2 * shift.re * shift.im;
+  return re > 0 ? Math.hypot(re, im) : Math.abs(im);
+}
+
 /** Times a tile may be cut because its disc could not be covered. */
 const MOST_FAILURES = 4;
 
@@ -100,16 +111,18 @@ export interface OwnedGroup {
 
 /**
  * One row for every group seen by any tile: where discs overlap, the tile that saw the highest multiplicity answers,
- * and among equals the one whose shift is nearest. `width` is the absolute distance within which groups are the same.
+ * and among equals the one whose shift is nearest. `width` is the absolute distance within which groups are the same;
+ * groups farther from their shift than `within` radii are left out.
  */
 export function ownGroups(
   tiles: readonly Tile[],
   groups: readonly (readonly EigenGroup[])[],
   width: number,
+  within = 1.05,
 ): OwnedGroup[] {
   const all = groups.flatMap((list, tile) =>
     list
-      .filter((g) => squareDistance(g.k, tiles[tile].shift) <= 1.05 * tiles[tile].radius)
+      .filter((g) => squareDistance(g.k, tiles[tile].shift) <= within * tiles[tile].radius)
       .map((group) => ({ group, tile })),
   );
   const same = gather(

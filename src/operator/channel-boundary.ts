@@ -2,8 +2,18 @@
 
 import type { Device } from '../device/model.ts';
 import { LAYER } from '../mesh/mesh.ts';
-import { hankel, logarithmicDerivatives } from '../numerics/cylinder-functions.ts';
-import { type Complex, complex, type ComplexArray, divide, multiply, scale, subtract } from '../numerics/complex.ts';
+import { hankel, type HankelKind, logarithmicDerivatives, logHankel } from '../numerics/cylinder-functions.ts';
+import {
+  type Complex,
+  complex,
+  type ComplexArray,
+  divide,
+  logarithm,
+  multiply,
+  scale,
+  subtract,
+} from '../numerics/complex.ts';
+import type { Direction } from '../numerics/conventions.ts';
 import { analyse } from '../sparse/analyse.ts';
 import type { Analysis, Factorization } from '../sparse/pattern.ts';
 import type { DeviceFamily } from './device-family.ts';
@@ -20,7 +30,14 @@ import { type RimFunctionals, rimFunctionals } from './rim-functionals.ts';
  */
 export interface ChannelOperator {
   readonly rim: RimFunctionals;
+  /** All channels outgoing. */
   factorize(k: Complex, level: number): ChannelFactor;
+  /**
+   * log [det A(k) Π_m (κR)^|m| H_m(κR)] on some branch, each channel |m| closed in its own direction (outgoing if absent).
+   * The Hankel functions take away the poles that y_m has at their zeros, so that what is left is analytic for Re k > 0
+   * and vanishes at the modes only.
+   */
+  logDeterminant(k: Complex, level: number, direction?: (m: number) => Direction): Complex;
 }
 
 export interface ChannelFactor {
@@ -37,21 +54,40 @@ export function closeByChannels(device: Device, family: DeviceFamily, order: num
   const { operator } = family;
   const rim = rimFunctionals(operator.space, order);
   const inner = innerPattern(operator, rim);
+  const index = Math.sqrt(device.background.permittivity * device.background.permeability);
+  const background = device.polarization === 'Ez' ? device.background.permeability : device.background.permittivity;
+  const radius = operator.space.mesh.rimRadius;
+  const factorClosed = (k: Complex, level: number, kinds: readonly HankelKind[]): Factorization => {
+    const weights = family.weights(k, level, 'value');
+    const block = rimBlock(rim, scale(k, index), radius, 1 / background, kinds);
+    return inner.analysis.factorize((e, into) => {
+      if (e === inner.triangles.length) into.set(block);
+      else {
+        const t = inner.triangles[e];
+        fillElement(into, t, operator.space.mesh.regions[t], operator.elements, 'outgoing', weights);
+      }
+    });
+  };
+  const outgoing = Array.from({ length: order + 1 }, (): HankelKind => 1);
   return {
     rim,
-    factorize(k, level) {
-      const weights = family.weights(k, level, 'value');
-      const index = Math.sqrt(device.background.permittivity * device.background.permeability);
-      const background = device.polarization === 'Ez' ? device.background.permeability : device.background.permittivity;
-      const block = rimBlock(rim, scale(k, index), operator.space.mesh.rimRadius, 1 / background);
-      const factor = inner.analysis.factorize((e, into) => {
-        if (e === inner.triangles.length) into.set(block);
-        else {
-          const t = inner.triangles[e];
-          fillElement(into, t, operator.space.mesh.regions[t], operator.elements, 'outgoing', weights);
-        }
+    logDeterminant(k, level, direction = () => 'outgoing') {
+      const kinds = outgoing.map((_, m): HankelKind => (direction(m) === 'outgoing' ? 1 : 2));
+      const factor = factorClosed(k, level, kinds);
+      factor.release();
+      const z = scale(k, index * radius);
+      const waves = { 1: logHankel(1, order, z), 2: logHankel(2, order, z) };
+      let { re, im } = factor.logDeterminant;
+      kinds.forEach((kind, m) => {
+        const power = scale(logarithm(z), m);
+        re += (m === 0 ? 1 : 2) * (waves[kind][2 * m] + power.re);
+        im += (m === 0 ? 1 : 2) * (waves[kind][2 * m + 1] + power.im);
       });
-      const waves = rimWaves(order, scale(k, index * operator.space.mesh.rimRadius));
+      return complex(re, im);
+    },
+    factorize(k, level) {
+      const factor = factorClosed(k, level, outgoing);
+      const waves = rimWaves(order, scale(k, index * radius));
       return {
         drive: (incoming) => driveRim(operator, rim, inner, factor, waves, 1 / background, incoming),
         release: () => {
@@ -103,14 +139,22 @@ function innerPattern(operator: OpenOperator, rim: RimFunctionals): Inner {
 }
 
 /** −2πR Σ_m y_m F̄_m F_mᵀ: complex symmetric since y_{−m} = y_m and F_{−m} = F̄_m. */
-function rimBlock(rim: RimFunctionals, kappa: Complex, radius: number, p: number): ComplexArray {
+function rimBlock(
+  rim: RimFunctionals,
+  kappa: Complex,
+  radius: number,
+  p: number,
+  kinds: readonly HankelKind[],
+): ComplexArray {
   const { order, values, unknowns } = rim;
   const width = 2 * order + 1;
   const n = unknowns.length;
-  const slopes = logarithmicDerivatives(1, order, scale(kappa, radius));
+  const z = scale(kappa, radius);
+  const slopes = { 1: logarithmicDerivatives(1, order, z), 2: logarithmicDerivatives(2, order, z) };
   const out = new Float64Array(2 * n * n);
   for (let m = 0; m <= order; m++) {
-    const y = multiply(scale(kappa, -2 * Math.PI * radius * p), complex(slopes[2 * m], slopes[2 * m + 1]));
+    const own = slopes[kinds[m]];
+    const y = multiply(scale(kappa, -2 * Math.PI * radius * p), complex(own[2 * m], own[2 * m + 1]));
     for (let j = 0; j < n; j++) {
       const c = values[2 * (order + m + j * width)];
       const d = values[2 * (order + m + j * width) + 1];

@@ -1,6 +1,7 @@
 // Where does a device resonate? Poles, or zeros, in a window of complex k.
 
-import { type ErrorParts, climbModes, type FoundMode, totalError } from '../accuracy/mode-ladder.ts';
+import { type Completeness, countedSearch } from '../accuracy/completeness.ts';
+import { type ErrorParts, climbModes, type FoundMode, groupWidth, totalError } from '../accuracy/mode-ladder.ts';
 import { returnedToMode } from '../accuracy/layer-return.ts';
 import { DEFAULT_DIGITS, resolutionFor } from '../accuracy/resolution.ts';
 import type { Device } from '../device/model.ts';
@@ -52,6 +53,8 @@ export interface ModesAnswer {
   readonly dropped: readonly { readonly k: Complex; readonly reason: string }[];
   /** The search covered the whole window. */
   readonly covered: boolean;
+  /** What the independent count says of the list. */
+  readonly complete: Completeness;
   /** All modes have the digits. */
   readonly reached: boolean;
   readonly digits: number;
@@ -84,6 +87,7 @@ export function findModes(device: Device, request: ModesRequest = {}): ModesAnsw
   request.progress?.('meshing', 0);
   const prepared = prepare(device, { kMin, kMax, slope: 1 / (2 * qMin) }, resolution);
   const direction = assignment === 'poles' ? 'outgoing' : 'incoming';
+  const counted = countedSearch(device, prepared.layer, groupWidth(digits, kMax) / kMax);
   const search = climbModes((order) => familyOf(prepared, order, direction, 'gain'), {
     wedge,
     level: 0,
@@ -91,6 +95,7 @@ export function findModes(device: Device, request: ModesRequest = {}): ModesAnsw
     startOrder: resolution.order,
     layer: prepared.layer,
     expected: expectedModes(device),
+    search: (family, window) => counted.search(family, window),
     ...(request.progress ? { progress: request.progress } : {}),
   });
   const modes = search.modes.map((found, i) => {
@@ -102,6 +107,10 @@ export function findModes(device: Device, request: ModesRequest = {}): ModesAnsw
     assignment,
     dropped: search.dropped,
     covered: search.covered,
+    complete: counted.judge(
+      wedge,
+      search.modes.map((m) => m.group),
+    ),
     reached: search.reached,
     digits,
     qMin,

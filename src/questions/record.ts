@@ -87,6 +87,7 @@ export function modesRecord(device: Device, answer: ModesAnswer, context: RunCon
     modes: answer.modes.map((m) => modeAnswer(device, m, answer.assignment)),
     dropped: answer.dropped.map((d) => ({ k: [d.k.re, d.k.im], reason: d.reason })),
     covered: answer.covered,
+    complete: answer.complete,
     reached: answer.reached,
     order: answer.order,
     unknowns: spaceOf(answer.prepared, answer.order).unknowns,

@@ -15,9 +15,13 @@ export function modesSentence(device: Device, answer: ModesAnswer): string {
   const what = answer.assignment === 'poles' ? 'resonance' : 'zero';
   const count = answer.modes.reduce((sum, m) => sum + m.multiplicity, 0);
   const where = `with Q ≥ ${answer.qMin} between ${bandText(device)}`;
-  if (count === 0) return `No ${what} ${where}.`;
+  const { counted, proven } = answer.complete;
+  if (count === 0) {
+    if (proven) return `No ${what} ${where}: the count is 0.`;
+    return counted === 0 ? `No ${what} ${where}.` : `No ${what} found ${where}, but the count is ${counted}.`;
+  }
   const sharpest = answer.modes.reduce((a, b) => (b.q > a.q ? b : a));
-  const doubt = answer.covered ? '' : ' The search did not cover the whole window.';
+  const doubt = answer.covered || proven ? '' : ' The search did not cover the whole window.';
   return (
     `${count} ${what}${count > 1 ? 's' : ''} ${where}; the sharpest at ${placeText(device, sharpest.k.re, sharpest.kError)}, ` +
     `Q = ${toError(sharpest.q, sharpest.qError)}.${doubt}`

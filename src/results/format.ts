@@ -41,6 +41,16 @@ export interface ModeAnswer {
   readonly layerSensitivity?: number;
 }
 
+/** What an independent count says of a list: members of a group one by one. */
+export interface CompleteAnswer {
+  readonly found: number;
+  readonly counted: number;
+  /** The count is settled and equals what was found. */
+  readonly proven: boolean;
+  /** Why not, else "". */
+  readonly reason: string;
+}
+
 /** Pump or loss in the units engineers use. */
 export interface LevelAnswer {
   /** D: active permittivity is ε ∓ i D w. */
