@@ -64,7 +64,9 @@ export function countedSearch(device: Device, layer: LayerPlan, groupWidth: numb
         isForeign,
       });
       proof = answer.proof;
-      return answer;
+      // what shows nothing in the window or near it need not climb
+      const near = widened(request.wedge);
+      return { ...answer, tiles: answer.tiles.filter((t) => t.ks.some((k) => wedgeHolds(near, k))) };
     },
     known: () => proof?.known ?? [],
     judge(wedge, modes) {
@@ -126,6 +128,13 @@ function judgeFinal(
   const reason = `the count is not settled: its phase is off by ${deviation.toPrecision(2)} rad with ${points} factorizations`;
   return { ...common, counted: found, proven, reason };
 }
+
+const widened = ({ kMin, kMax, low, high }: Wedge): Wedge => ({
+  kMin: kMin * (1 - EDGE),
+  kMax: kMax * (1 + EDGE),
+  low: low + EDGE,
+  high: high + EDGE,
+});
 
 const shrunk = ({ kMin, kMax, low, high }: Wedge): Wedge => ({
   kMin: kMin * (1 + EDGE),

@@ -173,7 +173,7 @@ function circleOf(tile: Tile, known: readonly Complex[]): { center: Complex; rad
   const { shift, radius } = tile;
   const center = multiply(shift, shift);
   const seen = tile.ks.reduce((most, k) => Math.max(most, squareDistance(k, shift)), radius);
-  const widest = Math.min(WIDEST * radius, Math.max(radius, 0.99 * seen), 0.95 * modulus(center));
+  const widest = Math.min(WIDEST * radius, Math.max(radius, 0.99 * seen), 0.98 * modulus(center));
   const distances = known.map((k) => squareDistance(k, shift));
   let best = radius;
   let gap = -1;

@@ -88,7 +88,7 @@ export function modesInWindow(problem: EigenProblem, request: WindowRequest): Wi
 }
 
 /** Largest radius of a disc as a share of its distance to the cut: a contour about it must stay where Re k > 0. */
-const LARGEST_SHARE = 0.85;
+const LARGEST_SHARE = 0.95;
 
 /** How far the shift is, in k², from the negative real axis, where k = √(k²) jumps. */
 function distanceToCut(shift: Complex): number {
