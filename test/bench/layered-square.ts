@@ -125,22 +125,30 @@ export function layeredSquare(
       for (let t = 0; t < size; t++) into[t] = values[from + t];
     },
     multiplyInto(out, x, columns) {
-      out.fill(0);
-      for (let c = 0; c < columns; c++) {
-        const base = 2 * unknowns * c;
-        for (let el = 0; el < total; el++) {
+      // Element by element, so that the matrix is read once for all columns.
+      out.fill(0, 0, 2 * unknowns * columns);
+      const local = new Float64Array(2 * nd);
+      for (let el = 0; el < total; el++) {
+        const at = el * size;
+        for (let c = 0; c < columns; c++) {
+          const base = 2 * unknowns * c;
           for (let b = 0; b < nd; b++) {
             const v = list[el * nd + b];
-            if (v < 0) continue;
-            const xr = x[base + 2 * v];
-            const xi = x[base + 2 * v + 1];
-            for (let a = 0; a < nd; a++) {
-              const u = list[el * nd + a];
-              if (u < 0) continue;
-              const t = el * size + 2 * (a + b * nd);
-              out[base + 2 * u] += values[t] * xr - values[t + 1] * xi;
-              out[base + 2 * u + 1] += values[t] * xi + values[t + 1] * xr;
+            local[2 * b] = v < 0 ? 0 : x[base + 2 * v];
+            local[2 * b + 1] = v < 0 ? 0 : x[base + 2 * v + 1];
+          }
+          for (let a = 0; a < nd; a++) {
+            const u = list[el * nd + a];
+            if (u < 0) continue;
+            let re = 0;
+            let im = 0;
+            // Row a of a symmetric matrix is its column a.
+            for (let j = 0, t = at + 2 * a * nd; j < 2 * nd; j += 2, t += 2) {
+              re += values[t] * local[j] - values[t + 1] * local[j + 1];
+              im += values[t] * local[j + 1] + values[t + 1] * local[j];
             }
+            out[base + 2 * u] += re;
+            out[base + 2 * u + 1] += im;
           }
         }
       }

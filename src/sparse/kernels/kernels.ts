@@ -63,43 +63,66 @@ export const MOST_DELAYED = 128;
 
 /**
  * Substitution on panels that were copied into the memory. Positions as in FrontKernels; `order`, `boundary` and the two
- * tables of starts index `integers`. A quad is four right-hand sides: 8 numbers a place, 4 real parts then 4 imaginary.
- * `local` has room for the rows of a front. Columns of one front can be passed in parts (gather, columns…, scatter).
+ * tables of starts index `integers`. Columns of one front can be passed in parts (gather, columns…, scatter); all parts
+ * but the last have an even number of them.
  */
 export interface SubstitutionKernels {
+  /**
+   * `count` numbers of each column, from position `columns` on, columnStep apart, four columns a quad, to the rows of x
+   * listed in `integers` from `places` on; and back.
+   */
+  putQuads(columns: number, columnStep: number, places: number, count: number, block: RightSides): void;
+  takeQuads(columns: number, columnStep: number, places: number, count: number, block: RightSides): void;
   /** Fronts first..last, panels one after the other from l. */
-  forwardQuads(first: number, last: number, l: number, tables: SubstitutionTables, x: number, quads: number): void;
+  forwardBlock(first: number, last: number, l: number, tables: SubstitutionTables, block: RightSides): void;
   /** The same fronts backwards; l points behind the last panel. */
-  backwardQuads(first: number, last: number, l: number, tables: SubstitutionTables, x: number, quads: number): void;
-  forwardOne(first: number, last: number, l: number, tables: SubstitutionTables, x: number): void;
-  backwardOne(first: number, last: number, l: number, tables: SubstitutionTables, x: number): void;
-  /** Columns first..last of one front whose rows stand in `local`; column `first` is at l, its imaginary part at l + plane. */
-  forwardColumns(quad: boolean, l: number, plane: number, nf: number, first: number, last: number, local: number): void;
-  backwardColumns(
-    quad: boolean,
+  backwardBlock(first: number, last: number, l: number, tables: SubstitutionTables, block: RightSides): void;
+  /** One right-hand side, (re, im) a place; block.quads is 0. */
+  forwardOne(first: number, last: number, l: number, tables: SubstitutionTables, block: RightSides): void;
+  backwardOne(first: number, last: number, l: number, tables: SubstitutionTables, block: RightSides): void;
+  /** Columns of one front whose rows stand in `local`; column `first` is at l, its imaginary part at l + plane. */
+  forwardColumns(
     l: number,
     plane: number,
-    nf: number,
+    f: FrontShape,
     first: number,
     last: number,
-    local: number,
+    tables: SubstitutionTables,
+    block: RightSides,
   ): void;
+  backwardColumns(l: number, plane: number, f: FrontShape, first: number, last: number, block: RightSides): void;
   /** Rows of a front from x to `local` and back; np pivots from `place` on, nb boundary rows listed from `edge` on. */
-  gatherForward(quad: boolean, tables: SubstitutionTables, x: number, f: FrontShape, local: number): void;
-  scatterForward(quad: boolean, tables: SubstitutionTables, x: number, f: FrontShape, local: number): void;
-  gatherBackward(quad: boolean, tables: SubstitutionTables, x: number, f: FrontShape, local: number): void;
-  scatterBackward(quad: boolean, tables: SubstitutionTables, x: number, f: FrontShape, local: number): void;
+  gatherForward(tables: SubstitutionTables, f: FrontShape, block: RightSides): void;
+  scatterForward(tables: SubstitutionTables, f: FrontShape, block: RightSides): void;
+  gatherBackward(tables: SubstitutionTables, f: FrontShape, block: RightSides): void;
+  scatterBackward(tables: SubstitutionTables, f: FrontShape, block: RightSides): void;
 }
 
-/** Positions of what describes the fronts; quadNumbers: numbers between two quads of x. */
+/**
+ * Right-hand sides by quads: a quad is four of them, 8 numbers a place (4 real parts, then 4 imaginary ones), the quads
+ * of one place side by side.
+ */
+export interface RightSides {
+  /** 0: one right-hand side alone. */
+  readonly quads: number;
+  readonly x: number;
+  /** Numbers between two places of x. */
+  readonly rowNumbers: number;
+  /** Room for the rows of the largest front, localStep numbers a quad, and for LOCAL_EXTRA numbers behind them. */
+  readonly local: number;
+  readonly localStep: number;
+}
+
+/** Numbers that the kernels want behind the rows of a front for a strip of L and a spare row. */
+export const LOCAL_EXTRA = 4 * 96 + 16;
+
+/** Positions of what describes the fronts. */
 export interface SubstitutionTables {
   readonly pivotStarts: number;
   readonly boundaryStarts: number;
   readonly order: number;
   readonly boundary: number;
   readonly pivots: number;
-  readonly local: number;
-  readonly quadNumbers: number;
 }
 
 export interface FrontShape {

@@ -1,56 +1,27 @@
 // How are the compiled kernels loaded?
 
 import { readFileSync } from 'node:fs';
-import type { FrontKernels, SubstitutionKernels } from './kernels.ts';
+import type { FrontKernels, RightSides, SubstitutionKernels } from './kernels.ts';
 
 /** What front.wasm exports; pointers in bytes. */
 interface FrontExports {
-  readonly forwardQuads: (...numbers: number[]) => void;
-  readonly backwardQuads: (...numbers: number[]) => void;
+  readonly putQuads: (...numbers: number[]) => void;
+  readonly takeQuads: (...numbers: number[]) => void;
+  readonly forwardBlock: (...numbers: number[]) => void;
+  readonly backwardBlock: (...numbers: number[]) => void;
+  readonly forwardColumnsBlock: (...numbers: number[]) => void;
+  readonly backwardColumnsBlock: (...numbers: number[]) => void;
+  readonly gatherBlock: (...numbers: number[]) => void;
+  readonly scatterBlock: (...numbers: number[]) => void;
+  readonly scatterForwardBlock: (...numbers: number[]) => void;
   readonly forwardOne: (...numbers: number[]) => void;
   readonly backwardOne: (...numbers: number[]) => void;
-  readonly forwardColumns: (l: number, plane: number, nf: number, first: number, last: number, local: number) => void;
-  readonly forwardColumnsOne: (
-    l: number,
-    plane: number,
-    nf: number,
-    first: number,
-    last: number,
-    local: number,
-  ) => void;
-  readonly backwardColumns: (l: number, plane: number, nf: number, first: number, last: number, local: number) => void;
-  readonly backwardColumnsOne: (
-    l: number,
-    plane: number,
-    nf: number,
-    first: number,
-    last: number,
-    local: number,
-  ) => void;
-  readonly gatherForward: (x: number, rows: number, np: number, nb: number, local: number) => void;
-  readonly gatherForwardOne: (x: number, rows: number, np: number, nb: number, local: number) => void;
-  readonly scatterForward: (
-    x: number,
-    rows: number,
-    edge: number,
-    np: number,
-    nb: number,
-    local: number,
-    d: number,
-  ) => void;
-  readonly scatterForwardOne: (
-    x: number,
-    rows: number,
-    edge: number,
-    np: number,
-    nb: number,
-    local: number,
-    d: number,
-  ) => void;
-  readonly gatherBackward: (x: number, rows: number, edge: number, np: number, nb: number, local: number) => void;
-  readonly gatherBackwardOne: (x: number, rows: number, edge: number, np: number, nb: number, local: number) => void;
-  readonly scatterBackward: (x: number, rows: number, np: number, local: number) => void;
-  readonly scatterBackwardOne: (x: number, rows: number, np: number, nf: number, local: number) => void;
+  readonly forwardColumnsOne: (...numbers: number[]) => void;
+  readonly backwardColumnsOne: (...numbers: number[]) => void;
+  readonly gatherForwardOne: (...numbers: number[]) => void;
+  readonly scatterForwardOne: (...numbers: number[]) => void;
+  readonly gatherBackwardOne: (...numbers: number[]) => void;
+  readonly scatterBackwardOne: (...numbers: number[]) => void;
   readonly clear: (p: number, s: number, nf: number, np: number) => void;
   readonly addElement: (p: number, s: number, nf: number, np: number, element: number, nd: number, map: number) => void;
   readonly addContribution: (
@@ -169,56 +140,75 @@ function bindKernels(instance: WebAssembly.Instance, memory: WebAssembly.Memory)
 
 function bindSubstitution(wasm: FrontExports): SubstitutionKernels {
   return {
-    forwardQuads: (first, last, l, t, x, quads) =>
-      wasm.forwardQuads(
+    putQuads: (columns, columnStep, places, count, b) =>
+      wasm.putQuads(8 * columns, 8 * columnStep, 4 * places, count, b.quads, 8 * b.x, 8 * b.rowNumbers),
+    takeQuads: (columns, columnStep, places, count, b) =>
+      wasm.takeQuads(8 * columns, 8 * columnStep, 4 * places, count, b.quads, 8 * b.x, 8 * b.rowNumbers),
+    forwardBlock: (first, last, l, t, b) =>
+      wasm.forwardBlock(
         first, last, 8 * l, 4 * t.pivotStarts, 4 * t.boundaryStarts, 4 * t.order, 4 * t.boundary, 8 * t.pivots,
-        8 * x, 8 * t.quadNumbers, quads, 8 * t.local,
+        8 * b.x, 8 * b.rowNumbers, b.quads, 8 * b.local, 8 * b.localStep, stripOf(b),
       ), // prettier-ignore
-    backwardQuads: (first, last, l, t, x, quads) =>
-      wasm.backwardQuads(
+    backwardBlock: (first, last, l, t, b) =>
+      wasm.backwardBlock(
         first, last, 8 * l, 4 * t.pivotStarts, 4 * t.boundaryStarts, 4 * t.order, 4 * t.boundary,
-        8 * x, 8 * t.quadNumbers, quads, 8 * t.local,
+        8 * b.x, 8 * b.rowNumbers, b.quads, 8 * b.local, 8 * b.localStep, stripOf(b),
       ), // prettier-ignore
-    forwardOne: (first, last, l, t, x) =>
+    forwardOne: (first, last, l, t, b) =>
       wasm.forwardOne(
         first, last, 8 * l, 4 * t.pivotStarts, 4 * t.boundaryStarts, 4 * t.order, 4 * t.boundary, 8 * t.pivots,
-        8 * x, 8 * t.local,
+        8 * b.x, 8 * b.local,
       ), // prettier-ignore
-    backwardOne: (first, last, l, t, x) =>
+    backwardOne: (first, last, l, t, b) =>
       wasm.backwardOne(
-        first, last, 8 * l, 4 * t.pivotStarts, 4 * t.boundaryStarts, 4 * t.order, 4 * t.boundary, 8 * x, 8 * t.local,
+        first, last, 8 * l, 4 * t.pivotStarts, 4 * t.boundaryStarts, 4 * t.order, 4 * t.boundary,
+        8 * b.x, 8 * b.local,
       ), // prettier-ignore
-    forwardColumns: (quad, l, plane, nf, first, last, local) =>
-      (quad ? wasm.forwardColumns : wasm.forwardColumnsOne)(8 * l, 8 * plane, nf, first, last, 8 * local),
-    backwardColumns: (quad, l, plane, nf, first, last, local) =>
-      (quad ? wasm.backwardColumns : wasm.backwardColumnsOne)(8 * l, 8 * plane, nf, first, last, 8 * local),
-    gatherForward: (quad, t, x, { place, np, nb }, local) =>
-      (quad ? wasm.gatherForward : wasm.gatherForwardOne)(8 * x, 4 * (t.order + place), np, nb, 8 * local),
-    scatterForward: (quad, t, x, { place, np, nb, edge }, local) =>
-      (quad ? wasm.scatterForward : wasm.scatterForwardOne)(
-        8 * x,
-        4 * (t.order + place),
-        4 * (t.boundary + edge),
-        np,
-        nb,
-        8 * local,
-        8 * (t.pivots + 4 * place),
-      ),
-    gatherBackward: (quad, t, x, { place, np, nb, edge }, local) =>
-      (quad ? wasm.gatherBackward : wasm.gatherBackwardOne)(
-        8 * x,
-        4 * (t.order + place),
-        4 * (t.boundary + edge),
-        np,
-        nb,
-        8 * local,
-      ),
-    scatterBackward: (quad, t, x, { place, np, nb }, local) =>
-      quad
-        ? wasm.scatterBackward(8 * x, 4 * (t.order + place), np, 8 * local)
-        : wasm.scatterBackwardOne(8 * x, 4 * (t.order + place), np, np + nb, 8 * local),
+    forwardColumns: (l, plane, { np, nb, edge }, first, last, t, b) => {
+      if (b.quads === 0) wasm.forwardColumnsOne(8 * l, 8 * plane, np + nb, first, last, 8 * b.local);
+      else
+        wasm.forwardColumnsBlock(
+          8 * l, 8 * plane, np, nb, first, last, 4 * (t.boundary + edge),
+          8 * b.x, 8 * b.rowNumbers, b.quads, 8 * b.local, 8 * b.localStep, stripOf(b),
+        ); // prettier-ignore
+    },
+    backwardColumns: (l, plane, { np, nb }, first, last, b) => {
+      if (b.quads === 0) wasm.backwardColumnsOne(8 * l, 8 * plane, np + nb, first, last, 8 * b.local);
+      else
+        wasm.backwardColumnsBlock(
+          8 * l, 8 * plane, np + nb, first, last, b.quads, 8 * b.local, 8 * b.localStep, stripOf(b),
+        ); // prettier-ignore
+    },
+    gatherForward: (t, { place, np, nb }, b) => {
+      const rows = 4 * (t.order + place);
+      if (b.quads === 0) wasm.gatherForwardOne(8 * b.x, rows, np, nb, 8 * b.local);
+      else wasm.gatherBlock(8 * b.x, 8 * b.rowNumbers, rows, np, b.quads, 8 * b.local, 8 * b.localStep);
+    },
+    scatterForward: (t, { place, np, nb, edge }, b) => {
+      const rows = 4 * (t.order + place);
+      const d = 8 * (t.pivots + 4 * place);
+      if (b.quads === 0) wasm.scatterForwardOne(8 * b.x, rows, 4 * (t.boundary + edge), np, nb, 8 * b.local, d);
+      else wasm.scatterForwardBlock(8 * b.x, 8 * b.rowNumbers, rows, np, b.quads, 8 * b.local, 8 * b.localStep, d);
+    },
+    gatherBackward: (t, { place, np, nb, edge }, b) => {
+      const rows = 4 * (t.order + place);
+      const edges = 4 * (t.boundary + edge);
+      if (b.quads === 0) wasm.gatherBackwardOne(8 * b.x, rows, edges, np, nb, 8 * b.local);
+      else {
+        wasm.gatherBlock(8 * b.x, 8 * b.rowNumbers, rows, np, b.quads, 8 * b.local, 8 * b.localStep);
+        wasm.gatherBlock(8 * b.x, 8 * b.rowNumbers, edges, nb, b.quads, 8 * (b.local + 8 * np), 8 * b.localStep);
+      }
+    },
+    scatterBackward: (t, { place, np, nb }, b) => {
+      const rows = 4 * (t.order + place);
+      if (b.quads === 0) wasm.scatterBackwardOne(8 * b.x, rows, np, np + nb, 8 * b.local);
+      else wasm.scatterBlock(8 * b.x, 8 * b.rowNumbers, rows, np, b.quads, 8 * b.local, 8 * b.localStep);
+    },
   };
 }
+
+/** Bytes where the strip of L lies, behind the rows of all quads. */
+const stripOf = (b: RightSides): number => 8 * (b.local + b.localStep * b.quads);
 
 function abort(): never {
   throw new Error('front.wasm stopped');
