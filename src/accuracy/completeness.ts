@@ -1,7 +1,7 @@
 // Does an answer hold every mode of its window?
 
 import type { LayerPlan } from '../boundary/stretched-layer.ts';
-import type { Device } from '../device/model.ts';
+import { type Device, isWalled } from '../device/model.ts';
 import { judgeAll, provenWindow, type WindowProof } from '../eigen/proven-window.ts';
 import type { EigenGroup } from '../eigen/rayleigh.ts';
 import { type Tile, type Wedge, wedgeHolds, type WindowRequest } from '../eigen/window.ts';
@@ -43,7 +43,10 @@ export function countedSearch(device: Device, layer: LayerPlan, groupWidth: numb
       const index = Math.sqrt(device.background.permittivity * device.background.permeability);
       // contours reach a little beyond the window
       const top = 1.15 * kMax * Math.hypot(1, Math.max(low, high));
-      const closed = closeByChannels(device, family, highestChannel(index * top * layer.rimRadius));
+      // a cavity without openings is its own determinant
+      const closed = isWalled(device)
+        ? { logDeterminant: (k: Complex, level: number) => determinantOf(family, k, level) }
+        : closeByChannels(device, family, highestChannel(index * top * layer.rimRadius));
       const foreign = new WeakMap<EigenGroup, boolean>();
       const isForeign = (group: EigenGroup): boolean => {
         let known = foreign.get(group);
@@ -75,6 +78,18 @@ export function countedSearch(device: Device, layer: LayerPlan, groupWidth: numb
     },
   };
 }
+
+function determinantOf(family: DeviceFamily, k: Complex, level: number): Complex {
+  const factor = family.factorize(k, level);
+  factor.release();
+  return factor.logDeterminant;
+}
+
+/**
+ * Whether the count knows the device: not yet where guides or symmetry lines cut the rim. (A guide's channels have branch
+ * points at their cutoffs.)
+ */
+export const isCountable = (device: Device): boolean => (device.guides ?? []).length === 0 && !device.symmetry;
 
 /** Channels |m| that tell modes in a count: beyond the turning point they fall off at once. */
 const highestChannel = (x: number): number => Math.ceil(x + 4 * Math.cbrt(x)) + 6;

@@ -2,6 +2,7 @@
 
 import { embed } from '../elements/space.ts';
 import { residualStep } from '../eigen/improve.ts';
+import { settleGroup } from '../eigen/own-shift.ts';
 import { type EigenGroup, rayleighGroups } from '../eigen/rayleigh.ts';
 import {
   modesInWindow,
@@ -119,7 +120,8 @@ export function climbModes(family: (order: number) => DeviceFamily, request: Mod
     if (reached || order + 1 >= HIGHEST_ORDER) {
       const modes: FoundMode[] = [];
       const dropped: { k: Complex; reason: string }[] = [];
-      for (const { group, error } of rows) {
+      for (const { group: found, error } of rows) {
+        const group = here.terms > 2 ? settleGroup(here, level, found) : found;
         const { k, vectors, multiplicity } = group;
         const check = checkLayer(here, layer, k, level, vectors, multiplicity);
         if (check.sensitivity > LAYER_MODE_SENSITIVITY) {

@@ -1,6 +1,7 @@
 // How does an open device end: where, how thick, and with which stretched coefficients?
 
 import { argument, complex, type Complex, type ComplexArray, modulus, multiply, scale } from '../numerics/complex.ts';
+import { returnedAlong, straightCoefficients, type StraightLayer } from './straight-layer.ts';
 import { logHankel } from '../numerics/cylinder-functions.ts';
 
 /** A radial stretched layer R ≤ r ≤ R + L in which r̃ = R + (r − R) e^{iθ}: outgoing waves decay. */
@@ -13,6 +14,8 @@ export interface LayerPlan {
   readonly backgroundIndex: number;
   /** Relative amplitude of what the end sends back: 2 exp(−2 |k| n_b L sin(θ − |arg k|)) at the worst k of the plan. */
   readonly returned: number;
+  /** Devices with walls have straight layers along their guides instead of the radial one: possibly none. */
+  readonly straight?: readonly StraightLayer[];
 }
 
 export interface LayerRequest {
@@ -81,6 +84,8 @@ export function planLayer(request: LayerRequest): LayerPlan {
 
 /** What the layer's end returns at one k, relative amplitude. */
 export function returnedAt(plan: LayerPlan, k: Complex): number {
+  if (plan.straight)
+    return Math.max(0, ...plan.straight.map((s) => returnedAlong(s, plan.angle, plan.backgroundIndex, k)));
   const room = plan.angle - Math.abs(argument(k));
   return 2 * Math.exp(-2 * modulus(k) * plan.backgroundIndex * (plan.endRadius - plan.rimRadius) * Math.sin(room));
 }
@@ -117,9 +122,10 @@ export function returnFactors(plan: LayerPlan, k: Complex, M: number): ComplexAr
  * s = e^{iθ}, ŝ = r̃/r, as a Cartesian tensor. The incoming layer is the complex conjugate.
  */
 export function layerCoefficients(
-  plan: Pick<LayerPlan, 'rimRadius' | 'angle'>,
+  plan: Pick<LayerPlan, 'rimRadius' | 'angle' | 'straight'>,
   center: readonly [number, number],
 ): (x: number, y: number, out: Float64Array) => void {
+  if (plan.straight) return straightCoefficients(plan.straight, plan.angle);
   const { rimRadius: R, angle } = plan;
   const c = Math.cos(angle);
   const s = Math.sin(angle);

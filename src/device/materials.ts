@@ -7,15 +7,23 @@ import { showNumber } from './findings.ts';
 import type { Path } from './findings.ts';
 import { zeroOrMore } from './numbers.ts';
 import type { Log, NumberReader } from './numbers.ts';
+import type { Wall } from './model.ts';
 import type { MaterialInput } from './schema.ts';
 
 export interface Material {
   readonly permittivity: Complex;
   readonly permeability: Complex;
+  /** Of metals and perfect walls. */
+  readonly wall?: Wall;
 }
 
 /** The one material that needs no entry. */
 export const VACUUM = 'vacuum';
+
+/** Perfect walls need no entry either. */
+export const ELECTRIC_WALL = 'electric wall';
+export const MAGNETIC_WALL = 'magnetic wall';
+const BUILT_IN = [VACUUM, ELECTRIC_WALL, MAGNETIC_WALL];
 
 /** |ε| and |μ| outside these limits are slips of unit or sign, or need another model (a metal wall, a surface). */
 const SMALLEST = 1e-6;
@@ -29,13 +37,15 @@ export function readMaterials(
 ): ReadonlyMap<string, Material | null> {
   const materials = new Map<string, Material | null>([
     [VACUUM, { permittivity: complex(1), permeability: complex(1) }],
+    [ELECTRIC_WALL, { permittivity: complex(1), permeability: complex(1), wall: { kind: 'electric' } }],
+    [MAGNETIC_WALL, { permittivity: complex(1), permeability: complex(1), wall: { kind: 'magnetic' } }],
   ]);
   for (const [name, entry] of Object.entries(input)) {
-    if (name === VACUUM)
+    if (BUILT_IN.includes(name))
       log.report(
         ['materials', name],
-        'a material called vacuum',
-        'another name: vacuum is built in (ε = μ = 1)',
+        `a material called ${name}`,
+        name === VACUUM ? 'another name: vacuum is built in (ε = μ = 1)' : `another name: ${name} is built in`,
         'rename it',
         'key',
       );
@@ -46,6 +56,7 @@ export function readMaterials(
 
 function readMaterial(entry: MaterialInput, path: Path, numbers: NumberReader, log: Log): Material | null {
   const before = log.findings.length;
+  if (entry.conductivity !== undefined) return readMetal(entry, path, numbers, log);
   const both = entry.index !== undefined && entry.permittivity !== undefined;
   if (both || (entry.index === undefined && entry.permittivity === undefined)) {
     log.report(
@@ -134,6 +145,32 @@ function readMaterial(entry: MaterialInput, path: Path, numbers: NumberReader, l
       );
   }
 }
+
+/** A metal is known by its conductivity alone. */
+function readMetal(entry: MaterialInput, path: Path, numbers: NumberReader, log: Log): Material | null {
+  const before = log.findings.length;
+  const other = (['index', 'permittivity', 'loss_tangent', 'permeability', 'gain'] as const).find(
+    (key) => entry[key] !== undefined,
+  );
+  if (other !== undefined)
+    log.report(
+      [...path, other],
+      `${other} beside conductivity`,
+      'conductivity alone: the waves do not enter the metal',
+      'keep one of the two',
+      'key',
+    );
+  const conductivity = numbers.read(entry.conductivity!, [...path, 'conductivity'], {
+    expected: `a conductivity of ${LEAST_CONDUCTIVITY} to 1e10 S/m`,
+    holds: (v) => v >= LEAST_CONDUCTIVITY && v <= 1e10,
+    mend: 'give S/m (copper: 5.8e7); poorer conductors are materials with a complex permittivity',
+  });
+  if (log.findings.length > before) return null;
+  return { permittivity: complex(1), permeability: complex(1), wall: { kind: 'conductor', conductivity } };
+}
+
+/** Below this a conductor is no good conductor at microwave frequencies, S/m. */
+const LEAST_CONDUCTIVITY = 1e3;
 
 /** `2.25 + 0.01i`. */
 export const show = (value: Complex): string =>

@@ -1,6 +1,6 @@
 // What does a checked device hold?
 
-import type { Shape } from '../geometry/curves.ts';
+import type { Point, Shape } from '../geometry/curves.ts';
 import type { Complex } from '../numerics/complex.ts';
 import type { Polarization } from '../numerics/conventions.ts';
 
@@ -27,6 +27,52 @@ export interface Knob {
   readonly tolerance?: { readonly kind: 'limit' | 'sigma'; readonly value: number };
 }
 
+/** What a metal or a perfect wall does to the field at its surface. */
+export type Wall =
+  | { readonly kind: 'electric' }
+  | { readonly kind: 'magnetic' }
+  /** Surface impedance (1 − i)√(ωμ₀/2σ) of a good conductor; S/m. */
+  | { readonly kind: 'conductor'; readonly conductivity: number };
+
+/** Walls all around the union of some hollow shapes. */
+export interface Enclosure {
+  readonly wall: Wall;
+  readonly spaces: readonly Shape[];
+}
+
+/** A guide between parallel perfect walls that runs to infinity, filled with the background. */
+export interface Guide {
+  readonly name: string;
+  /** Middle of the cross-section where it begins. */
+  readonly from: Point;
+  /** Direction towards infinity, radians. */
+  readonly angle: number;
+  readonly width: number;
+  /** Meshed stretch before the guide is closed exactly. */
+  readonly length: number;
+  /** Reference plane of its amplitudes, measured along the guide from `from`. */
+  readonly reference: number;
+  readonly wall: 'electric' | 'magnetic';
+  /** Channels, or null: as many as propagate in the whole band. */
+  readonly modes: number | null;
+  /** Name of the standard size, or ''. */
+  readonly size: string;
+}
+
+/** A wall without thickness. */
+export interface Sheet {
+  readonly name: string;
+  readonly wall: Wall;
+  readonly points: readonly Point[];
+}
+
+/** The line x = at (or y = at); the side of larger x (y) is kept. */
+export interface SymmetryLine {
+  readonly across: 'x' | 'y';
+  readonly at: number;
+  readonly parity: 'even' | 'odd';
+}
+
 export interface Body {
   readonly name: string;
   readonly material: string;
@@ -34,6 +80,8 @@ export interface Body {
   readonly permittivity: Complex;
   readonly permeability: Complex;
   readonly shape: Shape;
+  /** A body of metal: no field inside, this on its surface. Its permittivity and permeability are 1 and mean nothing. */
+  readonly wall?: Wall;
   /** Pump weight w: active permittivity is ε − i D w for gain, ε + i D w for loss. 0 = passive. */
   readonly pumpWeight: number;
   /** Name shared by the members of an array or scatter; equals `name` for single bodies. */
@@ -52,4 +100,13 @@ export interface Device {
   readonly background: { readonly material: string; readonly permittivity: number; readonly permeability: number };
   /** In file order: a later body covers an earlier one. */
   readonly bodies: readonly Body[];
+  /** With an enclosure or a guide there is no open space around the device. */
+  readonly enclosure?: Enclosure;
+  readonly guides?: readonly Guide[];
+  readonly sheets?: readonly Sheet[];
+  readonly symmetry?: readonly SymmetryLine[];
 }
+
+/** Whether walls close the space, guides apart. */
+export const isWalled = (device: Pick<Device, 'enclosure' | 'guides'>): boolean =>
+  device.enclosure !== undefined || (device.guides ?? []).length > 0;

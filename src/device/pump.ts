@@ -34,6 +34,8 @@ export function weighBodies(
   for (const [name, value] of entries) {
     const path = ['pump', 'bodies', name];
     weights.set(name, numbers.read(value, path, aboveZero('a weight')));
+    const metal = bodies.find((body) => (body.name === name || body.group === name) && body.wall !== undefined);
+    if (metal) log.report(path, `${name}, a body of metal`, 'a body that waves can enter', 'leave it out', 'key');
     if (names.has(name) || groups.has(name)) continue;
     const member = /^(.*)\[.*\]$/.exec(name)?.[1];
     const size = member !== undefined && groups.has(member) ? bodies.filter((b) => b.group === member).length : 0;

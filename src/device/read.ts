@@ -10,10 +10,12 @@ import type { Material } from './materials.ts';
 import type { Device } from './model.ts';
 import { numberReader, openLog } from './numbers.ts';
 import type { Log } from './numbers.ts';
+import { readGuides } from './guides.ts';
 import { weighBodies } from './pump.ts';
 import { checkSanity } from './sanity.ts';
 import type { DeviceInput } from './schema.ts';
 import { readSource } from './source.ts';
+import { readWalls } from './walls.ts';
 
 export interface ReadOptions {
   /** Replaces knob values by name; expressions follow. */
@@ -42,6 +44,10 @@ export function readDevice(text: string, fileName: string, options: ReadOptions 
   const materials = readMaterials(input.materials ?? {}, numbers, log);
   const background = readBackground(input, materials, log);
   const placed = readBodies(input.bodies, materials, numbers, log);
+  if (input.bodies.length === 0 && input.enclosure === undefined && input.guides === undefined)
+    log.report(['bodies'], '[] (a list of 0)', '1 entries or more, or an enclosure or guides', 'add what is missing');
+  const walls = readWalls(input, materials, numbers, log);
+  const guides = readGuides(input, materials, numbers, log);
   // Names in the pump can be judged only when every body is there.
   log.throwIfAny();
   const bodies = weighBodies(
@@ -60,6 +66,8 @@ export function readDevice(text: string, fileName: string, options: ReadOptions 
     knobs,
     background: background!,
     bodies,
+    ...walls,
+    ...(guides.length > 0 ? { guides } : {}),
   };
   checkSanity(device, placed, log);
   log.throwIfAny();
@@ -76,6 +84,10 @@ function readBackground(
   const material = findMaterial(name, ['background'], materials, log);
   if (material === null) return null;
   const { permittivity, permeability } = material;
+  if (material.wall) {
+    log.report(['background'], name, 'a material that waves can enter', 'draw metal as bodies or as an enclosure');
+    return null;
+  }
   if (permittivity.im !== 0 || permeability.im !== 0 || permittivity.re <= 0 || permeability.re <= 0) {
     log.report(
       ['background'],

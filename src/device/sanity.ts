@@ -11,6 +11,7 @@ import type { PlacedBody } from './bodies.ts';
 import { showNumber } from './findings.ts';
 import { show } from './materials.ts';
 import type { Body, Device } from './model.ts';
+import { deviceCircle } from './reach.ts';
 import type { Log } from './numbers.ts';
 import { deviceSize } from './size.ts';
 
@@ -78,7 +79,8 @@ function checkParts(circles: readonly Circle[], whole: Circle, placed: readonly 
 /** One finding for each pair of entries. */
 function checkThinPlaces(device: Device, placed: readonly PlacedBody[], log: Log): void {
   const shapes = device.bodies.map((body) => body.shape);
-  const { radius } = boundingCircle(shapes);
+  if (shapes.length === 0) return;
+  const { radius } = deviceCircle(device);
   const unit = device.lengthUnit === 'none' ? '' : ` ${device.lengthUnit}`;
   const seen = new Set<string>();
   for (const { first, second, width, place } of thinPlaces(shapes, TOUCHING * radius, SMALLEST_PART * radius)) {

@@ -138,9 +138,12 @@ const body = z
   })
   .meta({ description: 'One shape of one material, or an array or scatter of it.', ...exactlyOneOf(SHAPE_KEYS) });
 
-const materialKeys = ['index', 'permittivity'];
+const materialKeys = ['index', 'permittivity', 'conductivity'];
 const material = z
   .strictObject({
+    conductivity: number(
+      'Conductivity of a metal, S/m: a body of it is a wall with the surface impedance (1 − i)√(ωμ₀/2σ). Alone.',
+    ).optional(),
     index: complexNumber('Refractive index n + iκ; its square is the permittivity.').optional(),
     permittivity: complexNumber('Relative permittivity.').optional(),
     loss_tangent: number('Multiplies a real permittivity by 1 + i tan δ; 0 or more.').optional(),
@@ -148,6 +151,57 @@ const material = z
     gain: z.boolean().optional().meta({ description: 'Must be true when an imaginary part is negative.' }),
   })
   .meta({ description: 'A material that does not depend on frequency.', ...exactlyOneOf(materialKeys) });
+
+const enclosure = z
+  .strictObject({
+    wall: name('Material of the wall: "electric wall" if absent, "magnetic wall", or a metal.').optional(),
+    spaces: z
+      .array(region)
+      .min(1)
+      .meta({ description: 'The shapes that are hollow inside; together they are the space that holds the waves.' }),
+  })
+  .meta({ description: 'Walls all around: there is no open space then, except through guides.' });
+
+const guide = z
+  .strictObject({
+    name: name('Name of the guide.'),
+    from: point('Middle of the cross-section where the guide begins; S-parameters are referred to this plane.'),
+    angle: number('Direction in which it runs to infinity, degrees counterclockwise from x.'),
+    size: z.string().optional().meta({ description: 'Name of a standard rectangular guide, such as WR-90 or R100.' }),
+    width: number('Inner width, above 0. Either size or width.').optional(),
+    length: number(
+      'Stretch of guide that is meshed before it is closed exactly, above 0; its width if absent.',
+    ).optional(),
+    modes: number(
+      'Number of its modes that are channels; those that propagate in the whole band if absent.',
+    ).optional(),
+    reference: number('Reference plane, this far along the guide from its beginning; 0 if absent.').optional(),
+    wall: name('"electric wall" (if absent) or "magnetic wall": the channel is exact for perfect walls.').optional(),
+  })
+  .meta({ description: 'A guide between two parallel walls, filled with the background, that runs to infinity.' });
+
+const sheet = z
+  .strictObject({
+    name: name('Name of the sheet; sheet1, sheet2, … if absent.').optional(),
+    wall: name('Material of both its faces: "electric wall" if absent, "magnetic wall", or a metal.').optional(),
+    points: z.array(point('Point [x, y].')).min(2).meta({ description: 'Points in order, joined by straight lines.' }),
+  })
+  .meta({ description: 'A wall without thickness along straight lines, such as a thin window.' });
+
+const symmetry = z
+  .strictObject({
+    x: number('The line x = this value; the side of larger x is kept.').optional(),
+    y: number('The line y = this value; the side of larger y is kept.').optional(),
+    field: z
+      .enum(['even', 'odd'])
+      .meta({
+        description: 'Whether the field out of the plane keeps its sign (even) or changes it (odd) across the line.',
+      }),
+  })
+  .meta({
+    description: 'A symmetry line: what is drawn beyond it is replaced by the mirror image of the kept side.',
+    ...exactlyOneOf(['x', 'y']),
+  });
 
 export const BAND_KEYS = ['wavelength', 'frequency', 'energy', 'wavenumber'] as const;
 const limits = (description: string) => pair('Lower limit.', 'Upper limit.', description).optional();
@@ -209,7 +263,13 @@ export const deviceSchema = z
       .optional()
       .meta({ description: 'Materials by name; "vacuum" is built in.' }),
     background: name('Material that surrounds everything; vacuum if absent. It must be lossless.').optional(),
-    bodies: z.array(body).min(1).meta({ description: 'The bodies; a later one covers an earlier one.' }),
+    bodies: z
+      .array(body)
+      .meta({ description: 'The bodies; a later one covers an earlier one. A space with walls may be empty.' }),
+    enclosure: enclosure.optional(),
+    guides: z.array(guide).min(1).optional().meta({ description: 'Guides that run to infinity.' }),
+    sheets: z.array(sheet).min(1).optional().meta({ description: 'Walls without thickness.' }),
+    symmetry: z.array(symmetry).min(1).max(2).optional().meta({ description: 'Lines that halve the work.' }),
     pump: z
       .strictObject({
         bodies: z
@@ -221,7 +281,7 @@ export const deviceSchema = z
   })
   .meta({
     title: 'Wavewell device file',
-    description: 'A two-dimensional open resonator: band, materials, bodies, pump.',
+    description: 'A two-dimensional resonator: band, materials, bodies, walls, guides, pump.',
   });
 
 export type DeviceInput = z.output<typeof deviceSchema>;
@@ -231,4 +291,8 @@ export type ArrayInput = z.output<typeof array>;
 export type ScatterInput = z.output<typeof scatter>;
 export type MaterialInput = z.output<typeof material>;
 export type KnobInput = z.output<typeof knob>;
+export type EnclosureInput = z.output<typeof enclosure>;
+export type GuideInput = z.output<typeof guide>;
+export type SheetInput = z.output<typeof sheet>;
+export type SymmetryInput = z.output<typeof symmetry>;
 export type BandInput = z.output<typeof band>;

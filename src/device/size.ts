@@ -1,10 +1,10 @@
 // How large is a device, in wavelengths and in bytes?
 
 import { areaOf } from '../geometry/area.ts';
-import { boundingCircle } from '../geometry/bounding-circle.ts';
 import type { Circle } from '../geometry/bounding-circle.ts';
 import { modulus, multiply } from '../numerics/complex.ts';
 import type { Device } from './model.ts';
+import { deviceCircle } from './reach.ts';
 
 export interface DeviceSize {
   readonly circle: Circle;
@@ -25,8 +25,10 @@ const UNKNOWNS_PER_SQUARE_WAVELENGTH = 37;
  * Memory of a factorization in nested dissection order: 7.75 n log₂ n entries of 16 bytes. (A. George, SIAM J. Numer. Anal. 10, 345
  * (1973), for a square grid, from memory.)
  */
-export function deviceSize(device: Pick<Device, 'background' | 'band' | 'bodies'>): DeviceSize {
-  const circle = boundingCircle(device.bodies.map((body) => body.shape));
+export function deviceSize(
+  device: Pick<Device, 'background' | 'band' | 'bodies' | 'enclosure' | 'guides' | 'sheets' | 'symmetry'>,
+): DeviceSize {
+  const circle = deviceCircle(device);
   const { permittivity, permeability } = device.background;
   const perLength = device.band.kMax / (2 * Math.PI);
   // Bodies may cover each other: their whole area is counted, the background's too, so that the figure is on the safe side.

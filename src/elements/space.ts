@@ -38,7 +38,7 @@ export function buildSpace(mesh: Mesh, orders: number | Int32Array): Space {
     const t0 = mesh.edgeTriangles[2 * e];
     const t1 = mesh.edgeTriangles[2 * e + 1];
     edgeOrder[e] = Math.max(t0 >= 0 ? orderOf(t0) : 1, t1 >= 0 ? orderOf(t1) : 1);
-    if (t0 < 0 || t1 < 0) {
+    if ((t0 < 0 || t1 < 0) && (mesh.edgeFree?.[e] ?? -1) < 0) {
       edgeFixed[e] = 1;
       vertexFixed[mesh.edges[2 * e]] = 1;
       vertexFixed[mesh.edges[2 * e + 1]] = 1;

@@ -98,7 +98,7 @@ export function hatchLines(bodies: readonly DrawnBody[], spacing: number): Float
 /** Largest turn between neighbouring points of an arc, radians: sagitta 1/4000 of the radius. */
 const TURN = 0.045;
 
-function polyline(outline: Outline): Float64Array {
+export function polyline(outline: Outline): Float64Array {
   const points: number[] = [];
   for (const piece of outline) {
     const steps = piece.kind === 'line' ? 1 : Math.max(1, Math.ceil(Math.abs(piece.sweep) / TURN));

@@ -1,6 +1,7 @@
 // What does a device look like on paper?
 
 import type { Device } from '../device/model.ts';
+import { wallsOfDevice } from './walls.ts';
 import { bodiesOfDevice, boxAround, hatchLines, holds, visibleOutlines, type DrawnBody } from './bodies.ts';
 import { fill, stroke, text, type Drawing, type Item } from './drawing.ts';
 import { heading, LABEL_SIZE, MARGIN, scaleBar, settle, viewOf, type FigureOptions, type View } from './frame.ts';
@@ -15,14 +16,15 @@ const MOST_NAMES = 12;
  * The cross-section: bodies shaded by their index, the active ones hatched, each group named once; a scale bar and, to
  * compare, the band's middle wavelength in vacuum.
  *
- * @throws when the device has no body with an outline
+ * @throws when the device has neither a body nor an enclosure
  */
 export function deviceFigure(device: Device, options: FigureOptions = {}): Drawing {
   const settled = settle(options);
   const { palette, width } = settled;
   const bodies = bodiesOfDevice(device);
-  const box = boxAround(bodies.flatMap((b) => b.outlines));
-  if (!box) throw new Error('nothing to draw: expected at least one body with an outline');
+  const walls = wallsOfDevice(device);
+  const box = boxAround(walls.spaces.length > 0 ? walls.spaces : bodies.flatMap((b) => b.outlines));
+  if (!box) throw new Error('nothing to draw: expected at least one body or enclosure');
   const head = heading(options.title ?? device.title, belowText(device), settled);
   const [w, h] = [Math.max(box[2] - box[0], 1e-12), Math.max(box[3] - box[1], 1e-12)];
   const pad = 0.06 * Math.max(w, h);
@@ -51,6 +53,7 @@ export function deviceFigure(device: Device, options: FigureOptions = {}): Drawi
       palette.ink,
       1.3,
     ),
+    ...[...walls.spaces, ...walls.sheets].map((l) => stroke([view.line(l)], palette.ink, 2)),
     ...names(bodies, view, palette),
   ];
   const foot = top + tall + 34;

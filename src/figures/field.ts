@@ -1,5 +1,7 @@
 // What does a field of a run look like?
 
+import { meshOfRun } from './mesh.ts';
+import { wallsOfMesh } from './walls.ts';
 import { colourAt, cyclicMap, divergingMap, hexOf, sequentialMap, type Theme } from '../results/colours.ts';
 import { fieldOf, type RunView } from '../results/run-view.ts';
 import { bodiesOfRun, hatchLines, visibleOutlines } from './bodies.ts';
@@ -61,9 +63,19 @@ export function fieldFigure(run: RunView, fieldId: string, options: FieldFigureO
         return paintField({ points: inPixels, triangles, values, limit, rim }, show, phase, theme, across, down);
       },
     },
-    stroke([circleRing(view.toX(center[0]), view.toY(center[1]), rimRadius * view.scale)], palette.faint, 1, {
-      closed: true,
-    }),
+    ...(record.mesh.arrays.edgeFree === undefined
+      ? [
+          stroke([circleRing(view.toX(center[0]), view.toY(center[1]), rimRadius * view.scale)], palette.faint, 1, {
+            closed: true,
+          }),
+        ]
+      : [
+          stroke(
+            wallsOfMesh(meshOfRun(run), view.scale).map((l) => view.line(l)),
+            palette.ink,
+            1.6,
+          ),
+        ]),
     stroke(
       hatchLines(bodies, 7 / view.scale).map((l) => view.line(l)),
       palette.ink,

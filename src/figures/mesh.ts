@@ -68,7 +68,7 @@ export function meshFigure(mesh: Mesh, options: MeshFigureOptions = {}): Drawing
 /** The mesh stored in a run. */
 export function meshOfRun(run: RunView): Mesh {
   const { mesh } = run.record;
-  const get = (name: keyof typeof mesh.arrays): never => run.array(mesh.arrays[name]) as never;
+  const get = (name: Exclude<keyof typeof mesh.arrays, 'edgeFree'>): never => run.array(mesh.arrays[name]) as never;
   return {
     vertices: get('vertices'),
     triangles: get('triangles'),
@@ -82,11 +82,12 @@ export function meshOfRun(run: RunView): Mesh {
     center: mesh.center,
     rimRadius: mesh.rimRadius,
     endRadius: mesh.endRadius,
+    ...(mesh.arrays.edgeFree === undefined ? {} : { edgeFree: run.array(mesh.arrays.edgeFree) as Int32Array }),
   };
 }
 
 /** Every edge as a polyline from its lower vertex to its higher one, length units. */
-function edgeLines(mesh: Mesh, pixelsPerLength: number): Float64Array[] {
+export function edgeLines(mesh: Mesh, pixelsPerLength: number): Float64Array[] {
   const { vertices, edges, edgeCurve, curves, curveOrder } = mesh;
   const g = curveOrder;
   const basis = lagrangeBasis(gaussLobatto(Math.max(1, g) + 1).nodes);

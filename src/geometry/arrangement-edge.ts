@@ -11,6 +11,8 @@ export interface ArrangementEdge {
   /** Index of the last shape that holds the points just left (right) of the edge, −1 where there is none. */
   readonly left: number;
   readonly right: number;
+  /** Number of the sheet that lies on the edge; absent for none. A sheet may have the same region on both sides. */
+  readonly sheet?: number;
 }
 
 /** The same edge walked the other way. */
@@ -20,4 +22,5 @@ export const turned = (edge: ArrangementEdge): ArrangementEdge => ({
   to: edge.from,
   left: edge.right,
   right: edge.left,
+  ...(edge.sheet === undefined ? {} : { sheet: edge.sheet }),
 });

@@ -19,21 +19,41 @@ export interface Arrangement {
   readonly notes: readonly string[];
 }
 
+/** How an overlay is read; everything absent: the last shape that holds a point is its region. */
+export interface OverlayRules {
+  /** Region of a point from the parity of each shape about it; −1 for none. */
+  readonly regionOf?: (inside: Uint8Array) => number;
+  /** Regions that are not to be meshed, −1 among them: boundaries between two of them are dropped. */
+  readonly isVoid?: (region: number) => boolean;
+  /** Open chains of pieces that stay boundaries whatever lies beside them (outside the void). */
+  readonly sheets?: readonly (readonly CurvePiece[])[];
+}
+
 /**
  * The overlay of the shapes, a later one covering an earlier one: every boundary between two different regions, cut at
  * vertices only. Points nearer than `tolerance` are one point, curves nearer than that are one curve.
  */
-export function arrangeShapes(shapes: readonly Shape[], names: readonly string[], tolerance: number): Arrangement {
-  const sources = sourcesOf(shapes);
+export function arrangeShapes(
+  shapes: readonly Shape[],
+  names: readonly string[],
+  tolerance: number,
+  rules: OverlayRules = {},
+): Arrangement {
+  const regionOf = rules.regionOf ?? ((inside: Uint8Array) => inside.lastIndexOf(1));
+  const isVoid = rules.isVoid ?? ((region: number) => region < 0);
+  const sources = sourcesOf(shapes, rules.sheets ?? []);
   const pool = new VertexPool(tolerance);
   const parts = unify(cutAtMeetings(sources, pool, tolerance), tolerance);
-  const sides = sidesOfAll(parts, (part) => sidesOf(part, sources, shapes.length, tolerance));
+  const sides = sidesOfAll(parts, (part) => sidesOf(part, sources, shapes.length, tolerance, regionOf));
   const cut: ArrangementEdge[] = parts
-    .map(({ piece, from, to }, i) => ({ piece, from, to, left: sides[i][0], right: sides[i][1] }))
-    .filter(({ left, right }) => left !== right);
+    .map(({ piece, from, to, sources: own }, i): ArrangementEdge => {
+      const sheet = own.map((s) => sources[s].sheet).find((s) => s !== undefined);
+      return { piece, from, to, left: sides[i][0], right: sides[i][1], ...(sheet === undefined ? {} : { sheet }) };
+    })
+    .filter(({ left, right, sheet }) => (left !== right || sheet !== undefined) && !(isVoid(left) && isVoid(right)));
   const sizes = shapes.map(sizeOf);
   refuseNarrowGaps(cut, sizes, names, tolerance);
-  const { edges, notes } = healCusps(joinChains(cut), pool.coordinates, names);
+  const { edges, notes } = healCusps(joinChains(cut), pool.coordinates, names, rules.isVoid);
   return { ...dropUnused(pool, joinChains(edges)), notes };
 }
 
@@ -50,9 +70,10 @@ function sizeOf(shape: Shape): number {
   return Math.max(box[2] - box[0], box[3] - box[1]) / 2;
 }
 
-/** One piece of an outline as it was given. */
+/** One piece of an outline, or of a sheet (shape −1), as it was given. */
 interface Source {
   readonly shape: number;
+  readonly sheet?: number;
   readonly piece: CurvePiece;
   readonly box: readonly [number, number, number, number];
 }
@@ -65,12 +86,15 @@ interface Part {
   readonly sources: number[];
 }
 
-function sourcesOf(shapes: readonly Shape[]): Source[] {
+function sourcesOf(shapes: readonly Shape[], sheets: readonly (readonly CurvePiece[])[]): Source[] {
   const sources: Source[] = [];
   shapes.forEach((shape, index) =>
     shape.forEach((outline: Outline) =>
       outline.forEach((piece) => sources.push({ shape: index, piece, box: boxOf(piece) })),
     ),
+  );
+  sheets.forEach((pieces, sheet) =>
+    pieces.forEach((piece) => sources.push({ shape: -1, sheet, piece, box: boxOf(piece) })),
   );
   return sources;
 }
@@ -196,6 +220,8 @@ function sidesOfAll(parts: readonly Part[], find: (part: Part) => [number, numbe
         const j = touching[0] === i ? touching[1] : touching[0];
         if (sides[j]) continue;
         const onward = (parts[i].to === v) === (parts[j].from === v);
+        // where a sheet ends or begins its two sides may be one region, and a boundary's are not
+        if (parts[i].sources.length !== parts[j].sources.length) continue;
         const [left, right] = sides[i]!;
         sides[j] = onward ? [left, right] : [right, left];
         known.push(j);
@@ -209,7 +235,13 @@ function sidesOfAll(parts: readonly Part[], find: (part: Part) => [number, numbe
  * [left, right] shape of a part: parity of the crossings of a ray that leaves the part's middle on its left, the part's
  * own sources left out; on the right, each of these flips its shape's parity once.
  */
-function sidesOf(part: Part, sources: readonly Source[], shapes: number, tolerance: number): [number, number] {
+function sidesOf(
+  part: Part,
+  sources: readonly Source[],
+  shapes: number,
+  tolerance: number,
+  regionOf: (inside: Uint8Array) => number,
+): [number, number] {
   const origin = pointAt(part.piece, 0.5);
   const [vx, vy] = velocityAt(part.piece, 0.5);
   const normal = Math.atan2(vx, -vy);
@@ -227,8 +259,8 @@ function sidesOf(part: Part, sources: readonly Source[], shapes: number, toleran
     if (clearance > 1e4 * tolerance) break;
   }
   const right = best.slice();
-  for (const source of part.sources) right[sources[source].shape] ^= 1;
-  return [best.lastIndexOf(1), right.lastIndexOf(1)];
+  for (const source of part.sources) if (sources[source].shape >= 0) right[sources[source].shape] ^= 1;
+  return [regionOf(best), regionOf(right)];
 }
 
 /** Flips parity[shape] for every crossing ahead; returns how far (a length) the nearest doubtful case was. */
@@ -238,6 +270,7 @@ function castRay([ox, oy]: Point, angle: number, part: Part, sources: readonly S
   let clearance = Infinity;
   for (let i = 0; i < sources.length; i++) {
     const { shape, piece, box } = sources[i];
+    if (shape < 0) continue;
     const own = part.sources.includes(i);
     // Distance of the box from the ray's line, quick refusal first.
     const mx = (box[0] + box[2]) / 2 - ox;
@@ -320,9 +353,10 @@ function joinChains(edges: ArrangementEdge[]): ArrangementEdge[] {
     const a = first.to === vertex ? first : turned(first);
     const b = second.from === vertex ? second : turned(second);
     if (a.to !== vertex || b.from !== vertex || a.left !== b.left || a.right !== b.right) continue;
+    if (a.sheet !== b.sheet) continue;
     const piece = joinedPiece(a.piece, b.piece);
     if (!piece) continue;
-    joined[i] = { piece, from: a.from, to: b.to, left: a.left, right: a.right };
+    joined[i] = { ...a, piece, to: b.to };
     joined[j] = null;
     alias[j] = i;
   }

@@ -28,6 +28,7 @@ export function healCusps(
   given: readonly ArrangementEdge[],
   coordinates: number[],
   names: readonly string[],
+  isVoid: (region: number) => boolean = () => false,
 ): { edges: ArrangementEdge[]; notes: string[] } {
   const edges: (ArrangementEdge | null)[] = [...given];
   const atVertex = new Map<number, Set<number>>();
@@ -56,8 +57,11 @@ export function healCusps(
     const place: Point = [coordinates[2 * v], coordinates[2 * v + 1]];
     for (let closed = 0; ; closed++) {
       const spokes = spokesAt(v, place, edges, atVertex.get(v)!);
-      checkConsistent(spokes, place, names);
-      const at = spokes.length < 2 || closed > 50 ? -1 : spokes.findIndex((_, i) => isCusp(spokes, i));
+      checkConsistent(spokes, place, names, isVoid);
+      const at =
+        spokes.length < 2 || closed > 50
+          ? -1
+          : spokes.findIndex(({ edge }, i) => !isVoid(edge.left) && isCusp(spokes, i));
       if (at < 0) break;
       const right = spokes[at];
       const left = spokes[(at + 1) % spokes.length];
@@ -184,10 +188,15 @@ function cutAt(
 }
 
 /** Around a vertex the region between neighbouring spokes must be one. */
-function checkConsistent(spokes: readonly Spoke[], place: Point, names: readonly string[]): void {
+function checkConsistent(
+  spokes: readonly Spoke[],
+  place: Point,
+  names: readonly string[],
+  isVoid: (region: number) => boolean,
+): void {
   spokes.forEach(({ edge }, i) => {
     const next = spokes[(i + 1) % spokes.length].edge;
-    if (edge.left === next.right) return;
+    if (edge.left === next.right || (isVoid(edge.left) && isVoid(next.right))) return;
     const bodies = ownersOf([edge, next], names);
     throw new GeometryError(
       `The outlines of ${quoted(bodies)} come so close near (${place[0].toPrecision(8)}, ${place[1].toPrecision(8)}) that ` +

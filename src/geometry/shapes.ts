@@ -100,6 +100,23 @@ export function turned(shape: Shape, angle: number, about: Point): Shape {
   return mapPieces(shape, rotate, angle);
 }
 
+/** The mirror image across the line x = at, or y = at. */
+export function mirrored(shape: Shape, across: 'x' | 'y', at: number): Shape {
+  const flip = ([x, y]: Point): Point => (across === 'x' ? [2 * at - x, y] : [x, 2 * at - y]);
+  return shape.map((outline) =>
+    outline.map((piece): CurvePiece => {
+      if (piece.kind === 'line') return { kind: 'line', from: flip(piece.from), to: flip(piece.to) };
+      return {
+        ...piece,
+        center: flip(piece.center),
+        tilt: -piece.tilt,
+        start: across === 'x' ? Math.PI - piece.start : -piece.start,
+        sweep: -piece.sweep,
+      };
+    }),
+  );
+}
+
 function mapPieces(shape: Shape, map: (p: Point) => Point, angle: number): Shape {
   return shape.map((outline) =>
     outline.map((piece): CurvePiece => {

@@ -27,6 +27,11 @@ export interface Sizes {
   readonly ofLabel: (label: number) => number;
   readonly cornerGrading: number;
   readonly largestArc: number;
+  /** Of devices with walls: how an edge beside the outside ends the field, and which labels are one medium. */
+  readonly endOf?: (edge: number) => 'zero' | 'free' | 'open';
+  readonly mediumOf?: (label: number) => string;
+  /** Size wanted at a wall corner as a share of the local one, from the lowest exponent of the field there. */
+  readonly cornerShare?: (exponent: number) => number;
 }
 
 export interface Discretisation {
@@ -210,8 +215,14 @@ function cornersOf({ vertices, edges }: Arrangement, sizes: Sizes): { x: number;
     local[edge.to] = Math.min(local[edge.to], h);
   }
   const corners: { x: number; y: number; size: number }[] = [];
+  const walled = wallVertices({ edges }, sizes);
   for (let v = 0; v < count; v++) {
     const spokes = outward[v];
+    if (walled.has(v)) {
+      const share = walled.get(v)!;
+      if (share < 1) corners.push({ x: vertices[2 * v], y: vertices[2 * v + 1], size: share * local[v] });
+      continue;
+    }
     if (spokes.length === 2) {
       const [[ax, ay], [bx, by]] = spokes;
       const bend = Math.PI - Math.abs(Math.atan2(ax * by - ay * bx, ax * bx + ay * by));
@@ -220,6 +231,75 @@ function cornersOf({ vertices, edges }: Arrangement, sizes: Sizes): { x: number;
     corners.push({ x: vertices[2 * v], y: vertices[2 * v + 1], size: sizes.cornerGrading * local[v] });
   }
   return corners;
+}
+
+/**
+ * Vertices that touch the outside of a device with walls, and the share of the local size wanted there (1: the field is smooth). In a wedge of one
+ * medium and angle Ω it behaves like r^{nπ/Ω} between equal ends and r^{(n+½)π/Ω} between unequal ones: smooth when all
+ * exponents are whole. An interface that meets a wall at a right angle is continued by reflection. All else is singular.
+ */
+function wallVertices({ edges }: Pick<Arrangement, 'edges'>, sizes: Sizes): Map<number, number> {
+  const out = new Map<number, number>();
+  const { endOf, mediumOf, cornerShare, cornerGrading } = sizes;
+  if (!endOf || !mediumOf || !cornerShare) return out;
+  const around = new Map<number, { angle: number; before: number; after: number; edge: number; sheet: boolean }[]>();
+  edges.forEach((edge, i) => {
+    for (const back of [false, true]) {
+      const [x, y] = velocityAt(edge.piece, back ? 1 : 0);
+      const v = back ? edge.to : edge.from;
+      const spoke = {
+        angle: back ? Math.atan2(-y, -x) : Math.atan2(y, x),
+        // counterclockwise: the region met before the spoke, and after it
+        before: back ? edge.left : edge.right,
+        after: back ? edge.right : edge.left,
+        edge: i,
+        sheet: edge.sheet !== undefined,
+      };
+      around.set(v, [...(around.get(v) ?? []), spoke]);
+    }
+  });
+  for (const [v, spokes] of around) {
+    const isWall = (s: (typeof spokes)[number]): boolean => s.sheet || s.before < 0 || s.after < 0;
+    if (!spokes.some(isWall)) continue;
+    spokes.sort((a, b) => a.angle - b.angle || a.edge - b.edge);
+    let share = 1;
+    // from each wall counterclockwise to the next
+    spokes.forEach((first, i) => {
+      if (!isWall(first) || first.after < 0) return;
+      const wedges: { medium: string; angle: number }[] = [];
+      let here = first;
+      let last = first;
+      for (let step = 1; step <= spokes.length; step++) {
+        last = spokes[(i + step) % spokes.length];
+        let angle = last.angle - here.angle;
+        if (angle <= 0) angle += 2 * Math.PI;
+        const medium = mediumOf(here.after);
+        const top = wedges.at(-1);
+        if (top?.medium === medium) top.angle += angle;
+        else wedges.push({ medium, angle });
+        here = last;
+        if (isWall(last)) break;
+      }
+      const ends = [endOf(first.edge), endOf(last.edge)];
+      if (ends.includes('open')) return;
+      const exponent = lowestExponent(wedges, ends[0] === ends[1]);
+      if (exponent === null) share = Math.min(share, cornerGrading);
+      else if (Number.isFinite(exponent)) share = Math.min(share, cornerShare(exponent));
+    });
+    out.set(v, share);
+  }
+  return out;
+}
+
+/** Lowest exponent of the field about a wall corner; Infinity where it is smooth, null where several media meet. */
+function lowestExponent(wedges: readonly { medium: string; angle: number }[], equalEnds: boolean): number | null {
+  if (wedges.length === 1) {
+    const exponent = Math.PI / wedges[0].angle / (equalEnds ? 1 : 2);
+    const whole = Math.abs(exponent - Math.round(exponent)) < 1e-6 && Math.round(exponent) > 0;
+    return whole ? Infinity : exponent;
+  }
+  const right = (angle: number): boolean => Math.abs(angle - Math.PI / 2) < 1e-6;
+  return wedges.length === 2 && equalEnds && wedges.every(({ angle }) => right(angle)) ? Infinity : null;
 }
 
 /** Parameters first = s₀ < s₁ < … = last with equal shares of ∫ max(|dp|/h, |dθ|/largest arc, |dt|/largest arc). */

@@ -2,13 +2,14 @@
 
 import type { Body } from '../device/model.ts';
 import { arrangeShapes } from '../geometry/arrangement.ts';
-import type { Arrangement } from '../geometry/arrangement.ts';
-import type { Outline, Point } from '../geometry/curves.ts';
+import type { Arrangement, ArrangementEdge, OverlayRules } from '../geometry/arrangement.ts';
+import type { Outline, Point, Shape } from '../geometry/curves.ts';
 import { pointAt } from '../geometry/curves.ts';
 import { GeometryError } from '../geometry/geometry-error.ts';
+import { cutAlong } from './cut-along.ts';
 import { CURVE_ORDER, Draft, OUTSIDE } from './delaunay-refinement.ts';
 import { discretise } from './discretisation.ts';
-import type { Mesh, MeshPlan } from './mesh.ts';
+import type { EdgeCause, Mesh, MeshPlan, WallPlan } from './mesh.ts';
 import { BACKGROUND, LAYER } from './mesh.ts';
 
 /** Points nearer than this share of the end radius are one point. */
@@ -34,12 +35,16 @@ export const meshDevice = (bodies: readonly Body[], plan: MeshPlan): Mesh => mes
 
 export function meshDeviceWithNotes(bodies: readonly Body[], plan: MeshPlan): MeshedDevice {
   checkPlan(bodies, plan);
-  // Labels of the arrangement: 0 the layer's disk, 1 the rim's disk, 2 + i body i.
-  const { center, rimRadius, endRadius } = plan;
-  const shapes = [[circle(center, endRadius)], [circle(center, rimRadius)], ...bodies.map((body) => body.shape)];
-  const names = ['end of the layer', 'rim', ...bodies.map((body) => body.name)];
-  const arrangement = arrangeShapes(shapes, names, SNAP * endRadius);
-  checkInsideRim(arrangement, names);
+  const { center, endRadius } = plan;
+  const { shapes, names, rules } = overlayOf(bodies, plan);
+  const full = arrangeShapes(shapes, names, SNAP * endRadius, rules);
+  if (!plan.walls?.spaces.length) checkInsideRim(full, names, bodies.length);
+  // what is not meshed is all one outside
+  const outer = (label: number): number => (rules.isVoid(label) ? OUTSIDE : label);
+  const arrangement: Arrangement = {
+    ...full,
+    edges: full.edges.map((edge) => ({ ...edge, left: outer(edge.left), right: outer(edge.right) })),
+  };
   const base = (label: number): number =>
     label >= 2
       ? plan.bodySizes[label - 2]
@@ -49,7 +54,23 @@ export function meshDeviceWithNotes(bodies: readonly Body[], plan: MeshPlan): Me
           ? plan.layerSize
           : Infinity;
   const { cornerGrading, largestArc } = plan;
-  const discretisation = discretise(arrangement, { ofLabel: base, cornerGrading, largestArc });
+  const { walls } = plan;
+  const discretisation = discretise(arrangement, {
+    ofLabel: base,
+    cornerGrading,
+    largestArc,
+    ...(walls
+      ? {
+          endOf: (i: number) => {
+            const edge = full.edges[i];
+            const [x, y] = pointAt(edge.piece, 0.5);
+            return walls.endOf(walls.tagOf({ ...causeOf(edge, bodies.length, walls), middle: [x, y] }));
+          },
+          cornerShare: walls.cornerShare,
+          mediumOf: (label: number) => walls.mediumOf(label - 2 < 0 ? -1 : label - 2),
+        }
+      : {}),
+  });
   const draft = new Draft(arrangement, names, discretisation, base, center, endRadius, MOST_VERTICES);
   for (const stretch of [1.1]) {
     draft.refine(24, stretch);
@@ -63,7 +84,67 @@ export function meshDeviceWithNotes(bodies: readonly Body[], plan: MeshPlan): Me
       throw new GeometryError('The curved outlines cannot be meshed: their triangles stay folded.', [], center);
     draft.refine(28);
   }
-  return { mesh: meshOf(draft, plan), notes: arrangement.notes };
+  const { mesh, sheets } = meshOf(draft, plan, full, bodies.length);
+  return { mesh: sheets.size > 0 ? cutAlong(mesh, sheets) : mesh, notes: arrangement.notes };
+}
+
+interface Overlay {
+  readonly shapes: readonly Shape[];
+  readonly names: readonly string[];
+  readonly rules: Required<OverlayRules>;
+}
+
+/**
+ * Labels of the arrangement: 0 the layer, 1 the background, 2 + i body i, 2 + n + j half plane j beyond a symmetry line.
+ * The first shapes stand for these labels; further spaces and layers follow them and share the labels 1 and 0.
+ */
+function overlayOf(bodies: readonly Body[], plan: MeshPlan): Overlay {
+  const { center, rimRadius, endRadius, walls } = plan;
+  const n = bodies.length;
+  const spaces = walls?.spaces.length ? walls.spaces : [[circle(center, rimRadius)]];
+  const layers = walls?.spaces.length ? walls.layers : [[circle(center, endRadius)]];
+  const beyond = walls?.beyond ?? [];
+  const tail = 2 + n + beyond.length;
+  const moreSpaces = spaces.slice(1);
+  const shapes = [
+    layers[0] ?? spaces[0],
+    spaces[0],
+    ...bodies.map((body) => body.shape),
+    ...beyond,
+    ...moreSpaces,
+    ...layers.slice(1),
+  ];
+  const names = [
+    'end of the layer',
+    walls?.spaces.length ? 'enclosure' : 'rim',
+    ...bodies.map((body) => body.name),
+    ...beyond.map(() => 'symmetry line'),
+  ];
+  const inSome = (inside: Uint8Array, from: number, to: number): boolean => {
+    for (let i = from; i < to; i++) if (inside[i]) return true;
+    return false;
+  };
+  return {
+    shapes,
+    names,
+    rules: {
+      regionOf: (inside) => {
+        for (let i = tail - 1; i >= 2 + n; i--) if (inside[i]) return i;
+        const inSpace = inside[1] === 1 || inSome(inside, tail, tail + moreSpaces.length);
+        const inLayer =
+          (layers.length > 0 && inside[0] === 1) || inSome(inside, tail + moreSpaces.length, shapes.length);
+        if (!inSpace && !walls?.spaces.length) {
+          // bodies that leave the rim are told apart from the layer, to be refused
+          for (let i = 1 + n; i >= 2; i--) if (inside[i]) return i;
+        }
+        if (!inSpace) return inLayer ? 0 : -1;
+        for (let i = 1 + n; i >= 2; i--) if (inside[i]) return i;
+        return 1;
+      },
+      isVoid: (label) => label < 0 || label >= 2 + n || (walls?.metal.has(label - 2) ?? false),
+      sheets: walls?.sheets.map((sheet) => sheet.pieces) ?? [],
+    },
+  };
 }
 
 const circle = (center: Point, radius: number): Outline => [
@@ -72,7 +153,7 @@ const circle = (center: Point, radius: number): Outline => [
 
 function checkPlan(bodies: readonly Body[], plan: MeshPlan): void {
   const { rimRadius, endRadius, bodySizes, backgroundSize, layerSize, cornerGrading, largestArc } = plan;
-  if (!(rimRadius > 0) || !(endRadius > rimRadius) || !Number.isFinite(endRadius))
+  if (!(rimRadius > 0) || !(plan.walls ? endRadius >= rimRadius : endRadius > rimRadius) || !Number.isFinite(endRadius))
     throw new RangeError(`meshDevice: expected 0 < rimRadius < endRadius, got ${rimRadius} and ${endRadius}.`);
   if (bodySizes.length !== bodies.length)
     throw new RangeError(`meshDevice: expected one size a body (${bodies.length}), got ${bodySizes.length}.`);
@@ -86,10 +167,10 @@ function checkPlan(bodies: readonly Body[], plan: MeshPlan): void {
     );
 }
 
-function checkInsideRim(arrangement: Arrangement, names: readonly string[]): void {
+function checkInsideRim(arrangement: Arrangement, names: readonly string[], bodies: number): void {
   for (const { left, right, piece } of arrangement.edges) {
     const body = Math.max(left, right);
-    if (body < 2 || Math.min(left, right) >= 1) continue;
+    if (body < 2 || body >= 2 + bodies || Math.min(left, right) >= 1) continue;
     const place = pointAt(piece, 0.5);
     throw new GeometryError(
       `Body '${names[body]}' reaches the rim near (${place[0].toPrecision(6)}, ${place[1].toPrecision(6)}); every body must lie strictly inside it.`,
@@ -99,7 +180,16 @@ function checkInsideRim(arrangement: Arrangement, names: readonly string[]): voi
   }
 }
 
-function meshOf(draft: Draft, plan: MeshPlan): Mesh {
+/** The mesh, and the tag of every edge along which it must be cut. */
+function meshOf(
+  draft: Draft,
+  plan: MeshPlan,
+  arrangement: Arrangement,
+  bodies: number,
+): { mesh: Mesh; sheets: ReadonlyMap<number, number> } {
+  const { walls } = plan;
+  const edgeFree: number[] = [];
+  const sheets = new Map<number, number>();
   const t = draft.triangulation;
   const number = new Int32Array(t.x.length).fill(-1);
   const vertices: number[] = [];
@@ -143,11 +233,20 @@ function meshOf(draft: Draft, plan: MeshPlan): Mesh {
       edgeTriangles.push(index, -1);
       triangleEdges.push(edgeOf[e]);
       const nodes = t.segment[e] >= 0 ? draft.nodesOf(t.segment[e], low) : null;
+      edgeFree.push(-1);
+      if (walls && t.segment[e] >= 0) {
+        const index = edgeOf[e];
+        const edge = arrangement.edges[draft.segments[t.segment[e]]!.edge];
+        const outside = o < 0 || t.region[Math.floor(o / 3)] === OUTSIDE;
+        const middle: Point = [(t.x[from] + t.x[to]) / 2, (t.y[from] + t.y[to]) / 2];
+        if (outside) edgeFree[index] = walls.tagOf({ ...causeOf(edge, bodies, walls), middle });
+        else if (edge.sheet !== undefined) sheets.set(index, walls.tagOf({ by: 'sheet', index: edge.sheet, middle }));
+      }
       edgeCurve.push(nodes ? curves.length / (2 * CURVE_ORDER + 2) : -1);
       if (nodes) curves.push(...nodes);
     }
   });
-  return {
+  const mesh: Mesh = {
     vertices: new Float64Array(vertices),
     triangles: new Int32Array(triangles),
     regions: new Int32Array(regions),
@@ -160,5 +259,16 @@ function meshOf(draft: Draft, plan: MeshPlan): Mesh {
     center: [plan.center[0], plan.center[1]],
     rimRadius: plan.rimRadius,
     endRadius: plan.endRadius,
+    ...(walls ? { edgeFree: new Int32Array(edgeFree) } : {}),
   };
+  return { mesh, sheets };
+}
+
+/** What lies beyond an outer edge. */
+function causeOf(edge: ArrangementEdge, bodies: number, walls: WallPlan): Omit<EdgeCause, 'middle'> {
+  if (edge.sheet !== undefined) return { by: 'sheet', index: edge.sheet };
+  const isVoid = (label: number): boolean => label < 0 || label >= 2 + bodies || walls.metal.has(label - 2);
+  const label = isVoid(edge.left) ? edge.left : edge.right;
+  if (label >= 2 + bodies) return { by: 'beyond', index: label - 2 - bodies };
+  return label >= 2 ? { by: 'body', index: label - 2 } : { by: 'space', index: 0 };
 }

@@ -1,5 +1,7 @@
 // What is a mesh?
 
+import type { CurvePiece, Shape } from '../geometry/curves.ts';
+
 /** Region numbers of `Mesh.regions`: 0 … are indices into the device's bodies. */
 export const BACKGROUND = -1;
 export const LAYER = -2;
@@ -29,6 +31,11 @@ export interface Mesh {
   readonly edgeTriangles: Int32Array;
   /** Number of the edge's curve in `curves`, -1 for a straight edge. */
   readonly edgeCurve: Int32Array;
+  /**
+   * Per edge: −1, or for an outer edge that is left free (natural condition, to which walls and openings add terms) its
+   * tag in `WallPlan`. Outer edges are fixed to zero where this is −1, or absent.
+   */
+  readonly edgeFree?: Int32Array;
   /** Degree g of the edge polynomials. */
   readonly curveOrder: number;
   /**
@@ -44,6 +51,36 @@ export interface Mesh {
   readonly endRadius: number;
 }
 
+/** By what an outer edge was made. */
+export interface EdgeCause {
+  readonly by: 'space' | 'body' | 'beyond' | 'sheet';
+  /** Number of the body, half plane or sheet; 0 for the space itself. */
+  readonly index: number;
+  readonly middle: readonly [number, number];
+}
+
+/** Walls, openings and symmetry lines of a mesh. */
+export interface WallPlan {
+  /** Shapes whose union is meshed, in place of the rim's disk; empty: the disk. */
+  readonly spaces: readonly Shape[];
+  /** Shapes beside them that become region LAYER (stretched ends of guides). */
+  readonly layers: readonly Shape[];
+  /** Bodies of metal: not meshed. */
+  readonly metal: ReadonlySet<number>;
+  /** What is taken away: the far sides of symmetry lines. */
+  readonly beyond: readonly Shape[];
+  /** Walls without thickness: the mesh is cut open along them. */
+  readonly sheets: readonly { readonly name: string; readonly pieces: readonly CurvePiece[] }[];
+  /** −1: the field is zero on the edge; 0 and above: left free, with this tag in `Mesh.edgeFree`. */
+  readonly tagOf: (cause: EdgeCause) => number;
+  /** What a tag means for the singularity of a corner: field zero, slope zero, or no end at all (an opening). */
+  readonly endOf: (tag: number) => 'zero' | 'free' | 'open';
+  /** Equal for bodies (−1: background and layer) between which waves pass without a change of medium. */
+  readonly mediumOf: (body: number) => string;
+  /** Size wanted at a wall corner, as a share of the local one, from the lowest exponent of the field there. */
+  readonly cornerShare: (exponent: number) => number;
+}
+
 /** What the mesher is asked for besides the shapes. */
 export interface MeshPlan {
   readonly center: readonly [number, number];
@@ -57,4 +94,5 @@ export interface MeshPlan {
   readonly cornerGrading: number;
   /** Largest angle (radians) an edge may span on its curve. */
   readonly largestArc: number;
+  readonly walls?: WallPlan;
 }

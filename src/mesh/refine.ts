@@ -29,7 +29,9 @@ export function refineUniformly(mesh: Mesh): Mesh {
     edgeTriangles: new Int32Array(2 * (2 * e + 3 * t)).fill(-1),
     edgeCurve: new Int32Array(2 * e + 3 * t).fill(-1),
     curves: new Float64Array(2 * curves.length),
+    ...(mesh.edgeFree ? { edgeFree: new Int32Array(2 * e + 3 * t).fill(-1) } : {}),
   };
+  mesh.edgeFree?.forEach((tag, i) => finer.edgeFree!.fill(tag, 2 * i, 2 * i + 2));
   finer.vertices.set(vertices);
 
   // Edge i becomes edges 2i (at its lower vertex) and 2i + 1 (at its higher one).

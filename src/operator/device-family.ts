@@ -1,10 +1,20 @@
 // How does A depend on k and on the pump (or loss) of a device?
 
+import { metals } from '../device/metals.ts';
 import type { Device } from '../device/model.ts';
-import { add, type Complex, complex, type ComplexArray, divide, multiply, scale } from '../numerics/complex.ts';
+import {
+  add,
+  type Complex,
+  complex,
+  type ComplexArray,
+  divide,
+  multiply,
+  scale,
+  squareRoot,
+} from '../numerics/complex.ts';
 import { BACKGROUND, LAYER } from '../mesh/mesh.ts';
 import type { Factorization } from '../sparse/pattern.ts';
-import { type OpenOperator, type RegionWeights, setWeight, zeroWeights } from './open-operator.ts';
+import { type OpenOperator, type RegionWeights, setSurface, setWeight, zeroWeights } from './open-operator.ts';
 
 /** Which matrix of the family: A itself, ∂A/∂k or ∂A/∂(level). */
 export type Part = 'value' | 'byK' | 'byLevel';
@@ -16,7 +26,7 @@ export type Part = 'value' | 'byK' | 'byLevel';
 export interface DeviceFamily {
   readonly size: number;
   readonly operator: OpenOperator;
-  /** Two terms: stiffness with factor 1, mass with factor −k². */
+  /** Stiffness with factor 1, mass with factor −k², then the surface of each metal with the factor of its impedance. */
   readonly terms: number;
   termFactor(j: number, k: Complex): { readonly value: Complex; readonly byK: Complex };
   multiplyTermInto(out: ComplexArray, j: number, level: number, x: ComplexArray, columns: number): ComplexArray;
@@ -36,8 +46,11 @@ export type LevelSense = 'gain' | 'loss';
 
 /** The family of a device on an assembled operator. */
 export function deviceFamily(device: Device, operator: OpenOperator, sense: LevelSense): DeviceFamily {
+  const conductors = operator.surfaces ? metals(device) : [];
+  const metalCount = conductors.length;
   const weights = (k: Complex, level: number, part: Part): RegionWeights => {
-    const out = zeroWeights(device.bodies.length);
+    const out = zeroWeights(device.bodies.length, metalCount);
+    if (part !== 'byLevel') conductors.forEach((sigma, i) => setSurface(out, i, surfaceFactor(device, sigma, k)[part]));
     for (let region = LAYER; region < device.bodies.length; region++) {
       const { p, q, pSlope, qSlope } = regionMaterial(device, region, level, sense);
       const k2 = multiply(k, k);
@@ -54,7 +67,11 @@ export function deviceFamily(device: Device, operator: OpenOperator, sense: Leve
     return out;
   };
   const termWeights = (j: number, level: number): RegionWeights => {
-    const out = zeroWeights(device.bodies.length);
+    const out = zeroWeights(device.bodies.length, metalCount);
+    if (j >= 2) {
+      setSurface(out, j - 2, complex(1));
+      return out;
+    }
     for (let region = LAYER; region < device.bodies.length; region++) {
       const { p, q } = regionMaterial(device, region, level, sense);
       if (j === 0) setWeight(out.stiffness, region, p);
@@ -65,14 +82,43 @@ export function deviceFamily(device: Device, operator: OpenOperator, sense: Leve
   return {
     size: operator.space.unknowns,
     operator,
-    terms: 2,
+    terms: 2 + metalCount,
     termFactor: (j, k) =>
-      j === 0 ? { value: complex(1), byK: complex(0) } : { value: scale(multiply(k, k), -1), byK: scale(k, -2) },
+      j >= 2
+        ? surfaceFactor(device, conductors[j - 2], k)
+        : j === 0
+          ? { value: complex(1), byK: complex(0) }
+          : { value: scale(multiply(k, k), -1), byK: scale(k, -2) },
     multiplyTermInto: (out, j, level, x, columns) => operator.multiplyInto(out, termWeights(j, level), x, columns),
     weights,
     multiplyInto: (out, k, level, part, x, columns) => operator.multiplyInto(out, weights(k, level, part), x, columns),
     factorize: (k, level) => operator.factorize(weights(k, level, 'value')),
   };
+}
+
+/** Free-space impedance μ₀c, ohm (CODATA 2018, from memory). */
+const FREE_SPACE_IMPEDANCE = 376.730313668;
+
+/**
+ * Factor of ∮uv on a conductor of conductivity σ, from Z = (1 − i)√(ωμ₀/2σ): the wall's p∂ₙu = (ikη₀/Z) u in `Ez` and
+ * (ikZ/η₀) u in `Hz`, taken to the left side.
+ *
+ * @throws RangeError for a device without a length unit, where σ means nothing.
+ */
+export function surfaceFactor(
+  device: Device,
+  sigma: number,
+  k: Complex,
+): { readonly value: Complex; readonly byK: Complex } {
+  if (device.metres === null) throw new RangeError('a conductivity needs a length unit');
+  const strength = sigma * FREE_SPACE_IMPEDANCE * device.metres;
+  const root = squareRoot(k);
+  if (device.polarization === 'Ez') {
+    const value = multiply(root, complex(Math.sqrt(strength / 2), -Math.sqrt(strength / 2)));
+    return { value, byK: divide(value, scale(k, 2)) };
+  }
+  const value = multiply(multiply(k, root), complex(-1 / Math.sqrt(2 * strength), -1 / Math.sqrt(2 * strength)));
+  return { value, byK: divide(scale(value, 3), scale(k, 2)) };
 }
 
 /** (p, q) of a region at a level, and their derivatives by the level. */

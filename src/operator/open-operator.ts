@@ -12,6 +12,21 @@ import type { Analysis, Factorization } from '../sparse/pattern.ts';
 export interface RegionWeights {
   readonly stiffness: ComplexArray;
   readonly mass: ComplexArray;
+  /** Of the boundary mass of each metal, in the order of their tags; absent: none. */
+  readonly surface?: ComplexArray;
+}
+
+/** Boundary masses of metal walls, spread over their triangles. */
+export interface SurfaceTerms {
+  readonly count: number;
+  /** Per triangle: which metal, which local functions, dense matrix of their products along the edge. */
+  readonly parts: ReadonlyMap<number, readonly SurfacePart[]>;
+}
+
+export interface SurfacePart {
+  readonly metal: number;
+  readonly local: Int32Array;
+  readonly mass: Float64Array;
 }
 
 /**
@@ -23,13 +38,19 @@ export interface OpenOperator {
   readonly direction: Direction;
   readonly elements: ElementMatrices;
   readonly analysis: Analysis;
+  readonly surfaces?: SurfaceTerms;
   /** out = A x for `columns` interleaved column-major vectors of space.unknowns. */
   multiplyInto(out: ComplexArray, weights: RegionWeights, x: ComplexArray, columns: number): ComplexArray;
   factorize(weights: RegionWeights): Factorization;
 }
 
 /** Assembles all element matrices and analyses the pattern; both serve every direction through `facing`. */
-export function assembleOpen(space: Space, layer: PointCoefficients, direction: Direction): OpenOperator {
+export function assembleOpen(
+  space: Space,
+  layer: PointCoefficients,
+  direction: Direction,
+  surfaces?: SurfaceTerms,
+): OpenOperator {
   const elements = assembleElements(space, layer);
   const { mesh } = space;
   const triangles = mesh.triangles.length / 3;
@@ -42,36 +63,109 @@ export function assembleOpen(space: Space, layer: PointCoefficients, direction: 
     }
   }
   const analysis = analyse({ unknowns: space.unknowns, starts: space.starts, list: space.list, centroids });
-  return makeOperator(space, elements, analysis, direction);
+  return makeOperator(space, elements, analysis, direction, surfaces);
 }
 
 /** The same device with the other direction of its open boundary; shares all stored matrices. */
 export const facing = (operator: OpenOperator, direction: Direction): OpenOperator =>
   direction === operator.direction
     ? operator
-    : makeOperator(operator.space, operator.elements, operator.analysis, direction);
+    : makeOperator(operator.space, operator.elements, operator.analysis, direction, operator.surfaces);
 
 /** Weights per region for a device with `bodies` bodies, all zero. */
-export const zeroWeights = (bodies: number): RegionWeights => ({
+export const zeroWeights = (bodies: number, metals = 0): RegionWeights => ({
   stiffness: new Float64Array(2 * (bodies + 2)),
   mass: new Float64Array(2 * (bodies + 2)),
+  ...(metals > 0 ? { surface: new Float64Array(2 * metals) } : {}),
 });
+
+export function setSurface({ surface }: RegionWeights, metal: number, value: Complex): void {
+  if (!surface) return;
+  surface[2 * metal] = value.re;
+  surface[2 * metal + 1] = value.im;
+}
 
 export function setWeight(array: ComplexArray, region: number, value: Complex): void {
   array[2 * (region + 2)] = value.re;
   array[2 * (region + 2) + 1] = value.im;
 }
 
-function makeOperator(space: Space, elements: ElementMatrices, analysis: Analysis, direction: Direction): OpenOperator {
+function makeOperator(
+  space: Space,
+  elements: ElementMatrices,
+  analysis: Analysis,
+  direction: Direction,
+  surfaces?: SurfaceTerms,
+): OpenOperator {
   return {
     space,
     direction,
     elements,
     analysis,
-    multiplyInto: (out, weights, x, columns) => multiplyElements(out, space, elements, direction, weights, x, columns),
+    ...(surfaces ? { surfaces } : {}),
+    multiplyInto: (out, weights, x, columns) => {
+      multiplyElements(out, space, elements, direction, weights, x, columns);
+      if (surfaces && weights.surface) addSurfaces(out, space, surfaces, weights.surface, x, columns);
+      return out;
+    },
     factorize: (weights) =>
-      analysis.factorize((t, into) => fillElement(into, t, space.mesh.regions[t], elements, direction, weights)),
+      analysis.factorize((t, into) => {
+        fillElement(into, t, space.mesh.regions[t], elements, direction, weights);
+        if (surfaces && weights.surface) fillSurface(into, t, space, surfaces, weights.surface);
+      }),
   };
+}
+
+/** Adds w B of the triangle's edges on metal to its matrix. */
+export function fillSurface(
+  into: ComplexArray,
+  t: number,
+  space: Space,
+  surfaces: SurfaceTerms,
+  weights: ComplexArray,
+): void {
+  const nd = space.starts[t + 1] - space.starts[t];
+  for (const { metal, local, mass } of surfaces.parts.get(t) ?? []) {
+    const n = local.length;
+    for (let j = 0; j < n; j++)
+      for (let i = 0; i < n; i++) {
+        const at = 2 * (local[i] + local[j] * nd);
+        into[at] += weights[2 * metal] * mass[i + j * n];
+        into[at + 1] += weights[2 * metal + 1] * mass[i + j * n];
+      }
+  }
+}
+
+function addSurfaces(
+  out: ComplexArray,
+  space: Space,
+  surfaces: SurfaceTerms,
+  weights: ComplexArray,
+  x: ComplexArray,
+  columns: number,
+): void {
+  const { starts, list, unknowns } = space;
+  for (const [t, parts] of surfaces.parts)
+    for (const { metal, local, mass } of parts) {
+      const n = local.length;
+      const wr = weights[2 * metal];
+      const wi = weights[2 * metal + 1];
+      for (let c = 0; c < columns; c++)
+        for (let i = 0; i < n; i++) {
+          const g = list[starts[t] + local[i]];
+          if (g < 0) continue;
+          let re = 0;
+          let im = 0;
+          for (let j = 0; j < n; j++) {
+            const h = list[starts[t] + local[j]];
+            if (h < 0) continue;
+            re += mass[i + j * n] * x[2 * (h + c * unknowns)];
+            im += mass[i + j * n] * x[2 * (h + c * unknowns) + 1];
+          }
+          out[2 * (g + c * unknowns)] += wr * re - wi * im;
+          out[2 * (g + c * unknowns) + 1] += wr * im + wi * re;
+        }
+    }
 }
 
 /** Writes w_K K_t + w_M M_t of one triangle; the layer is conjugated for incoming waves. */

@@ -1,6 +1,7 @@
 // How many modes are to be expected in a band?
 
 import type { Device } from '../device/model.ts';
+import { walledSpaces } from '../device/guides.ts';
 import { areaOf } from '../geometry/area.ts';
 
 /**
@@ -8,7 +9,9 @@ import { areaOf } from '../geometry/area.ts';
  * Covered parts count twice, which only makes tiles smaller.
  */
 export function expectedModes(device: Device): (a: number, b: number) => number {
+  const { permittivity, permeability } = device.background;
   let optical = 0;
+  for (const space of walledSpaces(device)) optical += Math.abs(areaOf(space)) * permittivity * permeability;
   for (const body of device.bodies) {
     const { permittivity: e, permeability: m } = body;
     optical += Math.abs(areaOf(body.shape)) * Math.hypot(e.re, e.im) * Math.hypot(m.re, m.im);

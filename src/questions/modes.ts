@@ -1,10 +1,11 @@
 // Where does a device resonate? Poles, or zeros, in a window of complex k.
 
-import { type Completeness, countedSearch } from '../accuracy/completeness.ts';
+import { type Completeness, countedSearch, isCountable } from '../accuracy/completeness.ts';
 import { type ErrorParts, climbModes, type FoundMode, groupWidth, totalError } from '../accuracy/mode-ladder.ts';
 import { returnedToMode } from '../accuracy/layer-return.ts';
 import { DEFAULT_DIGITS, resolutionFor } from '../accuracy/resolution.ts';
-import type { Device } from '../device/model.ts';
+import { metals } from '../device/metals.ts';
+import { type Device, isWalled } from '../device/model.ts';
 import type { Wedge } from '../eigen/window.ts';
 import type { Complex, ComplexArray } from '../numerics/complex.ts';
 import { farField } from '../scattering/amplitudes.ts';
@@ -43,7 +44,7 @@ export interface Mode {
   readonly vectors: readonly ComplexArray[];
   /** Amplitudes of the first member outside: outgoing for poles, incoming for zeros; m = −M … M. */
   readonly multipoles: Multipoles;
-  /** Far-field power density at 0 … 359°, mean 1 (of the first member). */
+  /** Far-field power density at 0 … 359°, mean 1 (of the first member); empty where the rim is not a full one. */
   readonly farField: Float64Array;
 }
 
@@ -54,7 +55,7 @@ export interface ModesAnswer {
   /** The search covered the whole window. */
   readonly covered: boolean;
   /** What the independent count says of the list. */
-  readonly complete: Completeness;
+  readonly complete: Completeness | null;
   /** All modes have the digits. */
   readonly reached: boolean;
   readonly digits: number;
@@ -87,7 +88,7 @@ export function findModes(device: Device, request: ModesRequest = {}): ModesAnsw
   request.progress?.('meshing', 0);
   const prepared = prepare(device, { kMin, kMax, slope: 1 / (2 * qMin) }, resolution);
   const direction = assignment === 'poles' ? 'outgoing' : 'incoming';
-  const counted = countedSearch(device, prepared.layer, groupWidth(digits, kMax) / kMax);
+  const counted = isCountable(device) ? countedSearch(device, prepared.layer, groupWidth(digits, kMax) / kMax) : null;
   const search = climbModes((order) => familyOf(prepared, order, direction, 'gain'), {
     wedge,
     level: 0,
@@ -95,7 +96,7 @@ export function findModes(device: Device, request: ModesRequest = {}): ModesAnsw
     startOrder: resolution.order,
     layer: prepared.layer,
     expected: expectedModes(device),
-    search: (family, window) => counted.search(family, window),
+    ...(counted ? { search: (family, window) => counted.search(family, window) } : {}),
     ...(request.progress ? { progress: request.progress } : {}),
   });
   const modes = search.modes.map((found, i) => {
@@ -107,10 +108,11 @@ export function findModes(device: Device, request: ModesRequest = {}): ModesAnsw
     assignment,
     dropped: search.dropped,
     covered: search.covered,
-    complete: counted.judge(
-      wedge,
-      search.modes.map((m) => m.group),
-    ),
+    complete:
+      counted?.judge(
+        wedge,
+        search.modes.map((m) => m.group),
+      ) ?? null,
     reached: search.reached,
     digits,
     qMin,
@@ -132,7 +134,7 @@ export function wedgeFor(
   sliver = 1e-9,
 ): Wedge {
   const gain = device.bodies.some((b) => b.permittivity.im < 0 || b.permeability.im < 0);
-  const loss = device.bodies.some((b) => b.permittivity.im > 0 || b.permeability.im > 0);
+  const loss = metals(device).length > 0 || device.bodies.some((b) => b.permittivity.im > 0 || b.permeability.im > 0);
   return assignment === 'poles'
     ? { kMin, kMax, low: slope, high: gain ? slope : sliver }
     : { kMin, kMax, low: loss ? slope : sliver, high: slope };
@@ -142,11 +144,11 @@ function describeMode(prepared: Prepared, order: number, found: FoundMode, assig
   const { group, layer } = found;
   const { k, vectors, multiplicity } = group;
   const n = vectors.length / (2 * multiplicity);
-  const space = spaceOf(prepared, order);
   const members = Array.from({ length: multiplicity }, (_, i) => vectors.slice(2 * n * i, 2 * n * (i + 1)));
-  const M = multipoleOrder(prepared.device, prepared.bodyRadius, Math.hypot(k.re, k.im));
-  const all = rimMultipoles(prepared.device, space, k, assignment === 'poles' ? 1 : 2, M, members);
-  const error = { ...found.error, boundary: 2 * Math.abs(k.im) * returnedToMode(prepared.layer, k, all) };
+  const all = outsideOf(prepared, order, k, assignment, members);
+  const error = all
+    ? { ...found.error, boundary: 2 * Math.abs(k.im) * returnedToMode(prepared.layer, k, all) }
+    : found.error;
   const kError = totalError(error);
   const width = Math.max(Math.abs(k.im), k.re / (2 * HIGHEST_Q));
   return {
@@ -156,11 +158,31 @@ function describeMode(prepared: Prepared, order: number, found: FoundMode, assig
     q: k.re / (2 * width),
     qError: (k.re / (2 * width)) * Math.min(1, kError / width),
     multiplicity,
-    label: modeLabel(all),
+    label: [...(all ? [modeLabel(all)] : []), ...parityLabels(prepared.device)]
+      .filter((text) => text !== '')
+      .join(', '),
     layerShare: layer.share,
     layerSensitivity: layer.sensitivity,
     vectors: members,
-    multipoles: all[0],
-    farField: farField(all[0]),
+    multipoles: all?.[0] ?? new Float64Array(0),
+    farField: all ? farField(all[0]) : new Float64Array(0),
   };
 }
+
+/** Multipoles of all members outside an open device; null where walls or symmetry lines leave no full rim. */
+function outsideOf(
+  prepared: Prepared,
+  order: number,
+  k: Complex,
+  assignment: Assignment,
+  members: readonly ComplexArray[],
+): readonly Multipoles[] | null {
+  const { device, bodyRadius } = prepared;
+  if (isWalled(device) || device.symmetry) return null;
+  const M = multipoleOrder(device, bodyRadius, Math.hypot(k.re, k.im));
+  return rimMultipoles(device, spaceOf(prepared, order), k, assignment === 'poles' ? 1 : 2, M, members);
+}
+
+/** The parity that each symmetry line forces on every mode. */
+const parityLabels = (device: Device): string[] =>
+  (device.symmetry ?? []).map(({ across, parity }) => `${parity} in ${across}`);

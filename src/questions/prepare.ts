@@ -1,14 +1,16 @@
 // From a checked device to matrices: what every question starts with.
 
 import type { Resolution } from '../accuracy/resolution.ts';
-import { type LayerPlan, layerCoefficients, planLayer } from '../boundary/stretched-layer.ts';
+import { type LayerPlan, layerCoefficients } from '../boundary/stretched-layer.ts';
+import { metals } from '../device/metals.ts';
 import type { Device } from '../device/model.ts';
 import { buildSpace, type Space } from '../elements/space.ts';
-import { boundingCircle } from '../geometry/bounding-circle.ts';
 import type { Mesh } from '../mesh/mesh.ts';
 import { meshDeviceWithNotes } from '../mesh/mesh-device.ts';
 import type { Direction } from '../numerics/conventions.ts';
 import { type DeviceFamily, deviceFamily, type LevelSense } from '../operator/device-family.ts';
+import { surfaceTerms } from '../operator/surfaces.ts';
+import { FIRST_METAL, planSpace } from './space-plan.ts';
 import { assembleOpen, facing, type OpenOperator } from '../operator/open-operator.ts';
 
 /** The part of the complex plane that a discretisation must serve. */
@@ -53,36 +55,35 @@ export function prepare(
   highestOrder?: (x: number) => number,
 ): Prepared {
   const index = Math.sqrt(device.background.permittivity * device.background.permeability);
-  const { center, radius } = boundingCircle(device.bodies.map((b) => b.shape));
-  const layer = planLayer({
-    bodyRadius: radius,
-    kMin: scope.kMin,
-    kMax: scope.kMax,
-    largestArgument: Math.atan(scope.slope),
-    backgroundIndex: index,
-    tolerance: resolution.layerTolerance,
-    ...(highestOrder === undefined ? {} : { highestOrder }),
-  });
+  const { center, radius, layer, walls } = planSpace(device, scope, resolution, 'layers', highestOrder);
   const size = (n: number): number => (refine * resolution.sizeInWavelengths * 2 * Math.PI) / (scope.kMax * n);
   const { mesh, notes } = meshDeviceWithNotes(device.bodies, {
     center,
     rimRadius: layer.rimRadius,
     endRadius: layer.endRadius,
+    ...(walls ? { walls } : {}),
     bodySizes: device.bodies.map((b) =>
-      size(
-        Math.sqrt(Math.hypot(b.permittivity.re, b.permittivity.im) * Math.hypot(b.permeability.re, b.permeability.im)),
-      ),
+      b.wall
+        ? size(index)
+        : size(
+            Math.sqrt(
+              Math.hypot(b.permittivity.re, b.permittivity.im) * Math.hypot(b.permeability.re, b.permeability.im),
+            ),
+          ),
     ),
     backgroundSize: size(index),
     layerSize: LAYER_COARSENING * size(index),
     cornerGrading: resolution.cornerGrading,
     largestArc: LARGEST_ARC * Math.min(1, refine),
   });
+  const metalCount = metals(device).length;
   const operators = new Map<number, OpenOperator>();
   const operator = (order: number): OpenOperator => {
     let made = operators.get(order);
     if (!made) {
-      made = assembleOpen(buildSpace(mesh, order), layerCoefficients(layer, center), 'outgoing');
+      const space = buildSpace(mesh, order);
+      const surfaces = metalCount > 0 ? surfaceTerms(space, FIRST_METAL, metalCount) : undefined;
+      made = assembleOpen(space, layerCoefficients(layer, center), 'outgoing', surfaces);
       operators.set(order, made);
     }
     return made;

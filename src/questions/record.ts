@@ -66,7 +66,7 @@ export function modesRecord(device: Device, answer: ModesAnswer, context: RunCon
         order: answer.order,
         vector,
         drive: null,
-        pattern: j === 0 && kind === 'pole' ? mode.farField : null,
+        pattern: j === 0 && kind === 'pole' && mode.farField.length > 0 ? mode.farField : null,
       });
     });
     book.marks.push({
@@ -87,7 +87,7 @@ export function modesRecord(device: Device, answer: ModesAnswer, context: RunCon
     modes: answer.modes.map((m) => modeAnswer(device, m, answer.assignment)),
     dropped: answer.dropped.map((d) => ({ k: [d.k.re, d.k.im], reason: d.reason })),
     covered: answer.covered,
-    complete: answer.complete,
+    ...(answer.complete ? { complete: answer.complete } : {}),
     reached: answer.reached,
     order: answer.order,
     unknowns: spaceOf(answer.prepared, answer.order).unknowns,
@@ -380,6 +380,7 @@ function openBook(device: Device, prepared: Prepared, order: number, context: Ru
     curves: 'mesh-curves',
   } as const;
   for (const [key, name] of Object.entries(meshArrays)) arrays[name] = mesh[key as keyof typeof meshArrays];
+  if (mesh.edgeFree) arrays['mesh-edge-free'] = mesh.edgeFree;
   const bodies = device.bodies.map((body, i) => ({
     name: body.name,
     group: body.group,
@@ -461,7 +462,7 @@ function openBook(device: Device, prepared: Prepared, order: number, context: Ru
           rimRadius: mesh.rimRadius,
           endRadius: mesh.endRadius,
           curveOrder: mesh.curveOrder,
-          arrays: meshArrays,
+          arrays: mesh.edgeFree ? { ...meshArrays, edgeFree: 'mesh-edge-free' } : meshArrays,
         },
       },
       arrays,

@@ -15,7 +15,7 @@ export function modesSentence(device: Device, answer: ModesAnswer): string {
   const what = answer.assignment === 'poles' ? 'resonance' : 'zero';
   const count = answer.modes.reduce((sum, m) => sum + m.multiplicity, 0);
   const where = `with Q ≥ ${answer.qMin} between ${bandText(device)}`;
-  const { counted, proven } = answer.complete;
+  const { counted, proven } = answer.complete ?? { counted: 0, proven: false };
   if (count === 0) {
     if (proven) return `No ${what} ${where}: the count is 0.`;
     return counted === 0 ? `No ${what} ${where}.` : `No ${what} found ${where}, but the count is ${counted}.`;

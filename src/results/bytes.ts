@@ -172,6 +172,8 @@ function checkMesh(value: unknown, arrays: Entries): void {
   same('triangleEdges', length['triangles']);
   same('edgeTriangles', length['edges']);
   same('edgeCurve', length['edges'] / 2);
+  if (names['edgeFree'] !== undefined)
+    arrayNamed(arrays, names['edgeFree'], 'mesh.arrays.edgeFree', ['i32'], { exact: length['edges'] / 2 });
 }
 
 /** @returns the number of display points. */

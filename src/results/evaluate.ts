@@ -26,6 +26,7 @@ export function meshFrom(run: RunView): Mesh {
     center: mesh.center,
     rimRadius: mesh.rimRadius,
     endRadius: mesh.endRadius,
+    ...(arrays.edgeFree === undefined ? {} : { edgeFree: i32(arrays.edgeFree) }),
   };
 }
 

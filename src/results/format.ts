@@ -217,7 +217,10 @@ export interface RunRecord {
         'vertices' | 'triangles' | 'regions' | 'edges' | 'triangleEdges' | 'edgeTriangles' | 'edgeCurve' | 'curves',
         string
       >
-    >;
+    > & {
+      /** Devices with walls: tags of outer edges left free. */
+      readonly edgeFree?: string;
+    };
   };
   readonly arrays: Readonly<Record<string, ArrayEntry>>;
   /** Files of the run folder other than `run.json`, made when it is stored: reading checks `arrays.bin` against it. */

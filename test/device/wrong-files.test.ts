@@ -138,7 +138,7 @@ const rows: Row[] = [
     '"pitch"',
     'write "pitch"',
   ],
-  ['key not yet taken', withLine(16, 'guides: []'), 16, 1, 'guides', '"guides"', '"bodies"', ''],
+  ['key not yet taken', withLine(16, 'feeds: []'), 16, 1, 'feeds', '"feeds"', '"bodies"', ''],
   ['polarization missing', withLine(4), 1, 1, 'polarization', 'no key', '"Ez" or "Hz"', 'add the key "polarization"'],
   ['polarization misspelt', withLine(4, 'polarization: ez'), 4, 15, 'polarization', '"ez"', '"Ez" or "Hz"', 'write Ez'],
   ['length unit', withLine(3, 'length: inch'), 3, 9, 'length', '"inch"', '"um"', 'write'],
