@@ -192,11 +192,9 @@ const symmetry = z
   .strictObject({
     x: number('The line x = this value; the side of larger x is kept.').optional(),
     y: number('The line y = this value; the side of larger y is kept.').optional(),
-    field: z
-      .enum(['even', 'odd'])
-      .meta({
-        description: 'Whether the field out of the plane keeps its sign (even) or changes it (odd) across the line.',
-      }),
+    field: z.enum(['even', 'odd']).meta({
+      description: 'Whether the field out of the plane keeps its sign (even) or changes it (odd) across the line.',
+    }),
   })
   .meta({
     description: 'A symmetry line: what is drawn beyond it is replaced by the mirror image of the kept side.',
