@@ -4,7 +4,8 @@ import { LAYER } from '../mesh/mesh.ts';
 import { triangleRule } from '../numerics/quadrature.ts';
 import { functionCount, tabulateBasis } from './basis.ts';
 import { isCurved, MAP_STRIDE, mapInto, tabulateMap } from './curved-map.ts';
-import type { Space } from './space.ts';
+import { type DenseKernels, type ElementTables, makeDenseKernels } from '../sparse/kernels/dense-kernels.ts';
+import { largestElement, type Space } from './space.ts';
 
 /**
  * Complex coefficients of one point: ∇uᵀT∇v with the symmetric tensor T = [[t11,t12],[t12,t22]], and m·u·v, as
@@ -21,7 +22,23 @@ export interface ElementMatrices {
   readonly mass: readonly Float64Array[];
   /** 1 where the triangle's matrices are complex (the stretched layer). */
   readonly complex: Uint8Array;
+  /** Absent without compiled kernels. */
+  readonly store?: ElementStore;
 }
+
+/** What the compiled product needs: everything in one memory. */
+export interface ElementStore {
+  readonly kernels: DenseKernels;
+  readonly tables: ElementTables;
+  /** Room for the weights of so many regions, and for COLUMNS columns of x and of the product. */
+  readonly regions: number;
+  readonly weights: number;
+  readonly x: number;
+  readonly out: number;
+}
+
+/** Columns that are multiplied together. */
+export const COLUMNS = 8;
 
 /** Quadrature degree beyond 2p that curved maps (degree 10, fast-decaying) and stretched layers ask for. */
 const EXTRA_DEGREE = 8;
@@ -33,87 +50,165 @@ export function assembleElements(space: Space, layer: PointCoefficients): Elemen
   const stiffness: Float64Array[] = new Array<Float64Array>(triangles);
   const mass: Float64Array[] = new Array<Float64Array>(triangles);
   const complex = new Uint8Array(triangles);
+  for (let t = 0; t < triangles; t++) complex[t] = mesh.regions[t] === LAYER ? 1 : 0;
   const reference = referenceMatrices(space.order);
   const rule = triangleRule(2 * space.order + EXTRA_DEGREE);
-  const basis = tabulateBasis(space.order, rule.points);
+  const basis = transposeBasis(space.order, rule.points);
   const table = tabulateMap(rule.points, mesh.curveOrder);
-  const work = makeWork(rule, space.order);
+  const widest = largestElement(space);
+  const store = makeStore(space, complex, widest, workNumbers(basis.points, widest));
+  const work = makeWork(basis.points, widest, store?.kernels);
   for (let t = 0; t < triangles; t++) {
     const functions = space.functions.subarray(starts[t], starts[t + 1]);
     const signs = space.signs.subarray(starts[t], starts[t + 1]);
     const nd = functions.length;
-    if (mesh.regions[t] === LAYER) {
-      complex[t] = 1;
-      stiffness[t] = new Float64Array(2 * nd * nd);
-      mass[t] = new Float64Array(2 * nd * nd);
-      mapInto(work.map, mesh, t, table);
-      integrateLayer(stiffness[t], mass[t], functions, basis, rule.weights, work, layer);
-      applySigns(stiffness[t], signs, 2);
-      applySigns(mass[t], signs, 2);
-      continue;
-    }
-    stiffness[t] = new Float64Array(nd * nd);
-    mass[t] = new Float64Array(nd * nd);
+    const width = complex[t] ? 2 : 1;
+    const length = width * nd * nd;
+    const at = store ? store.kernels.integers[store.tables.places + t] : 0;
+    stiffness[t] = store ? store.kernels.numbers.subarray(at, at + length) : new Float64Array(length);
+    mass[t] = store ? store.kernels.numbers.subarray(at + length, at + 2 * length) : new Float64Array(length);
     mapInto(work.map, mesh, t, table);
-    if (isCurved(mesh, t)) integrateCurved(stiffness[t], mass[t], functions, basis, rule.weights, work);
+    if (complex[t]) integrateLayer(stiffness[t], mass[t], functions, basis, rule.weights, work, layer);
+    else if (isCurved(mesh, t)) integrateCurved(stiffness[t], mass[t], functions, basis, rule.weights, work);
     else scaleReference(stiffness[t], mass[t], functions, reference, work.map);
-    applySigns(stiffness[t], signs, 1);
-    applySigns(mass[t], signs, 1);
+    applySigns(stiffness[t], signs, width);
+    applySigns(mass[t], signs, width);
   }
-  return { stiffness, mass, complex };
+  return { stiffness, mass, complex, ...(store ? { store } : {}) };
 }
 
-/** Function-major tables of one triangle: function i at point q sits at i·nq + q. */
+/** Plans one memory for work, tables, matrices and columns; undefined where there are no compiled kernels. */
+function makeStore(space: Space, complex: Uint8Array, widest: number, work: number): ElementStore | undefined {
+  const { mesh, starts, list, unknowns } = space;
+  const triangles = complex.length;
+  let regions = 0;
+  for (const region of mesh.regions) regions = Math.max(regions, region + 3);
+  const localNumbers = 2 * COLUMNS * (widest + 4);
+  // Positions from 0 on; the kernels' own come before them.
+  let free = work;
+  const numbers = (length: number): number => (free += length + (length & 1)) - length - (length & 1);
+  const words = (length: number): number => 2 * numbers(Math.ceil(length / 2));
+  const wordsOf = { starts: words(triangles + 1), list: words(list.length), places: words(triangles) };
+  const regionsAt = words(triangles);
+  const complexAt = words(triangles);
+  const weights = numbers(4 * regions);
+  const x = numbers(2 * COLUMNS * unknowns);
+  const out = numbers(2 * COLUMNS * unknowns);
+  const local = numbers(5 * localNumbers);
+  const matrices = free;
+  for (let t = 0; t < triangles; t++) free += 2 * (complex[t] ? 2 : 1) * (starts[t + 1] - starts[t]) ** 2;
+  const kernels = makeDenseKernels(free + 16);
+  if (kernels === undefined) return undefined;
+  const { base, integers } = kernels;
+  const tables: ElementTables = {
+    elements: triangles,
+    starts: 2 * base + wordsOf.starts,
+    list: 2 * base + wordsOf.list,
+    places: 2 * base + wordsOf.places,
+    regions: 2 * base + regionsAt,
+    complex: 2 * base + complexAt,
+    local: base + local,
+    localNumbers,
+  };
+  integers.set(starts, tables.starts);
+  integers.set(list, tables.list);
+  integers.set(complex, tables.complex);
+  let at = base + matrices;
+  for (let t = 0; t < triangles; t++) {
+    integers[tables.regions + t] = mesh.regions[t] + 2;
+    integers[tables.places + t] = at;
+    at += 2 * (complex[t] ? 2 : 1) * (starts[t + 1] - starts[t]) ** 2;
+  }
+  return { kernels, tables, regions, weights: base + weights, x: base + x, out: base + out };
+}
+
+/** Function-major tables of one triangle, in one array: function i at point q sits at i·nq + q. */
 interface Work {
+  /** Points a row; an odd number is filled up by one of weight zero. */
+  readonly nq: number;
   readonly map: Float64Array;
   /** ∂x then ∂y of each function: rows of 2nq. */
   readonly gradients: Float64Array;
   readonly values: Float64Array;
-  /** The same, weighted: real and imaginary part. */
-  readonly fluxRe: Float64Array;
-  readonly fluxIm: Float64Array;
-  readonly loadRe: Float64Array;
-  readonly loadIm: Float64Array;
+  /** The same, weighted. */
+  readonly flux: Float64Array;
+  readonly load: Float64Array;
   readonly sum: Float64Array;
+  /** sum = left·rightᵀ of two of the tables, as gramInto. */
+  gram(left: Float64Array, right: Float64Array, rows: number, nd: number): Float64Array;
 }
 
-function makeWork(rule: { weights: Float64Array }, order: number): Work {
-  const nq = rule.weights.length;
-  const nd = functionCount(order);
-  const rows = (width: number): Float64Array => new Float64Array(nd * nq * width);
-  return {
+const workNumbers = (nq: number, nd: number): number => (6 * nq + nd) * nd + 8;
+
+function makeWork(nq: number, nd: number, kernels: DenseKernels | undefined): Work {
+  const all = kernels
+    ? kernels.numbers.subarray(kernels.base, kernels.base + workNumbers(nq, nd))
+    : new Float64Array(workNumbers(nq, nd));
+  let free = 0;
+  const take = (length: number): Float64Array => all.subarray(free, (free += length));
+  const tables = {
+    nq,
     map: new Float64Array(MAP_STRIDE * nq),
-    gradients: rows(2),
-    values: rows(1),
-    fluxRe: rows(2),
-    fluxIm: rows(2),
-    loadRe: rows(1),
-    loadIm: rows(1),
-    sum: new Float64Array(nd * nd),
+    gradients: take(2 * nd * nq),
+    values: take(nd * nq),
+    flux: take(2 * nd * nq),
+    load: take(nd * nq),
+    sum: take(nd * nd),
+  };
+  return {
+    ...tables,
+    gram(left, right, rows, size): Float64Array {
+      const { sum } = tables;
+      if (kernels === undefined) return gramInto(sum, left, right, rows, size);
+      kernels.gram(sum.byteOffset / 8, left.byteOffset / 8, right.byteOffset / 8, rows, size);
+      return sum;
+    },
   };
 }
 
-type Basis = ReturnType<typeof tabulateBasis>;
+/** Values and reference gradients, function by function. */
+interface Basis {
+  /** Points, and points a row: even. */
+  readonly count: number;
+  readonly points: number;
+  readonly values: Float64Array;
+  readonly dx: Float64Array;
+  readonly dy: Float64Array;
+}
+
+function transposeBasis(order: number, at: ArrayLike<number>): Basis {
+  const count = at.length / 2;
+  const points = count + (count & 1);
+  const nd = functionCount(order);
+  const from = tabulateBasis(order, at);
+  const turn = (rows: Float64Array): Float64Array => {
+    const out = new Float64Array(nd * points);
+    for (let q = 0; q < count; q++) for (let i = 0; i < nd; i++) out[i * points + q] = rows[q * nd + i];
+    return out;
+  };
+  return { count, points, values: turn(from.values), dx: turn(from.dx), dy: turn(from.dy) };
+}
 
 /** Fills values and plane gradients of the chosen functions at all points. */
-function tabulateTriangle(functions: Int32Array, basis: Basis, nq: number, work: Work): void {
-  const { map, gradients, values } = work;
-  const total = basis.values.length / nq;
-  for (let q = 0; q < nq; q++) {
+function tabulateTriangle(functions: Int32Array, basis: Basis, work: Work): void {
+  const { map, gradients, values, nq } = work;
+  const { count } = basis;
+  const inverse = new Float64Array(4 * count);
+  for (let q = 0; q < count; q++) {
     const at = MAP_STRIDE * q;
-    const a = map[at + 2];
-    const b = map[at + 3];
-    const c = map[at + 4];
-    const d = map[at + 5];
-    const inverse = 1 / (a * d - b * c);
-    for (let i = 0; i < functions.length; i++) {
-      const n = total * q + functions[i];
-      const dx = basis.dx[n];
-      const dy = basis.dy[n];
-      gradients[2 * i * nq + q] = (d * dx - c * dy) * inverse;
-      gradients[(2 * i + 1) * nq + q] = (a * dy - b * dx) * inverse;
-      values[i * nq + q] = basis.values[n];
+    const scale = 1 / determinant(map, q);
+    for (let c = 0; c < 4; c++) inverse[4 * q + c] = map[at + 2 + c] * scale;
+  }
+  for (let i = 0; i < functions.length; i++) {
+    const from = functions[i] * nq;
+    const x = 2 * i * nq;
+    for (let q = 0; q < count; q++) {
+      const dx = basis.dx[from + q];
+      const dy = basis.dy[from + q];
+      gradients[x + q] = inverse[4 * q + 3] * dx - inverse[4 * q + 2] * dy;
+      gradients[x + nq + q] = inverse[4 * q] * dy - inverse[4 * q + 1] * dx;
     }
+    values.set(basis.values.subarray(from, from + nq), i * nq);
   }
 }
 
@@ -129,19 +224,21 @@ function integrateCurved(
   work: Work,
 ): void {
   const nd = functions.length;
-  const nq = weights.length;
-  const { gradients, values, fluxRe, loadRe, map, sum } = work;
-  tabulateTriangle(functions, basis, nq, work);
-  for (let q = 0; q < nq; q++) {
-    const w = weights[q] * determinant(map, q);
-    for (let i = 0; i < nd; i++) {
-      fluxRe[2 * i * nq + q] = w * gradients[2 * i * nq + q];
-      fluxRe[(2 * i + 1) * nq + q] = w * gradients[(2 * i + 1) * nq + q];
-      loadRe[i * nq + q] = w * values[i * nq + q];
+  const { gradients, values, flux, load, map, nq } = work;
+  const { count } = basis;
+  tabulateTriangle(functions, basis, work);
+  const w = new Float64Array(count);
+  for (let q = 0; q < count; q++) w[q] = weights[q] * determinant(map, q);
+  for (let i = 0; i < nd; i++) {
+    const x = 2 * i * nq;
+    for (let q = 0; q < count; q++) {
+      flux[x + q] = w[q] * gradients[x + q];
+      flux[x + nq + q] = w[q] * gradients[x + nq + q];
+      load[i * nq + q] = w[q] * values[i * nq + q];
     }
   }
-  scatterGram(k, 1, 0, gramInto(sum, gradients, fluxRe, 2 * nq, nd), nd);
-  scatterGram(m, 1, 0, gramInto(sum, values, loadRe, nq, nd), nd);
+  scatterGram(k, 1, 0, work.gram(gradients, flux, 2 * nq, nd), nd);
+  scatterGram(m, 1, 0, work.gram(values, load, nq, nd), nd);
 }
 
 function integrateLayer(
@@ -154,31 +251,39 @@ function integrateLayer(
   coefficients: PointCoefficients,
 ): void {
   const nd = functions.length;
-  const nq = weights.length;
-  const { gradients, values, fluxRe, fluxIm, loadRe, loadIm, map, sum } = work;
+  const { gradients, values, flux, load, map, nq } = work;
+  const { count } = basis;
+  tabulateTriangle(functions, basis, work);
+  // Weighted coefficients, real parts then imaginary ones: four rows (t11, t12, t22, m) of points each.
   const c = new Float64Array(8);
-  tabulateTriangle(functions, basis, nq, work);
-  for (let q = 0; q < nq; q++) {
+  const rows = new Float64Array(8 * count);
+  for (let q = 0; q < count; q++) {
     coefficients(map[MAP_STRIDE * q], map[MAP_STRIDE * q + 1], c);
     const w = weights[q] * determinant(map, q);
-    for (let i = 0; i < nd; i++) {
-      const x = 2 * i * nq + q;
-      const y = x + nq;
-      const gx = w * gradients[x];
-      const gy = w * gradients[y];
-      const f = w * values[i * nq + q];
-      fluxRe[x] = c[0] * gx + c[2] * gy;
-      fluxIm[x] = c[1] * gx + c[3] * gy;
-      fluxRe[y] = c[2] * gx + c[4] * gy;
-      fluxIm[y] = c[3] * gx + c[5] * gy;
-      loadRe[i * nq + q] = c[6] * f;
-      loadIm[i * nq + q] = c[7] * f;
+    for (let r = 0; r < 4; r++) {
+      rows[r * count + q] = w * c[2 * r];
+      rows[(4 + r) * count + q] = w * c[2 * r + 1];
     }
   }
-  scatterGram(k, 2, 0, gramInto(sum, gradients, fluxRe, 2 * nq, nd), nd);
-  scatterGram(k, 2, 1, gramInto(sum, gradients, fluxIm, 2 * nq, nd), nd);
-  scatterGram(m, 2, 0, gramInto(sum, values, loadRe, nq, nd), nd);
-  scatterGram(m, 2, 1, gramInto(sum, values, loadIm, nq, nd), nd);
+  for (const part of [0, 1] as const) {
+    const t11 = 4 * part * count;
+    const t12 = t11 + count;
+    const t22 = t12 + count;
+    const density = t22 + count;
+    for (let i = 0; i < nd; i++) {
+      const x = 2 * i * nq;
+      const y = x + nq;
+      for (let q = 0; q < count; q++) {
+        const gx = gradients[x + q];
+        const gy = gradients[y + q];
+        flux[x + q] = rows[t11 + q] * gx + rows[t12 + q] * gy;
+        flux[y + q] = rows[t12 + q] * gx + rows[t22 + q] * gy;
+        load[i * nq + q] = rows[density + q] * values[i * nq + q];
+      }
+    }
+    scatterGram(k, 2, part, work.gram(gradients, flux, 2 * nq, nd), nd);
+    scatterGram(m, 2, part, work.gram(values, load, nq, nd), nd);
+  }
 }
 
 /**

@@ -14,7 +14,8 @@ import {
 } from '../numerics/complex.ts';
 import { BACKGROUND, LAYER } from '../mesh/mesh.ts';
 import type { Factorization } from '../sparse/pattern.ts';
-import { type OpenOperator, type RegionWeights, setSurface, setWeight, zeroWeights } from './open-operator.ts';
+import type { OpenOperator } from './open-operator.ts';
+import { type RegionWeights, setSurface, setWeight, zeroWeights } from './region-weights.ts';
 
 /** Which matrix of the family: A itself, ∂A/∂k or ∂A/∂(level). */
 export type Part = 'value' | 'byK' | 'byLevel';

@@ -13,6 +13,7 @@ const common = ['--optimizeLevel', '3', '--shrinkLevel', '0', '--noAssert', '--r
 const memory = ['--importMemory', '--memoryBase', '4096', '--enable', 'simd', '--enable', 'bulk-memory'];
 const builds = [
   ['front.ts', 'front.wasm', ['--initialMemory', '1', '--maximumMemory', '65536']],
+  ['dense.ts', 'dense.wasm', ['--initialMemory', '1', '--maximumMemory', '65536']],
   // prettier-ignore
   ['front-shared.ts', 'front-shared.wasm', ['--enable', 'threads', '--sharedMemory', '--initialMemory', '1', '--maximumMemory', '65536']],
 ];
