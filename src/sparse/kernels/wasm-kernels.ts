@@ -109,6 +109,9 @@ function compile(name: string): WebAssembly.Module | undefined {
 
 function bindKernels(instance: WebAssembly.Instance, memory: WebAssembly.Memory): FrontKernels {
   const wasm = instance.exports as unknown as FrontExports;
+  if (typeof wasm.putQuads !== 'function') {
+    throw new Error('front.wasm is older than its source; expected one made by `npm run build:kernels`');
+  }
   let numbers = new Float64Array(memory.buffer);
   let integers = new Int32Array(memory.buffer);
   return {
