@@ -10,6 +10,7 @@ import {
   type ModeAnswer,
   type PowerCheck,
   type RunRecord,
+  type ScatterAnswerPoint,
   significant,
   toError,
   withError,
@@ -57,6 +58,8 @@ export function printStory({ run, folder, reused }: Asked): void {
   const crossings = record.answer['crossings'] as readonly AxisAnswer[] | undefined;
   if (modes && modes.length > 0) printModes(record, modes);
   if (crossings && crossings.length > 0) printCrossings(record, crossings);
+  const points = record.answer['points'] as readonly ScatterAnswerPoint[] | undefined;
+  if (points) printSpectrum(record, points);
   printDoubts(record);
   say();
   sayFacts([['run ', reused ? `${folder}  (read back: same file, same options; --again computes anew)` : folder]]);
@@ -66,7 +69,8 @@ export function printStory({ run, folder, reused }: Asked): void {
 export function answerCode({ answer }: RunRecord): number {
   const modes = answer['modes'] as readonly unknown[] | undefined;
   const crossings = answer['crossings'] as readonly CrossingAnswer[] | undefined;
-  const found = (modes ?? crossings ?? []).length > 0;
+  const points = answer['points'] as readonly unknown[] | undefined;
+  const found = (modes ?? crossings ?? points ?? []).length > 0;
   const reached = answer['reached'] !== false && (crossings ?? []).every((c) => c.reached !== false);
   return found && reached && isWhole(answer) ? DONE : NOT_FOUND;
 }
@@ -124,6 +128,38 @@ function printModes(record: RunRecord, modes: readonly ModeAnswer[]): void {
       ]),
   );
   printRest(modes.length);
+}
+
+/** Entries in decibels for up to this many channels: beyond, the reflections only. */
+const MOST_ENTRIES = 3;
+
+function printSpectrum(record: RunRecord, points: readonly ScatterAnswerPoint[]): void {
+  const names = record.answer['channels'] as readonly string[];
+  const band = bandColumn(record);
+  const pairs = names.flatMap((out, i) =>
+    names.flatMap((into, j) => (j > i || (names.length > MOST_ENTRIES && i !== j) ? [] : [{ i, j, out, into }])),
+  );
+  const shownPairs = pairs.slice(0, 2 * MOST_ENTRIES);
+  say();
+  sayTable(
+    [
+      { head: band.head, align: 'right' },
+      ...shownPairs.map(({ out, into }) => ({ head: `${into} → ${out} [dB]`, align: 'right' as const })),
+      { head: '± |S|', align: 'right' },
+      { head: 'balance', align: 'right' },
+    ],
+    points
+      .slice(0, MOST_ROWS)
+      .map((p) => [
+        band.write(p.k[0], 1e-6 * p.k[0]).replace(/ ±.*$/, ''),
+        ...shownPairs.map(({ i, j }) =>
+          p.propagates[i] && p.propagates[j] ? (20 * Math.log10(Math.hypot(...p.S[i][j]))).toFixed(3) : '',
+        ),
+        errorText(p.error),
+        p.balance.toExponential(0),
+      ]),
+  );
+  printRest(points.length);
 }
 
 function printCrossings(record: RunRecord, crossings: readonly AxisAnswer[]): void {

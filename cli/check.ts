@@ -7,6 +7,11 @@ import {
   boundingCircle,
   cautionsFor,
   type Device,
+  type Guide,
+  guideEnds,
+  standardGuide,
+  transverseWavenumber,
+  fromWavenumber,
   deviceFigure,
   type DeviceSize,
   deviceSize,
@@ -81,6 +86,10 @@ function contents({ path, device }: DeviceFile): Record<string, unknown> {
       permittivity: [permittivity.re, permittivity.im],
       permeability: [permeability.re, permeability.im],
     })),
+    guides: (device.guides ?? []).map((guide) => {
+      const [, size, , cutoff, next, recommended, channels] = guideCells(device, guide);
+      return { name: guide.name, size, width: guide.width, cutoff, next, recommended, channels: Number(channels) };
+    }),
     size: {
       center: size.circle.center,
       radius: size.circle.radius,
@@ -133,6 +142,21 @@ function printContents({ path, device }: DeviceFile, files: readonly string[]): 
         : `weight ${shortNumber(g.weight)}${g.active < g.count ? `, ${String(g.active)} of them` : ''}`,
     ]),
   );
+  if (device.guides) {
+    say();
+    sayTable(
+      [
+        { head: 'guides' },
+        { head: 'size' },
+        { head: withUnit('width', lengthUnit), align: 'right' },
+        { head: `cutoff [${band.unit}]`.replace(' []', ''), align: 'right' },
+        { head: 'next mode', align: 'right' },
+        { head: 'recommended' },
+        { head: 'channels', align: 'right' },
+      ],
+      device.guides.map((guide) => guideCells(device, guide)),
+    );
+  }
   if (device.knobs.length > 0) {
     say();
     sayTable(
@@ -158,6 +182,29 @@ function sentence(path: string, device: Device, groups: readonly Group[], size: 
     `${size.wavelengthsAcross.toPrecision(3)} wavelengths across` +
     `${active.length > 0 ? `, active: ${active.join(', ')}` : ', none active'}.`
   );
+}
+
+/** Cutoffs in the band's own quantity; the recommended band of a standard size in GHz. */
+function guideCells(device: Device, guide: Guide): string[] {
+  const { permittivity, permeability } = device.background;
+  const index = Math.sqrt(permittivity * permeability);
+  const ends = guideEnds(device.polarization, guide.wall);
+  const { quantity, unit, kMax } = device.band;
+  const cutoff = (j: number): number => transverseWavenumber(ends, guide.width, j) / index;
+  const inBand = (k: number): string =>
+    k === 0 ? 'none' : shortNumber(fromWavenumber(quantity, k, unit, device.metres));
+  let propagating = 0;
+  while (cutoff(propagating) < kMax) propagating++;
+  const standard = guide.size === '' ? undefined : standardGuide(guide.size);
+  return [
+    guide.name,
+    guide.size,
+    shortNumber(guide.width),
+    inBand(cutoff(0)),
+    inBand(cutoff(1)),
+    standard ? `${standard.band.map(String).join(' to ')} GHz` : '',
+    String(guide.modes ?? propagating),
+  ];
 }
 
 const shortNumber = (value: number): string => String(Number(value.toPrecision(7)));

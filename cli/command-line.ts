@@ -13,6 +13,7 @@ import { WellCommand } from './options.ts';
 import { errorInk } from './paper.ts';
 import { clearProgress } from './progress.ts';
 import { addSchema } from './schema.ts';
+import { addSpectrum } from './spectrum.ts';
 import { addThreshold } from './threshold.ts';
 import { programVersion } from './version.ts';
 import { addView } from './view.ts';
@@ -45,6 +46,7 @@ function commands(): WellCommand {
   addModes(program);
   addThreshold(program);
   addAbsorb(program);
+  addSpectrum(program);
   addView(program);
   addExport(program);
   addDemo(program);

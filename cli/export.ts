@@ -20,6 +20,7 @@ import {
   READ_FIRST_NAME,
   readFirstText,
   readRun,
+  spectrumTableCsv,
 } from '../src/index.ts';
 import { shown } from './ask.ts';
 import { InputError } from './faults.ts';
@@ -35,6 +36,7 @@ interface ExportOptions {
   readonly box?: readonly [number, number, number, number];
   readonly line?: readonly [number, number, number, number];
   readonly points?: number;
+  readonly spectrum?: true;
   readonly modes?: true;
   readonly crossings?: true;
   readonly drive?: true;
@@ -50,6 +52,7 @@ export function addExport(program: Command): void {
     .description('writes tables and fields of a run as CSV; all tables if nothing is chosen')
     .argument('<RUN>', 'run folder')
     .option('--modes', 'the modes')
+    .option('--spectrum', 'the S-parameters')
     .option('--crossings', 'the thresholds or absorption points')
     .option('--drive', 'the drives: amplitude and phase of every channel')
     .option('--path', 'the paths of poles or zeros')
@@ -92,9 +95,18 @@ export function exportFiles(run: LoadedRun, out: string, options: ExportOptions)
   const add = (name: string, text: string): void => void (files[join(out, `${name}.csv`)] = text);
   const wantsField =
     options.nodes || options.grid !== undefined || options.line !== undefined || options.field !== undefined;
-  const all = !(wantsField || options.modes || options.crossings || options.drive || options.path || options.picture);
+  const all = !(
+    wantsField ||
+    options.modes ||
+    options.spectrum ||
+    options.crossings ||
+    options.drive ||
+    options.path ||
+    options.picture
+  );
   const holds = {
     modes: Array.isArray(record.answer['modes']),
+    spectrum: Array.isArray(record.answer['points']),
     crossings: Array.isArray(record.answer['crossings']),
     drive: record.fields.some((f) => f.drive !== null),
     path: record.marks.some((m) => m.path !== null),
@@ -115,6 +127,7 @@ export function exportFiles(run: LoadedRun, out: string, options: ExportOptions)
     return holds[table] && (all || options[table] === true);
   };
   if (wants('modes')) add('modes', modeTableCsv(run));
+  if (wants('spectrum')) add('spectrum', spectrumTableCsv(run));
   if (wants('crossings')) add('crossings', crossingTableCsv(run));
   if (wants('drive')) {
     const chosen =

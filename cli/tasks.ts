@@ -14,7 +14,7 @@ export type FarMessage =
   | { readonly kind: 'done'; readonly output: unknown }
   | { readonly kind: 'fault'; readonly report: FaultReport };
 
-export type RunCommand = 'modes' | 'threshold' | 'absorb';
+export type RunCommand = 'modes' | 'threshold' | 'absorb' | 'spectrum';
 
 export interface Along {
   readonly knob: string;
@@ -29,6 +29,8 @@ export interface Settings {
   /** `modes`. */
   readonly assignment?: Assignment;
   readonly qMin?: number;
+  /** `spectrum`: points over the band. */
+  readonly points?: number;
   /** `threshold` and `absorb`; null: the default of the device. */
   readonly levelMax?: number | null;
   /** A knob as the parameter instead of pump or loss. */

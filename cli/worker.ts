@@ -10,6 +10,8 @@ import {
   findAbsorption,
   findKnobCrossings,
   findModes,
+  findScattering,
+  spectrumRecord,
   findThresholds,
   knobRecord,
   measureMesh,
@@ -43,6 +45,15 @@ function computeRun(input: RunInput): RunOutput {
   const { digits, assignment, qMin, levelMax, along } = input.settings;
   if (command === 'modes')
     return modesRecord(device, findModes(device, { digits, qMin: qMin!, assignment: assignment!, progress }), context);
+  if (command === 'spectrum') {
+    const { kMin, kMax } = device.band;
+    const n = input.settings.points!;
+    const ks = Array.from({ length: n }, (_, i) => ({
+      re: n === 1 ? kMin : kMin + ((kMax - kMin) * i) / (n - 1),
+      im: 0,
+    }));
+    return spectrumRecord(device, findScattering(device, ks, { digits, progress }), context);
+  }
   if (along) {
     const { knob, range } = along;
     const at = (value: number): Device =>

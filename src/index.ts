@@ -6,7 +6,16 @@ export { DeviceError, formatFinding, listNames, nearestName, showValue, type Fin
 export { deviceJsonSchema, FORMAT_VERSION } from './device/schema.ts';
 export { deviceSize, type DeviceSize } from './device/size.ts';
 export { showBytes } from './device/sanity.ts';
-export type { Band, BandQuantity, Body, Device, Knob, LengthUnit } from './device/model.ts';
+export {
+  isWalled,
+  type Band,
+  type BandQuantity,
+  type Body,
+  type Device,
+  type Guide,
+  type Knob,
+  type LengthUnit,
+} from './device/model.ts';
 export { GeometryError } from './geometry/geometry-error.ts';
 export { areaOf } from './geometry/area.ts';
 export { boundingCircle, type Circle } from './geometry/bounding-circle.ts';
@@ -33,6 +42,9 @@ export {
 } from './questions/absorb.ts';
 export { defaultLevelMax, type AxisMode, type CrossingsRequest } from './questions/crossings.ts';
 export { prepare, type Prepared, type Scope } from './questions/prepare.ts';
+export { findScattering, type ScatterAnswer, type ScatterPoint, type ScatterRequest } from './questions/scatter.ts';
+export { spectrumRecord } from './questions/scatter-record.ts';
+export { prepareOpenings, type DeviceChannel, type PreparedOpenings } from './questions/prepare-openings.ts';
 export { findKnobCrossings, type KnobCrossing, type KnobCrossingsRequest } from './questions/knob-crossing.ts';
 export {
   absorbRecord,
@@ -66,11 +78,15 @@ export type {
   RunField,
   RunMark,
   RunRecord,
+  ScatterAnswerPoint,
 } from './results/format.ts';
 export { fieldSampler } from './results/evaluate.ts';
 export { fieldOf, type FieldSample, type FieldSampler, type RunView } from './results/run-view.ts';
 export { cautionsFor, type CautionKind } from './results/cautions.ts';
 export { READ_FIRST_NAME, readFirstText } from './results/read-first.ts';
+export { spectrumTableCsv } from './results/export-spectrum-csv.ts';
+export { standardGuide, STANDARD_GUIDES, type StandardGuide } from './device/standard-guides.ts';
+export { guideEnds, transverseWavenumber } from './boundary/guide-modes.ts';
 export { crossingTableCsv, driveTableCsv, modeTableCsv, polePathCsv } from './results/export-csv.ts';
 export { fieldGridCsv, fieldLineCsv, fieldNodesCsv, MOST_ROWS, type Box } from './results/export-field-csv.ts';
 export { errorText, significant, toError, withError } from './results/number-text.ts';

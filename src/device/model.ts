@@ -53,7 +53,7 @@ export interface Guide {
   /** Reference plane of its amplitudes, measured along the guide from `from`. */
   readonly reference: number;
   readonly wall: 'electric' | 'magnetic';
-  /** Channels, or null: as many as propagate in the whole band. */
+  /** Channels, or null: as many as propagate at the top of the band. */
   readonly modes: number | null;
   /** Name of the standard size, or ''. */
   readonly size: string;

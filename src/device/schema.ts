@@ -173,7 +173,7 @@ const guide = z
       'Stretch of guide that is meshed before it is closed exactly, above 0; its width if absent.',
     ).optional(),
     modes: number(
-      'Number of its modes that are channels; those that propagate in the whole band if absent.',
+      'Number of its modes that are channels; all that propagate at the top of the band if absent.',
     ).optional(),
     reference: number('Reference plane, this far along the guide from its beginning; 0 if absent.').optional(),
     wall: name('"electric wall" (if absent) or "magnetic wall": the channel is exact for perfect walls.').optional(),

@@ -53,9 +53,10 @@ export function prepare(
   resolution: Resolution,
   refine = 1,
   highestOrder?: (x: number) => number,
+  ends: 'layers' | 'openings' = 'layers',
 ): Prepared {
   const index = Math.sqrt(device.background.permittivity * device.background.permeability);
-  const { center, radius, layer, walls } = planSpace(device, scope, resolution, 'layers', highestOrder);
+  const { center, radius, layer, walls } = planSpace(device, scope, resolution, ends, highestOrder);
   const size = (n: number): number => (refine * resolution.sizeInWavelengths * 2 * Math.PI) / (scope.kMax * n);
   const { mesh, notes } = meshDeviceWithNotes(device.bodies, {
     center,

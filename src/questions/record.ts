@@ -348,7 +348,7 @@ interface FieldInput {
   readonly pattern: Float64Array | null;
 }
 
-interface Book {
+export interface Book {
   readonly marks: RunMark[];
   readonly arrays: Record<string, RunArray>;
   addField(input: FieldInput): void;
@@ -356,7 +356,7 @@ interface Book {
 }
 
 /** Collects the fields, marks and arrays of a run. */
-function openBook(device: Device, prepared: Prepared, order: number, context: RunContext): Book {
+export function openBook(device: Device, prepared: Prepared, order: number, context: RunContext): Book {
   const { mesh } = prepared;
   const arrays: Record<string, RunArray> = {};
   const marks: RunMark[] = [];

@@ -79,6 +79,24 @@ export interface ForwardAnswer extends PowerCheck {
   readonly scattered?: PowerCheck;
 }
 
+/** S-parameters at one k: `S[i][j]` is the amplitude out of channel i for unit amplitude into channel j, exp(−iωt). */
+export interface ScatterAnswerPoint {
+  readonly k: Pair;
+  readonly wavelength: number;
+  /** THz, or null. */
+  readonly frequency: number | null;
+  readonly S: readonly (readonly Pair[])[];
+  /** Of every entry. */
+  readonly error: number;
+  /** Channels that carry power at this k. */
+  readonly propagates: readonly boolean[];
+  /** Share of unit power into each channel that the device absorbs. */
+  readonly absorbed: readonly number[];
+  readonly balance: number;
+  readonly unitarity: number | null;
+  readonly reciprocity: number;
+}
+
 /** A mode on the real axis: a lasing threshold (pump) or a coherent absorption point (loss). */
 export interface CrossingAnswer {
   readonly k: number;

@@ -1,0 +1,34 @@
+// wavewell spectrum FILE: what does each channel send into every other, over the band?
+
+import type { Command } from 'commander';
+import { isWalled } from '../src/index.ts';
+import { ask } from './ask.ts';
+import { printAnswer } from './answer.ts';
+import { openDevice } from './device-file.ts';
+import { InputError } from './faults.ts';
+import { readWhole, type SolveOptions, withSolveOptions } from './options.ts';
+import { commonSettings } from './settings.ts';
+
+interface SpectrumOptions extends SolveOptions {
+  readonly points?: number;
+}
+
+const DEFAULT_POINTS = 21;
+const MOST_POINTS = 100_000;
+
+export function addSpectrum(program: Command): void {
+  const command = program
+    .command('spectrum')
+    .description('S-matrix between the modes of the guides, or the multipoles of open space, over the band')
+    .argument('<FILE>', 'device file')
+    .option('--points <N>', `evenly spaced in k (${String(DEFAULT_POINTS)} if absent)`, (text: string) =>
+      readWhole(text, '--points', 1, MOST_POINTS),
+    );
+  withSolveOptions(command).action(async (path: string, options: SpectrumOptions) => {
+    const file = openDevice(path, options);
+    if (isWalled(file.device) && !file.device.guides)
+      throw new InputError(path, 'a closed device', 'guides, or open space around it', 'add a guide');
+    const settings = { ...commonSettings(options), points: options.points ?? DEFAULT_POINTS };
+    process.exitCode = printAnswer(await ask('spectrum', file, settings, options), options.json === true);
+  });
+}
