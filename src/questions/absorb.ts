@@ -97,6 +97,7 @@ export function proveKnobCrossing(crossing: KnobCrossing): AbsorbingMode {
     group: { k: mode.k, spread: 0, slope: { re: 0, im: 0 }, multiplicity: mode.multiplicity, vectors },
     order,
     multipoles,
+    multipolesError: 0,
     path: crossing.path,
     reached: crossing.reached,
   };
@@ -122,14 +123,17 @@ function prove(prepared: Prepared, own: Prepared, mode: AxisMode): AbsorbingMode
   const { drives, vectors } = orthonormalDrives(mode);
   const same = forwardCheck(prepared, mode.order, mode, drives);
   const other = forwardCheck(own, mode.order + 1, mode, drives);
-  // both meshes are off: twice the distance from the zero
+  // both meshes are off: twice the distance from the zero, and twice what the drive lacks
   const off = 2 * (mode.kError + Math.abs(mode.group.slope.im) * mode.levelError);
   return {
     ...mode,
     group: { ...mode.group, vectors },
     multipoles: drives.map((a) => Float64Array.from(a, (v) => -v)),
     drives: drives.map((amplitudes, i) => ({ amplitudes, sameMesh: same[i], ownMesh: other[i] })),
-    outgoingExpected: Math.min(1, (off * outgoingPerDetuning(prepared, mode, vectors)) ** 2),
+    outgoingExpected: Math.min(
+      1,
+      (off * outgoingPerDetuning(prepared, mode, vectors)) ** 2 + (2 * mode.multipolesError) ** 2,
+    ),
   };
 }
 

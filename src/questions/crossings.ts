@@ -9,9 +9,10 @@ import { type Crossing, findCrossing, ROUNDING } from '../eigen/crossing.ts';
 import { followCluster, type ModePath } from '../eigen/follow.ts';
 import { type EigenGroup, gather, rayleighGroups } from '../eigen/rayleigh.ts';
 import { modesInWindow, ownGroups } from '../eigen/window.ts';
-import { type Complex, modulus } from '../numerics/complex.ts';
+import { type Complex, type ComplexArray, modulus } from '../numerics/complex.ts';
 import type { DeviceFamily, LevelSense } from '../operator/device-family.ts';
 import { multipoleJumps, multipoleOrder, type Multipoles } from '../scattering/contrast.ts';
+import { angleOfSpaces } from '../scattering/drive-space.ts';
 import { modeLabel } from './label.ts';
 import { expectedModes } from './mode-count.ts';
 import { type Progress, wedgeFor } from './modes.ts';
@@ -38,6 +39,8 @@ export interface AxisMode {
   readonly order: number;
   /** b_m − a_m of each member, m = −M … M. */
   readonly multipoles: readonly Multipoles[];
+  /** Sine of the angle between the space of these amplitudes and that of the next order. */
+  readonly multipolesError: number;
   readonly path: { readonly levels: readonly number[]; readonly ks: readonly Complex[] };
   /** The error is below the digits asked for. */
   readonly reached: boolean;
@@ -272,14 +275,12 @@ function climbCrossing(
       kStep <= goal * here.k && Math.max(levelStep, splitting) <= Math.max(goal * Math.abs(here.level), floor);
     if (reached || !next || order + 1 >= HIGHEST_ORDER) {
       const { vectors, multiplicity, spread, slope } = here.group;
-      const n = vectors.length / (2 * multiplicity);
-      const members = Array.from({ length: multiplicity }, (_, i) => vectors.subarray(2 * n * i, 2 * n * (i + 1)));
       const M = multipoleOrder(device, prepared.bodyRadius, here.k);
-      const multipoles = multipoleJumps(
-        { device, space: spaceOf(prepared, order), k: here.k, level: here.level, sense, order: M },
-        members,
-        null,
-      );
+      const jumpsOf = (of: Crossing, p: number): Multipoles[] => {
+        const problem = { device, space: spaceOf(prepared, p), k: of.k, level: of.level, sense, order: M };
+        return multipoleJumps(problem, membersOf(of.group), null);
+      };
+      const multipoles = jumpsOf(here, order);
       const { permittivity, permeability } = device.background;
       const moved = layerShift(family, layer, {
         k: here.k,
@@ -310,6 +311,7 @@ function climbCrossing(
           group: here.group,
           order,
           multipoles,
+          multipolesError: next ? angleOfSpaces(multipoles, jumpsOf(next, order + 1)) : 1,
           path: { levels: path.levels, ks: path.ks },
           reached,
         },
@@ -365,4 +367,9 @@ function imaginarySpread(family: DeviceFamily, { k, level, group }: Crossing): n
   if (group.multiplicity === 1) return 0;
   const members = rayleighGroups(family, { re: k, im: 0 }, level, group.vectors, group.multiplicity, 0, false);
   return Math.max(0, ...members.map((m) => Math.abs(m.k.im)));
+}
+
+function membersOf({ vectors, multiplicity }: EigenGroup): ComplexArray[] {
+  const length = vectors.length / multiplicity;
+  return Array.from({ length: multiplicity }, (_, i) => vectors.subarray(length * i, length * (i + 1)));
 }

@@ -139,6 +139,7 @@ export function absorbRecord(device: Device, answer: AbsorbAnswer, context: RunC
       lossError: c.levelError,
       ...provenPart(c),
       outgoingExpected: c.outgoingExpected,
+      driveError: c.multipolesError,
     })),
     ...searched(answer),
     cautions,

@@ -119,6 +119,8 @@ export interface CrossingAnswer {
   readonly drive?: readonly DriveTerm[];
   readonly drives?: readonly (readonly DriveTerm[])[];
   readonly forward?: ForwardAnswer & { readonly ownMesh: ForwardAnswer };
+  /** `absorb`: norm of what the next order adds to a drive of unit power. */
+  readonly driveError?: number;
   /** `absorb`: outgoing share to be expected on the own mesh from the errors of k and loss. */
   readonly outgoingExpected?: number;
   /** The errors are below the digits asked for. */
