@@ -3,7 +3,7 @@
 import { complex, type ComplexArray, modulus } from '../numerics/complex.ts';
 import { inverseStep, residualStep } from './improve.ts';
 import type { EigenProblem } from './problem.ts';
-import { type EigenGroup, rayleighGroups } from './rayleigh.ts';
+import { type EigenGroup, projectPieces, type Projection, rayleighGroups } from './rayleigh.ts';
 
 export interface Crossing {
   readonly k: number;
@@ -49,9 +49,10 @@ export function findCrossing(problem: EigenProblem, request: CrossingRequest): C
     for (let i = 0; i < 2; i++) space = improve(problem, inverse, complex(k), level, space, columns);
     inverse.release();
     const before = { k, level };
+    const projection = projectPieces(problem, space, columns);
     let group: EigenGroup | null = null;
     for (let inner = 0; inner < 6; inner++) {
-      group = groupAt(problem, request, k, level, space);
+      group = groupAt(problem, request, k, level, space, projection);
       if (!group || group.slope.im === 0) return last;
       const move = -group.k.im / group.slope.im;
       level += move;
@@ -78,10 +79,12 @@ function groupAt(
   k: number,
   level: number,
   space: ComplexArray,
+  projection: Projection | undefined,
 ): EigenGroup | null {
   let first: EigenGroup | null = null;
   for (const factor of WIDTHS) {
-    const group = nearest(rayleighGroups(problem, complex(k), level, space, columns, factor * groupWidth), k);
+    const width = factor * groupWidth;
+    const group = nearest(rayleighGroups(problem, complex(k), level, space, columns, width, true, projection), k);
     if (!group) return first;
     if (multiplicity === undefined || group.multiplicity === multiplicity) return group;
     first ??= group;

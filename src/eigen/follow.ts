@@ -5,7 +5,7 @@ import { adjointProduct } from './columns.ts';
 import { type Crossing, findCrossing } from './crossing.ts';
 import { inverseStep, residualStep } from './improve.ts';
 import type { EigenProblem } from './problem.ts';
-import { gather, type EigenGroup, rayleighGroups } from './rayleigh.ts';
+import { gather, type EigenGroup, projectPieces, type Projection, rayleighGroups } from './rayleigh.ts';
 
 /** The way of one group of modes, from level 0 to the axis or to the end of the range. */
 export interface ModePath {
@@ -157,9 +157,11 @@ function correct(
   // plain inverse iteration would turn all strands into the one that the middle happens to meet
   const improve = bundle.length > 1 ? residualStep : inverseStep;
   let groups: EigenGroup[] = [];
+  let projection: Projection | undefined;
   for (let pass = 0; pass < 6; pass++) {
     U = improve(problem, inverse, middle, level, U, columns);
-    const next = rayleighGroups(problem, middle, level, U, columns, width, false);
+    projection = projectPieces(problem, U, columns);
+    const next = rayleighGroups(problem, middle, level, U, columns, width, false, projection);
     if (next.length === 0) break;
     const change = drift(groups, next);
     groups = next;
@@ -170,7 +172,7 @@ function correct(
   // what has come closer than the width is looked at with a finer one before it is joined
   let joined: Strand[] | null = null;
   for (const finer of [1, 1 / 4]) {
-    groups = rayleighGroups(problem, middle, level, U, columns, finer * width);
+    groups = rayleighGroups(problem, middle, level, U, columns, finer * width, true, projection);
     const moved = matchStrands(bundle, predicted, groups, level, width);
     if (moved && moved.joins === 0) return moved.strands;
     joined ??= moved && moved.strands;

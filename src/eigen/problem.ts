@@ -18,6 +18,18 @@ export interface TermFactor {
 }
 
 /**
+ * A family as a sum of fixed matrices, A(k, level) = Σ_i c_i(k, level) P_i: projected on a small space once, it is known
+ * there at every k and level.
+ */
+export interface FixedPieces {
+  readonly count: number;
+  /** c_i and its derivatives. */
+  factor(i: number, k: Complex, level: number): TermFactor & { readonly byLevel: Complex };
+  /** out = P_i x. */
+  multiplyInto(out: ComplexArray, i: number, x: ComplexArray, columns: number): ComplexArray;
+}
+
+/**
  * A family of complex symmetric matrices of one size, A(k, level) = Σ_j f_j(k) A_j(level): analytic in k, smooth in a
  * real level (pump, loss, knob), few terms, so that its projection on a small space is known at every k from one product
  * a term. Vectors are interleaved, columns column-major.
@@ -39,4 +51,6 @@ export interface EigenProblem {
     columns: number,
   ): ComplexArray;
   factorize(k: Complex, level: number): Inverse;
+  /** Where the family can be written so. */
+  readonly pieces?: FixedPieces;
 }

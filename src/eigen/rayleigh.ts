@@ -13,7 +13,7 @@ import {
 import { eigenGeneral } from '../numerics/eigenvalues.ts';
 import { luFactor, luSolveInto } from '../numerics/lu.ts';
 import { combine, normaliseColumns, orthonormalBasis, transposeProduct } from './columns.ts';
-import type { EigenProblem } from './problem.ts';
+import type { EigenProblem, TermFactor } from './problem.ts';
 
 /** Members of a cluster that agree within the tolerance: one row of an answer. */
 export interface EigenGroup {
@@ -36,6 +36,7 @@ export interface EigenGroup {
  * @param near   where the cluster lies
  * @param columns of U, which is size × columns
  * @param tolerance absolute distance within which members form one group
+ * @param projection of the problem on U, where the caller has it already (see projectPieces)
  */
 export function rayleighGroups(
   problem: EigenProblem,
@@ -45,10 +46,10 @@ export function rayleighGroups(
   columns: number,
   tolerance: number,
   withSlope = true,
+  projection: Projection = projectPieces(problem, U, columns) ?? projectTerms(problem, level, U, columns),
 ): EigenGroup[] {
   const n = problem.size;
-  const projected = projectTerms(problem, level, U, columns);
-  const first = smallPencil(problem, projected, near, columns);
+  const first = smallPencil(projection, near, level);
   if (!first) return [];
   return gather(first.offsets, tolerance).flatMap((members) => {
     const count = members.length;
@@ -56,13 +57,11 @@ export function rayleighGroups(
     members.forEach((i, j) => y.set(first.vectors.subarray(2 * columns * i, 2 * columns * (i + 1)), 2 * columns * j));
     // eigenvectors of a degenerate group are those of rounding, as parallel as it likes: its span is what counts
     y = orthonormalBasis(y, count, columns);
-    const own = projected.map((p) =>
-      transposeProduct(y, count, combine(p, columns, y, count, columns), count, columns),
-    );
+    const own = within(projection, y, count);
     let k = add(near, mean(members.map((i) => first.offsets[i])));
     let spread = 0;
     for (let pass = 0; pass < 12; pass++) {
-      const again = smallPencil(problem, own, k, count);
+      const again = smallPencil(own, k, level);
       if (!again) return [];
       const step = mean(again.offsets);
       spread = Math.max(...again.offsets.map((o) => modulus(subtract(o, step))));
@@ -71,28 +70,65 @@ export function rayleighGroups(
       if (modulus(step) <= 1e-8 * modulus(k)) break;
     }
     const vectors = normaliseColumns(combine(U, columns, y, count, n), count, n);
-    const slope = withSlope ? groupSlope(problem, k, level, vectors, count) : complex(0);
+    const slope = withSlope ? groupSlope(problem, own, k, level, vectors) : complex(0);
     return [{ k, spread, slope, multiplicity: count, vectors }];
   });
 }
 
-/** UᵀA_jU of every term. */
-function projectTerms(problem: EigenProblem, level: number, U: ComplexArray, columns: number): ComplexArray[] {
+/** A family on a small space: A = Σ c_i(k, level) P_i with the P_i projected. */
+export interface Projection {
+  readonly columns: number;
+  readonly matrices: readonly ComplexArray[];
+  /** `byLevel` is absent where the matrices belong to one level. */
+  readonly factor: (i: number, k: Complex, level: number) => TermFactor & { readonly byLevel?: Complex };
+}
+
+/** UᵀP_iU of a family of fixed pieces: serves every k and level. Undefined where the family is no such sum. */
+export function projectPieces(problem: EigenProblem, U: ComplexArray, columns: number): Projection | undefined {
+  const { pieces } = problem;
+  if (pieces === undefined) return undefined;
   const work = new Float64Array(2 * problem.size * columns);
-  return Array.from({ length: problem.terms }, (_, j) => {
+  const matrices = Array.from({ length: pieces.count }, (_, i) => {
+    pieces.multiplyInto(work, i, U, columns);
+    return transposeProduct(U, columns, work, columns, problem.size);
+  });
+  return { columns, matrices, factor: (i, k, level) => pieces.factor(i, k, level) };
+}
+
+/** UᵀA_jU of every term at one level. */
+function projectTerms(problem: EigenProblem, level: number, U: ComplexArray, columns: number): Projection {
+  const work = new Float64Array(2 * problem.size * columns);
+  const matrices = Array.from({ length: problem.terms }, (_, j) => {
     problem.multiplyTermInto(work, j, level, U, columns);
     return transposeProduct(U, columns, work, columns, problem.size);
   });
+  return { columns, matrices, factor: (j, k) => problem.termFactor(j, k) };
 }
 
-/** Mean dk/d(level) = −tr[(UᵀA_k U)⁻¹ UᵀA_level U]/μ of a group. */
-function groupSlope(problem: EigenProblem, k: Complex, level: number, U: ComplexArray, columns: number): Complex {
-  const n = problem.size;
-  const work = new Float64Array(2 * n * columns);
-  problem.multiplyInto(work, k, level, 'byK', U, columns);
-  const byK = transposeProduct(U, columns, work, columns, n);
-  problem.multiplyInto(work, k, level, 'byLevel', U, columns);
-  const byLevel = transposeProduct(U, columns, work, columns, n);
+/** The projection on U y. */
+function within({ columns, matrices, factor }: Projection, y: ComplexArray, count: number): Projection {
+  const smaller = matrices.map((p) =>
+    transposeProduct(y, count, combine(p, columns, y, count, columns), count, columns),
+  );
+  return { columns: count, matrices: smaller, factor };
+}
+
+/** Mean dk/d(level) = −tr[(UᵀA_k U)⁻¹ UᵀA_level U]/μ of a group with the vectors U. */
+function groupSlope(problem: EigenProblem, own: Projection, k: Complex, level: number, U: ComplexArray): Complex {
+  const { columns } = own;
+  let byK: ComplexArray;
+  let byLevel: ComplexArray;
+  if (own.matrices.every((_, i) => own.factor(i, k, level).byLevel !== undefined)) {
+    byK = weighted(own, (i) => own.factor(i, k, level).byK);
+    byLevel = weighted(own, (i) => own.factor(i, k, level).byLevel ?? complex(0));
+  } else {
+    const n = problem.size;
+    const work = new Float64Array(2 * n * columns);
+    problem.multiplyInto(work, k, level, 'byK', U, columns);
+    byK = transposeProduct(U, columns, work, columns, n);
+    problem.multiplyInto(work, k, level, 'byLevel', U, columns);
+    byLevel = transposeProduct(U, columns, work, columns, n);
+  }
   const lu = luFactor(byK, columns);
   luSolveInto(byLevel, lu, byLevel, columns);
   let trace = complex(0);
@@ -102,26 +138,30 @@ function groupSlope(problem: EigenProblem, k: Complex, level: number, U: Complex
   return scale(trace, -1 / columns);
 }
 
-/** Offsets δ and vectors of Σ f_j(k) P_j + δ Σ f_j′(k) P_j; null where the second matrix is singular or not finite. */
-function smallPencil(
-  problem: EigenProblem,
-  projected: readonly ComplexArray[],
-  k: Complex,
-  columns: number,
-): { readonly offsets: readonly Complex[]; readonly vectors: ComplexArray } | null {
-  const g = new Float64Array(2 * columns * columns);
-  const slope = new Float64Array(2 * columns * columns);
-  projected.forEach((p, j) => {
-    const { value, byK } = problem.termFactor(j, k);
-    for (let s = 0; s < g.length; s += 2) {
+/** Σ c_i P_i. */
+function weighted({ columns, matrices }: Projection, factor: (i: number) => Complex): ComplexArray {
+  const out = new Float64Array(2 * columns * columns);
+  matrices.forEach((p, i) => {
+    const { re, im } = factor(i);
+    for (let s = 0; s < out.length; s += 2) {
       const a = p[s];
       const b = p[s + 1];
-      g[s] = g[s] + value.re * a - value.im * b;
-      g[s + 1] = g[s + 1] + value.re * b + value.im * a;
-      slope[s] = slope[s] + byK.re * a - byK.im * b;
-      slope[s + 1] = slope[s + 1] + byK.re * b + byK.im * a;
+      out[s] = out[s] + re * a - im * b;
+      out[s + 1] = out[s + 1] + re * b + im * a;
     }
   });
+  return out;
+}
+
+/** Offsets δ and vectors of A + δ ∂A/∂k on the small space; null where the second matrix is singular or not finite. */
+function smallPencil(
+  projection: Projection,
+  k: Complex,
+  level: number,
+): { readonly offsets: readonly Complex[]; readonly vectors: ComplexArray } | null {
+  const { columns } = projection;
+  const g = weighted(projection, (i) => projection.factor(i, k, level).value);
+  const slope = weighted(projection, (i) => projection.factor(i, k, level).byK);
   if (!slope.every(Number.isFinite)) return null;
   if (columns === 1) {
     const d = complex(slope[0], slope[1]);

@@ -41,6 +41,18 @@ export interface DeviceFamily {
     columns: number,
   ): ComplexArray;
   factorize(k: Complex, level: number): Factorization;
+  readonly pieces: FamilyPieces;
+}
+
+/** The family as Σ c_i(k, D) P_i with fixed matrices. */
+export interface FamilyPieces {
+  readonly count: number;
+  factor(
+    i: number,
+    k: Complex,
+    level: number,
+  ): { readonly value: Complex; readonly byK: Complex; readonly byLevel: Complex };
+  multiplyInto(out: ComplexArray, i: number, x: ComplexArray, columns: number): ComplexArray;
 }
 
 export type LevelSense = 'gain' | 'loss';
@@ -94,6 +106,71 @@ export function deviceFamily(device: Device, operator: OpenOperator, sense: Leve
     weights,
     multiplyInto: (out, k, level, part, x, columns) => operator.multiplyInto(out, weights(k, level, part), x, columns),
     factorize: (k, level) => operator.factorize(weights(k, level, 'value')),
+    pieces: familyPieces(device, operator, sense, conductors),
+  };
+}
+
+type PieceFactor = ReturnType<FamilyPieces['factor']>;
+
+/**
+ * Stiffness that no level moves; mass at level 0; mass by the level (`Ez`); stiffness of every kind of active body
+ * (`Hz`: 1/ε is not linear); the surface of each metal.
+ */
+function familyPieces(
+  device: Device,
+  operator: OpenOperator,
+  sense: LevelSense,
+  conductors: readonly number[],
+): FamilyPieces {
+  const none = complex(0);
+  const blank = (): RegionWeights => zeroWeights(device.bodies.length, conductors.length);
+  const fixed = blank();
+  const mass = blank();
+  const massByLevel = blank();
+  const active = new Map<string, { readonly weights: RegionWeights; readonly region: number }>();
+  for (let region = LAYER; region < device.bodies.length; region++) {
+    const { p, q, pSlope, qSlope } = regionMaterial(device, region, 0, sense);
+    setWeight(mass.mass, region, q);
+    setWeight(massByLevel.mass, region, qSlope);
+    if (pSlope.re === 0 && pSlope.im === 0) {
+      setWeight(fixed.stiffness, region, p);
+      continue;
+    }
+    const { permittivity, pumpWeight } = device.bodies[region];
+    const kind = `${permittivity.re} ${permittivity.im} ${pumpWeight}`;
+    const group = active.get(kind) ?? { weights: blank(), region };
+    setWeight(group.weights.stiffness, region, complex(1));
+    active.set(kind, group);
+  }
+  const square = (k: Complex, factor: number): Complex => scale(multiply(k, k), -factor);
+  const list: { weights: RegionWeights; factor: (k: Complex, level: number) => PieceFactor }[] = [
+    { weights: fixed, factor: () => ({ value: complex(1), byK: none, byLevel: none }) },
+    { weights: mass, factor: (k) => ({ value: square(k, 1), byK: scale(k, -2), byLevel: none }) },
+  ];
+  if (massByLevel.mass.some((w) => w !== 0)) {
+    list.push({
+      weights: massByLevel,
+      factor: (k, level) => ({ value: square(k, level), byK: scale(k, -2 * level), byLevel: square(k, 1) }),
+    });
+  }
+  for (const { weights, region } of active.values()) {
+    list.push({
+      weights,
+      factor: (_, level) => {
+        const { p, pSlope } = regionMaterial(device, region, level, sense);
+        return { value: p, byK: none, byLevel: pSlope };
+      },
+    });
+  }
+  conductors.forEach((sigma, i) => {
+    const weights = blank();
+    setSurface(weights, i, complex(1));
+    list.push({ weights, factor: (k) => ({ ...surfaceFactor(device, sigma, k), byLevel: none }) });
+  });
+  return {
+    count: list.length,
+    factor: (i, k, level) => list[i].factor(k, level),
+    multiplyInto: (out, i, x, columns) => operator.multiplyInto(out, list[i].weights, x, columns),
   };
 }
 

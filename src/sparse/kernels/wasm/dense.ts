@@ -113,6 +113,21 @@ export function multiplyElements(
     const turned = load<i32>(complex + word) != 0;
     const stiffness = (<usize>load<u32>(places + word)) << 3;
     const mass = stiffness + ((<usize>(nd * nd)) << (turned ? 4 : 3));
+    if (columns == 1) {
+      memory.fill(y, 0, <usize>(nd + 3) << 4);
+      if (useK) {
+        gatherOne(x, unknowns, nd, kr, ki, k1, k2);
+        if (turned) addComplexOne(stiffness, nd, k1, k2, flip, y);
+        else addRealOne(stiffness, nd, k1, k2, y);
+      }
+      if (useM) {
+        gatherOne(x, unknowns, nd, mr, mi, m1, m2);
+        if (turned) addComplexOne(mass, nd, m1, m2, flip, y);
+        else addRealOne(mass, nd, m1, m2, y);
+      }
+      scatterOne(out, unknowns, nd, y);
+      continue;
+    }
     if (useK) gatherWeighted(x, columnBytes, columns, unknowns, nd, kr, ki, turned, flip, k1, k2);
     if (useM) gatherWeighted(x, columnBytes, columns, unknowns, nd, mr, mi, turned, flip, m1, m2);
     memory.fill(y, 0, <usize>(nd + 3) * rowBytes);
@@ -147,6 +162,137 @@ export function multiplyElements(
       }
     }
   }
+}
+
+/** w x of the element's unknowns for one column, real and imaginary parts apart. */
+function gatherOne(x: usize, unknowns: usize, nd: i32, wr: f64, wi: f64, re: usize, im: usize): void {
+  for (let j = 0; j < nd; j++, re += 8, im += 8) {
+    const g = load<i32>(unknowns + ((<usize>j) << 2));
+    let a = 0.0;
+    let b = 0.0;
+    if (g >= 0) {
+      const at = x + ((<usize>g) << 4);
+      a = load<f64>(at);
+      b = load<f64>(at, 8);
+    }
+    store<f64>(re, wr * a - wi * b);
+    store<f64>(im, wr * b + wi * a);
+  }
+}
+
+function scatterOne(out: usize, unknowns: usize, nd: i32, y: usize): void {
+  for (let i = 0; i < nd; i++, y += 16) {
+    const g = load<i32>(unknowns + ((<usize>i) << 2));
+    if (g < 0) continue;
+    const to = out + ((<usize>g) << 4);
+    v128.store(to, f64x2.add(v128.load(to), v128.load(y)));
+  }
+}
+
+/** y (re, im) += a real matrix times one column; four rows, two of their numbers at a time. */
+function addRealOne(m: usize, nd: i32, re: usize, im: usize, y: usize): void {
+  const step = (<usize>nd) << 3;
+  const pairs = (<usize>(nd & ~1)) << 3;
+  for (let i = 0; i < nd; i += 4, y += 64) {
+    let p = m + <usize>i * step;
+    let q = i + 1 < nd ? p + step : p;
+    let r = i + 2 < nd ? q + step : p;
+    let s = i + 3 < nd ? r + step : p;
+    let p0 = f64x2.splat(0);
+    let p1 = p0;
+    let q0 = p0;
+    let q1 = p0;
+    let r0 = p0;
+    let r1 = p0;
+    let s0 = p0;
+    let s1 = p0;
+    let u = re;
+    let v = im;
+    for (const end = re + pairs; u < end; u += 16, v += 16, p += 16, q += 16, r += 16, s += 16) {
+      const a = v128.load(u);
+      const b = v128.load(v);
+      let f = v128.load(p);
+      p0 = f64x2.add(p0, f64x2.mul(f, a));
+      p1 = f64x2.add(p1, f64x2.mul(f, b));
+      f = v128.load(q);
+      q0 = f64x2.add(q0, f64x2.mul(f, a));
+      q1 = f64x2.add(q1, f64x2.mul(f, b));
+      f = v128.load(r);
+      r0 = f64x2.add(r0, f64x2.mul(f, a));
+      r1 = f64x2.add(r1, f64x2.mul(f, b));
+      f = v128.load(s);
+      s0 = f64x2.add(s0, f64x2.mul(f, a));
+      s1 = f64x2.add(s1, f64x2.mul(f, b));
+    }
+    if (nd & 1) {
+      const a = v128.load64_zero(u);
+      const b = v128.load64_zero(v);
+      let f = v128.load64_zero(p);
+      p0 = f64x2.add(p0, f64x2.mul(f, a));
+      p1 = f64x2.add(p1, f64x2.mul(f, b));
+      f = v128.load64_zero(q);
+      q0 = f64x2.add(q0, f64x2.mul(f, a));
+      q1 = f64x2.add(q1, f64x2.mul(f, b));
+      f = v128.load64_zero(r);
+      r0 = f64x2.add(r0, f64x2.mul(f, a));
+      r1 = f64x2.add(r1, f64x2.mul(f, b));
+      f = v128.load64_zero(s);
+      s0 = f64x2.add(s0, f64x2.mul(f, a));
+      s1 = f64x2.add(s1, f64x2.mul(f, b));
+    }
+    v128.store(y, f64x2.add(v128.load(y), pairSums(p0, p1)));
+    v128.store(y, f64x2.add(v128.load(y, 16), pairSums(q0, q1)), 16);
+    v128.store(y, f64x2.add(v128.load(y, 32), pairSums(r0, r1)), 32);
+    v128.store(y, f64x2.add(v128.load(y, 48), pairSums(s0, s1)), 48);
+  }
+}
+
+/** The same for a complex matrix, conjugated where flip is −1. */
+function addComplexOne(m: usize, nd: i32, re: usize, im: usize, flip: f64, y: usize): void {
+  const step = (<usize>nd) << 4;
+  const turn = f64x2.replace_lane(f64x2.splat(flip), 0, -flip);
+  for (let i = 0; i < nd; i += 4, y += 64) {
+    let p = m + <usize>i * step;
+    let q = i + 1 < nd ? p + step : p;
+    let r = i + 2 < nd ? q + step : p;
+    let s = i + 3 < nd ? r + step : p;
+    let p0 = f64x2.splat(0);
+    let p1 = p0;
+    let q0 = p0;
+    let q1 = p0;
+    let r0 = p0;
+    let r1 = p0;
+    let s0 = p0;
+    let s1 = p0;
+    const end = p + step;
+    for (let u = re, v = im; p < end; u += 8, v += 8, p += 16, q += 16, r += 16, s += 16) {
+      const a = v128.load64_splat(u);
+      const b = v128.load64_splat(v);
+      let f = v128.load(p);
+      p0 = f64x2.add(p0, f64x2.mul(f, a));
+      p1 = f64x2.add(p1, f64x2.mul(f, b));
+      f = v128.load(q);
+      q0 = f64x2.add(q0, f64x2.mul(f, a));
+      q1 = f64x2.add(q1, f64x2.mul(f, b));
+      f = v128.load(r);
+      r0 = f64x2.add(r0, f64x2.mul(f, a));
+      r1 = f64x2.add(r1, f64x2.mul(f, b));
+      f = v128.load(s);
+      s0 = f64x2.add(s0, f64x2.mul(f, a));
+      s1 = f64x2.add(s1, f64x2.mul(f, b));
+    }
+    v128.store(y, f64x2.add(v128.load(y), turnedSum(p0, p1, turn)));
+    v128.store(y, f64x2.add(v128.load(y, 16), turnedSum(q0, q1, turn)), 16);
+    v128.store(y, f64x2.add(v128.load(y, 32), turnedSum(r0, r1, turn)), 32);
+    v128.store(y, f64x2.add(v128.load(y, 48), turnedSum(s0, s1, turn)), 48);
+  }
+}
+
+/** (a₀ ∓ b₁, b₀ ± a₁) of a = Σ (re, im) of m · re x and b = Σ (re, im) of m · im x. */
+// @ts-ignore: decorator of AssemblyScript
+@inline
+function turnedSum(a: v128, b: v128, turn: v128): v128 {
+  return f64x2.add(v128.shuffle<f64>(a, b, 0, 2), f64x2.mul(v128.shuffle<f64>(a, b, 3, 1), turn));
 }
 
 /** w x of the element's unknowns, rows of all columns; for complex matrices also ±i w x. */
