@@ -35,7 +35,12 @@ export interface CountedSearch {
  * `modesInWindow` with a count by the determinant of the device closed exactly on the rim: it knows nothing of the
  * stretched layer that the search works with, nor of its modes. `groupWidth` is relative to k.
  */
-export function countedSearch(device: Device, layer: LayerPlan, groupWidth: number): CountedSearch {
+export function countedSearch(
+  device: Device,
+  layer: LayerPlan,
+  groupWidth: number,
+  { doubled = false }: { /** Twice the points that settle a contour. */ readonly doubled?: boolean } = {},
+): CountedSearch {
   let proof: WindowProof | null = null;
   return {
     search(family, request) {
@@ -65,6 +70,7 @@ export function countedSearch(device: Device, layer: LayerPlan, groupWidth: numb
         groupWidth: groupWidth * kMax,
         logDeterminant: (k) => closed.logDeterminant(k, request.level, () => direction),
         isForeign,
+        doubled,
       });
       proof = answer.proof;
       // what shows nothing in the window or near it need not climb

@@ -18,6 +18,8 @@ export interface ProvenRequest extends WindowRequest {
   readonly find?: typeof modesInWindow;
   /** Most points of a contour. */
   readonly mostPoints?: number;
+  /** Doubles the points once more when a contour is settled. */
+  readonly doubled?: boolean;
 }
 
 /** What the count knows of the discs of a window. */
@@ -101,7 +103,7 @@ export function provenWindow(problem: EigenProblem, request: ProvenRequest): Pro
       }
       known = members(tiles, groups, request);
     }
-    return contour;
+    return request.doubled ? doubleContour(logDeterminant, contour) : contour;
   });
   const points = contours.reduce((sum, c) => sum + c.logs.length, 0);
   const proof = { contours, known: [...known, ...extra], points, searchedAgain };
