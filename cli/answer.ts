@@ -81,19 +81,21 @@ function isWhole(answer: RunRecord['answer']): boolean {
   return complete ? complete.proven : answer['covered'] !== false;
 }
 
-function printDoubts({ answer }: RunRecord): void {
+function printDoubts({ answer, command }: RunRecord): void {
   const crossings = (answer['crossings'] ?? []) as readonly CrossingAnswer[];
   const complete = answer['complete'] as CompleteAnswer | undefined;
-  if (complete) sayComplete(complete);
+  if (complete) sayComplete(complete, command);
   else if (answer['covered'] === false)
     say(ink.yellow('Part of the window could not be searched: the list may lack modes.'));
   if (answer['reached'] === false || crossings.some((c) => c.reached === false))
     say(ink.yellow('The digits asked for were not reached; the errors say how far the numbers go.'));
 }
 
-function sayComplete({ found, counted, proven, reason }: CompleteAnswer): void {
-  if (proven) say(`complete: ${String(found)} of ${String(counted)}`);
-  else say(ink.yellow(`not proven complete: ${String(found)} found, ${reason}`));
+function sayComplete({ found, counted, proven, reason, below }: CompleteAnswer, command: string): void {
+  const what = command === 'threshold' ? 'thresholds ' : command === 'absorb' ? 'absorption points ' : '';
+  const range = below === undefined ? '' : ` below D = ${significant(below, 6)}`;
+  if (proven) say(`${what}complete${range}: ${String(found)} of ${String(counted)}`);
+  else say(ink.yellow(`${what}not proven complete${range}: ${String(found)} found, ${reason}`));
 }
 
 function printModes(record: RunRecord, modes: readonly ModeAnswer[]): void {

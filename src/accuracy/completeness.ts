@@ -31,6 +31,13 @@ export interface CountedSearch {
   judge(wedge: Wedge, modes: readonly { readonly k: Complex; readonly multiplicity: number }[]): Completeness;
 }
 
+export interface CountChoice {
+  /** Twice the points that settle a contour. */
+  readonly doubled?: boolean;
+  /** The family whose determinant counts, of lower order perhaps; the one searched if absent. */
+  readonly countOn?: DeviceFamily;
+}
+
 /**
  * `modesInWindow` with a count by the determinant of the device closed exactly on the rim: it knows nothing of the
  * stretched layer that the search works with, nor of its modes. `groupWidth` is relative to k.
@@ -39,7 +46,7 @@ export function countedSearch(
   device: Device,
   layer: LayerPlan,
   groupWidth: number,
-  { doubled = false }: { /** Twice the points that settle a contour. */ readonly doubled?: boolean } = {},
+  { doubled = false, countOn }: CountChoice = {},
 ): CountedSearch {
   let proof: WindowProof | null = null;
   return {
@@ -50,8 +57,8 @@ export function countedSearch(
       const top = 1.15 * kMax * Math.hypot(1, Math.max(low, high));
       // a cavity without openings is its own determinant
       const closed = isWalled(device)
-        ? { logDeterminant: (k: Complex, level: number) => determinantOf(family, k, level) }
-        : closeByChannels(device, family, highestChannel(index * top * layer.rimRadius));
+        ? { logDeterminant: (k: Complex, level: number) => determinantOf(countOn ?? family, k, level) }
+        : closeByChannels(device, countOn ?? family, highestChannel(index * top * layer.rimRadius));
       const foreign = new WeakMap<EigenGroup, boolean>();
       const isForeign = (group: EigenGroup): boolean => {
         let known = foreign.get(group);

@@ -1,19 +1,22 @@
 // At which real k and real pump (or loss) do the modes of a device meet the real axis?
 
+import { countedSearch, isCountable } from '../accuracy/completeness.ts';
 import { layerShift, returnedToMode } from '../accuracy/layer-return.ts';
 import { groupWidth } from '../accuracy/mode-ladder.ts';
 import { DEFAULT_DIGITS, HIGHEST_ORDER, resolutionFor } from '../accuracy/resolution.ts';
 import type { Device } from '../device/model.ts';
 import { embed } from '../elements/space.ts';
 import { type Crossing, findCrossing, ROUNDING } from '../eigen/crossing.ts';
-import { followCluster, type ModePath } from '../eigen/follow.ts';
-import { type EigenGroup, gather, rayleighGroups } from '../eigen/rayleigh.ts';
-import { modesInWindow, ownGroups } from '../eigen/window.ts';
+import type { ModePath } from '../eigen/follow.ts';
+import { type EigenGroup, rayleighGroups } from '../eigen/rayleigh.ts';
+import { modesInWindow, ownGroups, type WindowRequest } from '../eigen/window.ts';
 import { type Complex, type ComplexArray, modulus } from '../numerics/complex.ts';
 import type { DeviceFamily, LevelSense } from '../operator/device-family.ts';
 import { multipoleJumps, multipoleOrder, type Multipoles } from '../scattering/contrast.ts';
 import { angleOfSpaces } from '../scattering/drive-space.ts';
+import { CHECK_ORDER, checkAtLevel, type CrossingsComplete } from './complete-crossings.ts';
 import { modeLabel } from './label.ts';
+import { followAll } from './mode-clusters.ts';
 import { expectedModes } from './mode-count.ts';
 import { type Progress, wedgeFor } from './modes.ts';
 import { familyOf, type Prepared, prepare, spaceOf } from './prepare.ts';
@@ -54,6 +57,8 @@ export interface CrossingsAnswer {
   readonly beyond: readonly Complex[];
   readonly levelMax: number;
   readonly covered: boolean;
+  /** What the count at levelMax says of the list; null where there is no count yet. */
+  readonly complete: CrossingsComplete | null;
   readonly digits: number;
   readonly prepared: Prepared;
   readonly sense: LevelSense;
@@ -93,7 +98,8 @@ export function findCrossings(device: Device, sense: LevelSense, request: Crossi
   const family = familyOf(prepared, order, direction, sense);
 
   // 1 modes at level 0
-  const found = modesInWindow(family, {
+  const width = groupWidth(digits, kMax);
+  const window: WindowRequest = {
     wedge,
     level: 0,
     expected: expectedModes(device),
@@ -101,8 +107,13 @@ export function findCrossings(device: Device, sense: LevelSense, request: Crossi
     tolerance: 1e-8,
     seed: SEED,
     progress: (done) => request.progress?.('modes without pump', done),
-  });
-  const width = groupWidth(digits, kMax);
+  };
+  const countable = isCountable(device);
+  const found = countable
+    ? countedSearch(device, prepared.layer, width / wedge.kMax, {
+        countOn: familyOf(prepared, Math.min(order, CHECK_ORDER), direction, sense),
+      }).search(family, window)
+    : modesInWindow(family, window);
   const groups = found.tiles.map((t) => rayleighGroups(family, t.shift, 0, t.vectors, t.ks.length, width));
   const all = ownGroups(found.tiles, groups, width).map((o) => o.group);
   const broad = all.filter((g) => !isSharp(g, digits));
@@ -117,27 +128,11 @@ export function findCrossings(device: Device, sense: LevelSense, request: Crossi
   const start = broad.filter((g) => g.k.re > 0 && mayCross(g, levelMax, sense));
 
   // 2 followed in clusters to the axis
-  const clusters = clustersOf(start, CLUSTER_WIDTH * kMax);
-  const paths: ModePath[] = [];
-  clusters.forEach((list, i) => {
-    const columns = list.reduce((sum, g) => sum + g.multiplicity, 0);
-    const vectors = new Float64Array(2 * family.size * columns);
-    let at = 0;
-    for (const g of list) {
-      vectors.set(g.vectors, at);
-      at += g.vectors.length;
-    }
-    request.progress?.('following modes to the axis', i / clusters.length);
-    paths.push(
-      ...followCluster(family, {
-        k: list[0].k,
-        vectors,
-        columns,
-        levelMax,
-        groupWidth: width / kMax,
-        clusterWidth: CLUSTER_WIDTH,
-      }),
-    );
+  const paths = followAll(family, start, {
+    kMax,
+    levelMax,
+    groupWidth: width,
+    progress: (done) => request.progress?.('following modes to the axis', done),
   });
 
   // 3 polished with their errors
@@ -153,9 +148,45 @@ export function findCrossings(device: Device, sense: LevelSense, request: Crossi
       crossings.push(...climbCrossing(prepared, direction, sense, path, digits, width, resolved.order));
     } else lost.push(path);
   }
+
+  // 4 compared with all modes beyond the axis at the largest level
+  const outside = paths.filter((p) => p.crossing && !within.includes(p));
+  const check = countable
+    ? checkAtLevel(prepared, {
+        sense,
+        levelMax,
+        wedge,
+        groupWidth: width,
+        listed: [...crossings, ...outside.map((p) => ({ ...p.crossing!, multiplicity: p.multiplicity }))],
+        beyond: all
+          .filter((g) => toAxis(g.k, sense) < 0)
+          .flatMap((g) => Array.from({ length: g.multiplicity }, () => g.k)),
+        ...(request.progress ? { progress: request.progress } : {}),
+      })
+    : null;
+  for (const path of check?.missed ?? []) {
+    // a group that the list holds in part stands there anew, whole
+    let held = path.crossing!.group.multiplicity - path.multiplicity;
+    const near = (c: AxisMode): number => Math.abs(c.k - path.crossing!.k);
+    for (const c of [...crossings].sort((x, y) => near(x) - near(y))) {
+      if (held < c.multiplicity) break;
+      held -= c.multiplicity;
+      crossings.splice(crossings.indexOf(c), 1);
+    }
+    const late = climbCrossing(prepared, direction, sense, path, digits, width, check!.order);
+    crossings.push(...late.filter((c) => c.level <= levelMax && inBand(device, c.k)));
+  }
   crossings.sort((a, b) => a.level - b.level || a.k - b.k);
+  const members = crossings.reduce((sum, c) => sum + c.multiplicity, 0);
   return {
     crossings,
+    complete: check && {
+      below: levelMax,
+      found: members,
+      counted: members,
+      proven: check.reason === '',
+      reason: check.reason,
+    },
     others: [...paths.filter((p) => !within.includes(p)), ...lost],
     beyond,
     levelMax,
@@ -188,21 +219,6 @@ function pathOfSharp(family: DeviceFamily, { group, step }: ResolvedGroup): Mode
 
 /** The width of a sharp mode hangs on multipoles that leave by tunnelling: the layer must serve these too. */
 const sharpOrders = (x: number): number => x + 4 * Math.cbrt(x);
-
-/** Modes closer than this (relative) are followed together. */
-const CLUSTER_WIDTH = 2e-3;
-
-/** In dense spectra clusters are cut until they have no more members: one shift serves them all. */
-const MOST_TOGETHER = 8;
-
-function clustersOf(groups: readonly EigenGroup[], width: number): EigenGroup[][] {
-  const ks = groups.map((g) => g.k);
-  return gather(ks, width).flatMap((indices) => {
-    const list = indices.map((i) => groups[i]);
-    const members = list.reduce((sum, g) => sum + g.multiplicity, 0);
-    return members > MOST_TOGETHER && list.length > 1 ? clustersOf(list, width / 2) : [list];
-  });
-}
 
 /** What a mode at level 0 lacks to the axis; negative beyond it. */
 const toAxis = (k: Complex, sense: LevelSense): number => (sense === 'gain' ? -k.im : k.im);

@@ -238,6 +238,7 @@ const baseOrder = (crossings: readonly AxisMode[]): number => Math.max(1, ...cro
 const searched = (answer: Omit<CrossingsAnswer, 'crossings'>): Record<string, unknown> => ({
   levelMax: answer.levelMax,
   covered: answer.covered,
+  ...(answer.complete ? { complete: answer.complete } : {}),
   beyond: answer.beyond.map((k) => [k.re, k.im]),
   others: answer.others.map((p) => ({
     from: [p.ks[0].re, p.ks[0].im],

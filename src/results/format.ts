@@ -49,6 +49,8 @@ export interface CompleteAnswer {
   readonly proven: boolean;
   /** Why not, else "". */
   readonly reason: string;
+  /** Crossings: the list is complete below this level. */
+  readonly below?: number;
 }
 
 /** Pump or loss in the units engineers use. */

@@ -17,7 +17,7 @@ export interface Judgement {
   /** By a count with doubled points on a finer mesh: modes that the answer lacks, and that it has too many. */
   readonly misses: readonly Complex[];
   readonly extras: readonly Complex[];
-  readonly said: ModesAnswer['complete'];
+  readonly said: NonNullable<ModesAnswer['complete']>;
   /** The judge's own count was settled. */
   readonly settled: boolean;
   /** Processor seconds of `findModes`. */
@@ -42,7 +42,7 @@ export function judgeCase(c: RandomCase): Judgement {
     exact: exactCounts(c, wedge, list.length),
     misses: fine.misses,
     extras: fine.extras,
-    said: answer.complete,
+    said: answer.complete!,
     settled: fine.settled,
     seconds: (used.user + used.system) / 1e6,
   };
