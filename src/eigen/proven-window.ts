@@ -167,6 +167,12 @@ function members(
     .flatMap(({ k, multiplicity }) => Array.from({ length: multiplicity }, () => k));
 }
 
+/** Low k are served badly by the layer and lie by the branch point: a wider contour keeps this share from zero. */
+const CLEAR_OF_ZERO = 0.8;
+
+/** A gap of this share of the radius is enough. */
+const CLEAR = 0.06;
+
 /**
  * The circle that holds the tile's part of the window and keeps farthest, relative to its radius, from what is known. It
  * does not go beyond what the search has seen to the end.
@@ -175,7 +181,7 @@ function circleOf(tile: Tile, known: readonly Complex[]): { center: Complex; rad
   const { shift, radius } = tile;
   const center = multiply(shift, shift);
   const seen = tile.ks.reduce((most, k) => Math.max(most, squareDistance(k, shift)), radius);
-  const widest = Math.min(WIDEST * radius, Math.max(radius, 0.99 * seen), 0.98 * modulus(center));
+  const widest = Math.max(radius, Math.min(WIDEST * radius, 0.99 * seen, CLEAR_OF_ZERO * modulus(center)));
   const distances = known.map((k) => squareDistance(k, shift));
   let best = radius;
   let gap = -1;
@@ -186,6 +192,7 @@ function circleOf(tile: Tile, known: readonly Complex[]): { center: Complex; rad
       gap = own;
       best = r;
     }
+    if (gap >= CLEAR) break;
   }
   return { center, radius: best };
 }

@@ -133,7 +133,7 @@ export function countCluster(
         const phi = Math.atan2(dy, dx);
         for (let c = -M; c <= M; c++) {
           for (let r = -M; r <= M; r++) {
-            let value = complex(0);
+            let value: Complex;
             if (p === q) {
               if (r !== c) continue;
               value = scale(parts[p].d[Math.abs(r)], 1 / scales[p][Math.abs(r)].d);
