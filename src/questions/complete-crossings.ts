@@ -27,10 +27,14 @@ export interface ListedCrossing {
   readonly k: number;
   readonly level: number;
   readonly multiplicity: number;
+  /** What the order of the check may be off in the level. */
+  readonly slack: number;
 }
 
 export interface LevelCheckRequest {
   readonly sense: LevelSense;
+  /** Order that the listed modes were followed at. */
+  readonly order: number;
   readonly levelMax: number;
   /** The window at level 0: its band holds what the level can move into the device's own. */
   readonly wedge: Wedge;
@@ -43,15 +47,14 @@ export interface LevelCheckRequest {
 }
 
 export interface LevelCheck {
-  /** Crossings in the band that the list lacks, in the space of `order`. */
+  /** Crossings in the band that the list lacks, in the space of the order asked for. */
   readonly missed: readonly ModePath[];
-  readonly order: number;
   /** Why nothing is proven, or "". */
   readonly reason: string;
 }
 
-/** Modes are told, not measured: digits come later. */
-export const CHECK_ORDER = 5;
+/** Modes are counted, not measured: the determinant needs no higher order. */
+export const COUNT_ORDER = 5;
 
 /**
  * All modes beyond the axis at levelMax, counted; each is followed back to the axis. Modes that entered the band from its
@@ -61,15 +64,17 @@ export const CHECK_ORDER = 5;
 export function checkAtLevel(prepared: Prepared, request: LevelCheckRequest): LevelCheck {
   const { sense, levelMax, wedge, groupWidth, progress } = request;
   const { device } = prepared;
-  const order = CHECK_ORDER;
-  const family = familyOf(prepared, order, sense === 'gain' ? 'outgoing' : 'incoming', sense);
+  const direction = sense === 'gain' ? 'outgoing' : 'incoming';
+  const family = familyOf(prepared, request.order, direction, sense);
   const slope = Math.max(wedge.low, wedge.high);
   const window = {
     ...wedge,
     low: sense === 'gain' ? ON_THE_AXIS : slope,
     high: sense === 'gain' ? slope : ON_THE_AXIS,
   };
-  const counted = countedSearch(device, prepared.layer, groupWidth / wedge.kMax);
+  const counted = countedSearch(device, prepared.layer, groupWidth / wedge.kMax, {
+    countOn: familyOf(prepared, Math.min(request.order, COUNT_ORDER), direction, sense),
+  });
   const { tiles } = counted.search(family, {
     wedge: window,
     level: levelMax,
@@ -92,7 +97,7 @@ export function checkAtLevel(prepared: Prepared, request: LevelCheckRequest): Le
     progress: (done) => progress?.('following modes back', done),
   });
   const { missed, reason } = compare(request, prepared, paths);
-  return { missed, order, reason: verdict.proven ? reason : `at D = ${levelMax} ${verdict.reason}` };
+  return { missed, reason: verdict.proven ? reason : `at D = ${levelMax} ${verdict.reason}` };
 }
 
 /** Share of Re k on the near side of the axis that the window takes in. */
@@ -121,7 +126,7 @@ const turned = (group: EigenGroup): EigenGroup => ({
   slope: { re: -group.slope.re, im: -group.slope.im },
 });
 
-/** Differences that the order of the check leaves between a crossing and the same one in the list. */
+/** Differences between a crossing and the same one in the list, relative: the list is polished at higher orders. */
 const SAME_K = 3e-3;
 const SAME_LEVEL = 0.03;
 
@@ -145,7 +150,7 @@ function compare(
       let open = path.multiplicity;
       const near = free
         .filter((c) => Math.abs(c.k - k) <= SAME_K * k)
-        .filter((c) => Math.abs(c.level - level) <= SAME_LEVEL * Math.max(level, SAME_LEVEL * levelMax))
+        .filter((c) => Math.abs(c.level - level) <= SAME_LEVEL * level + c.slack)
         .sort((a, b) => Math.abs(a.k - k) - Math.abs(b.k - k));
       for (const c of near) {
         const taken = Math.min(open, c.multiplicity);
@@ -164,7 +169,7 @@ function compare(
       open--;
     }
     for (const c of free) {
-      if (open === 0 || Math.abs(c.k - last.re) > SAME_K * last.re || c.level > SAME_LEVEL * levelMax) continue;
+      if (open === 0 || Math.abs(c.k - last.re) > SAME_K * last.re || c.level > c.slack) continue;
       const taken = Math.min(open, c.multiplicity);
       c.multiplicity -= taken;
       open -= taken;

@@ -14,7 +14,7 @@ import { type Complex, type ComplexArray, modulus } from '../numerics/complex.ts
 import type { DeviceFamily, LevelSense } from '../operator/device-family.ts';
 import { multipoleJumps, multipoleOrder, type Multipoles } from '../scattering/contrast.ts';
 import { angleOfSpaces } from '../scattering/drive-space.ts';
-import { CHECK_ORDER, checkAtLevel, type CrossingsComplete } from './complete-crossings.ts';
+import { checkAtLevel, COUNT_ORDER, type CrossingsComplete } from './complete-crossings.ts';
 import { modeLabel } from './label.ts';
 import { followAll } from './mode-clusters.ts';
 import { expectedModes } from './mode-count.ts';
@@ -111,7 +111,7 @@ export function findCrossings(device: Device, sense: LevelSense, request: Crossi
   const countable = isCountable(device);
   const found = countable
     ? countedSearch(device, prepared.layer, width / wedge.kMax, {
-        countOn: familyOf(prepared, Math.min(order, CHECK_ORDER), direction, sense),
+        countOn: familyOf(prepared, Math.min(order, COUNT_ORDER), direction, sense),
       }).search(family, window)
     : modesInWindow(family, window);
   const groups = found.tiles.map((t) => rayleighGroups(family, t.shift, 0, t.vectors, t.ks.length, width));
@@ -157,7 +157,11 @@ export function findCrossings(device: Device, sense: LevelSense, request: Crossi
         levelMax,
         wedge,
         groupWidth: width,
-        listed: [...crossings, ...outside.map((p) => ({ ...p.crossing!, multiplicity: p.multiplicity }))],
+        order,
+        listed: [...crossings, ...outside.map((p) => ({ ...p.crossing!, multiplicity: p.multiplicity }))].map((c) => ({
+          ...c,
+          slack: (LEVEL_SLACK * 10 ** -digits * c.k) / Math.abs(c.group.slope.im),
+        })),
         beyond: all
           .filter((g) => toAxis(g.k, sense) < 0)
           .flatMap((g) => Array.from({ length: g.multiplicity }, () => g.k)),
@@ -173,7 +177,7 @@ export function findCrossings(device: Device, sense: LevelSense, request: Crossi
       held -= c.multiplicity;
       crossings.splice(crossings.indexOf(c), 1);
     }
-    const late = climbCrossing(prepared, direction, sense, path, digits, width, check!.order);
+    const late = climbCrossing(prepared, direction, sense, path, digits, width, order);
     crossings.push(...late.filter((c) => c.level <= levelMax && inBand(device, c.k)));
   }
   crossings.sort((a, b) => a.level - b.level || a.k - b.k);
@@ -199,6 +203,9 @@ export function findCrossings(device: Device, sense: LevelSense, request: Crossi
 
 const inBand = ({ band }: Device, k: number, slack = 0): boolean =>
   k >= band.kMin * (1 - slack) && k <= band.kMax * (1 + slack);
+
+/** What the order of the search may be off in Im k, times the digits asked for. */
+const LEVEL_SLACK = 10;
 
 /** A sharp mode is so close to the axis that its tangent leads there. */
 function pathOfSharp(family: DeviceFamily, { group, step }: ResolvedGroup): ModePath {

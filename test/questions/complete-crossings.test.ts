@@ -1,9 +1,11 @@
 // Does the count at the largest level find crossings that a list lacks?
 
 import { describe, expect, test } from 'vitest';
-import { checkAtLevel, type LevelCheckRequest } from '../../src/questions/complete-crossings.ts';
-import { findCrossings } from '../../src/questions/crossings.ts';
+import { checkAtLevel, type LevelCheckRequest, type ListedCrossing } from '../../src/questions/complete-crossings.ts';
+import { type AxisMode, findCrossings } from '../../src/questions/crossings.ts';
 import { diskDevice } from '../validate/devices.ts';
+
+const listed = (crossings: readonly AxisMode[]): ListedCrossing[] => crossings.map((c) => ({ ...c, slack: 1e-3 }));
 
 describe.each(['gain', 'loss'] as const)('disk n = 2, Ez, 2.8 < k < 3.8, %s', (sense) => {
   const device = diskDevice(2, { polarization: 'Ez', band: [2.8, 3.8] });
@@ -15,7 +17,8 @@ describe.each(['gain', 'loss'] as const)('disk n = 2, Ez, 2.8 < k < 3.8, %s', (s
     levelMax,
     wedge: { kMin: 2.6, kMax: 4, low: sense === 'gain' ? slope : 1e-3, high: sense === 'gain' ? 1e-3 : slope },
     groupWidth: 4e-4,
-    listed: answer.crossings,
+    order: 5,
+    listed: listed(answer.crossings),
     beyond: [],
   };
 
@@ -28,7 +31,7 @@ describe.each(['gain', 'loss'] as const)('disk n = 2, Ez, 2.8 < k < 3.8, %s', (s
     answer.crossings.forEach((left, i) => {
       const { missed } = checkAtLevel(answer.prepared, {
         ...request,
-        listed: answer.crossings.filter((_, j) => j !== i),
+        listed: listed(answer.crossings.filter((_, j) => j !== i)),
       });
       expect(missed).toHaveLength(1);
       const [path] = missed;
@@ -42,7 +45,10 @@ describe.each(['gain', 'loss'] as const)('disk n = 2, Ez, 2.8 < k < 3.8, %s', (s
 
   test('one member of a pair is missed too', () => {
     const [first, ...rest] = answer.crossings;
-    const { missed } = checkAtLevel(answer.prepared, { ...request, listed: [{ ...first, multiplicity: 1 }, ...rest] });
+    const { missed } = checkAtLevel(answer.prepared, {
+      ...request,
+      listed: listed([{ ...first, multiplicity: 1 }, ...rest]),
+    });
     expect(missed.map((p) => p.multiplicity)).toEqual([1]);
   });
 });
