@@ -1,7 +1,8 @@
 // Does `modes` ever miss a mode, invent one, or call an incomplete list complete?
 //
-// npx tsx test/validate/complete.ts [--count 200] [--seed 1] [--from 0] [--csv FILE]
-// Random devices; the judges are the exact equation (disks, rings, clusters) and a count with doubled points on a finer mesh.
+// npx tsx test/validate/complete.ts [--count 200] [--seed 1] [--from 0] [--csv FILE] [--both]
+// Random devices; the judges are the exact equation (disks, rings, clusters) and a count with doubled points on a
+// finer mesh: of every polygon and every fourth other device, with --both of all.
 
 import { appendFileSync } from 'node:fs';
 import { judgeCase } from './judge-complete.ts';
@@ -25,7 +26,7 @@ for (let i = from; i < from + count; i++) {
   const c = randomCase(seed, i);
   let line: string;
   try {
-    const j = judgeCase(c);
+    const j = judgeCase(c, args.includes('--both') || Math.floor(i / 4) % 4 === 0);
     const [least, most] = j.exact ?? [j.found, j.found];
     const missed = Math.max(j.misses.length, least - j.found);
     const added = Math.max(j.extras.length, j.found - most);

@@ -30,16 +30,19 @@ const EDGE = 2e-3;
 /** The judge's triangles are smaller by this, one order higher than the answer's. */
 const FINER = 0.7;
 
-export function judgeCase(c: RandomCase): Judgement {
+/** `both`: the finer mesh judges too where an exact equation does. */
+export function judgeCase(c: RandomCase, both: boolean): Judgement {
   const started = process.cpuUsage();
   const answer = findModes(c.device, { digits: c.digits, qMin: c.qMin, assignment: c.assignment });
   const used = process.cpuUsage(started);
   const list = answer.modes.flatMap((m) => Array.from({ length: m.multiplicity }, () => m.k));
   const wedge = wholeWedge(c);
-  const fine = judgeOnFinerMesh(c, wedge, list);
+  const exact = exactCounts(c, wedge, list.length);
+  const agreed = exact !== null && exact[0] === list.length;
+  const fine = agreed && !both ? { misses: [], extras: [], settled: true } : judgeOnFinerMesh(c, wedge, list);
   return {
     found: list.length,
-    exact: exactCounts(c, wedge, list.length),
+    exact,
     misses: fine.misses,
     extras: fine.extras,
     said: answer.complete!,

@@ -79,10 +79,10 @@ export function randomCase(seed: number, i: number): RandomCase {
     bodies.push({ material: 0, radius: 0.8, shape: { polygon: { points } } });
   }
   const used = new Set(bodies.map((b) => b.material));
-  // optical size of all bodies together: 3 to 13 radians of n k r
+  // optical size of all bodies together: 3 to 10 radians of n k r
   const optical = Math.sqrt(bodies.reduce((sum, b) => sum + eps[b.material].re * b.radius ** 2, 0));
-  const middle = between(3, kind === 'polygon' ? 10 : 13) / optical;
-  const half = middle * between(0.08, 0.35);
+  const middle = between(3, kind === 'polygon' ? 8 : 10) / optical;
+  const half = middle * between(0.06, 0.28);
   const band = [middle - half, middle + half];
   const file = {
     wavewell: 1,
