@@ -1,6 +1,7 @@
 // The few block operations on tall complex matrices that the eigen solvers share.
 
 import type { ComplexArray } from '../numerics/complex.ts';
+import { makeTallMemory, type TallMemory } from '../numerics/tall-columns.ts';
 
 /** out[i + j·p] = Σ x_i y_j over the n rows (no conjugation): XᵀY of p and q columns. */
 export function transposeProduct(x: ComplexArray, p: number, y: ComplexArray, q: number, n: number): ComplexArray {
@@ -9,7 +10,26 @@ export function transposeProduct(x: ComplexArray, p: number, y: ComplexArray, q:
 
 /** The same with the left factor conjugated: XᴴY. */
 export function adjointProduct(x: ComplexArray, p: number, y: ComplexArray, q: number, n: number): ComplexArray {
-  return product(x, p, y, q, n, -1);
+  const compiled = commonMemory(x, y)?.adjointProduct(x.byteOffset / 8, p, y.byteOffset / 8, q, n);
+  return compiled ?? product(x, p, y, q, n, -1);
+}
+
+/** Memories in which tall matrices were laid. */
+const memories = new WeakMap<ArrayBufferLike, TallMemory>();
+
+/** Zero matrices of n rows and so many columns, in one memory where products of them are compiled. */
+export function tallMatrices(n: number, columns: readonly number[]): ComplexArray[] {
+  const total = columns.reduce((sum, c) => sum + 2 * n * c, 0);
+  const memory = makeTallMemory(total);
+  if (memory === undefined) return columns.map((c) => new Float64Array(2 * n * c));
+  memories.set(memory.numbers.buffer, memory);
+  let at = memory.base;
+  return columns.map((c) => memory.numbers.subarray(at, (at += 2 * n * c)));
+}
+
+/** The memory that holds both. */
+function commonMemory(x: ComplexArray, y: ComplexArray): TallMemory | undefined {
+  return x.buffer === y.buffer ? memories.get(x.buffer) : undefined;
 }
 
 function product(x: ComplexArray, p: number, y: ComplexArray, q: number, n: number, sign: 1 | -1): ComplexArray {
@@ -52,6 +72,11 @@ export function addProduct(
   n: number,
   factor = 1,
 ): ComplexArray {
+  const memory = commonMemory(x, out);
+  if (memory) {
+    const scaled = factor === 1 ? c : c.map((v) => factor * v);
+    if (memory.addProduct(out.byteOffset / 8, x.byteOffset / 8, p, scaled, q, n)) return out;
+  }
   // Four columns of X at a time, so that a column of out is read and written a fourth as often.
   const c4 = new Float64Array(8);
   for (let row = 0; row < n; row += ROWS) {

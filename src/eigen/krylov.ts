@@ -13,7 +13,7 @@ import {
 } from '../numerics/complex.ts';
 import { eigenGeneral } from '../numerics/eigenvalues.ts';
 import { randomStream } from '../numerics/random.ts';
-import { combine, normaliseColumns, orthonormalise } from './columns.ts';
+import { combine, normaliseColumns, orthonormalise, tallMatrices } from './columns.ts';
 import type { EigenProblem } from './problem.ts';
 
 export interface NearbyRequest {
@@ -47,12 +47,11 @@ export function modesNear(problem: EigenProblem, request: NearbyRequest): Nearby
   const n = problem.size;
   const inverse = problem.factorize(shift, level);
   const capacity = Math.min(largestDimension, n) + block;
-  const v = new Float64Array(2 * n * capacity);
+  const [v, w] = tallMatrices(n, [capacity, block]);
   const h = new Float64Array(2 * capacity * capacity);
   const random = randomStream(request.seed);
   for (let s = 0; s < 2 * n * block; s++) v[s] = random.normal();
   orthonormalise(v.subarray(0, 2 * n * block), block, v, 0, n);
-  const w = new Float64Array(2 * n * block);
   const minusHalf = divide(complex(-0.5), shift);
 
   let m = 0;

@@ -7,18 +7,19 @@ import asc from 'assemblyscript/asc';
 
 const here = dirname(fileURLToPath(import.meta.url));
 const into = process.argv[2] === undefined ? here : resolve(process.argv[2]);
-mkdirSync(into, { recursive: true });
 
 const common = ['--optimizeLevel', '3', '--shrinkLevel', '0', '--noAssert', '--runtime', 'stub'];
 const memory = ['--importMemory', '--memoryBase', '4096', '--enable', 'simd', '--enable', 'bulk-memory'];
 const builds = [
   ['front.ts', 'front.wasm', ['--initialMemory', '1', '--maximumMemory', '65536']],
+  ['columns.ts', '../../numerics/columns.wasm', ['--initialMemory', '1', '--maximumMemory', '65536']],
   ['dense.ts', 'dense.wasm', ['--initialMemory', '1', '--maximumMemory', '65536']],
   // prettier-ignore
   ['front-shared.ts', 'front-shared.wasm', ['--enable', 'threads', '--sharedMemory', '--initialMemory', '1', '--maximumMemory', '65536']],
 ];
 for (const [entry, name, more] of builds) {
   const source = join(here, 'wasm', entry);
+  mkdirSync(dirname(join(into, name)), { recursive: true });
   const { error, stderr } = await asc.main([source, '--outFile', join(into, name), ...common, ...memory, ...more]);
   if (error) {
     process.stderr.write(`${stderr.toString()}\n${error.message}\n`);
