@@ -4,7 +4,7 @@ import type { LayerPlan } from '../boundary/stretched-layer.ts';
 import { type Device, isWalled } from '../device/model.ts';
 import { judgeAll, provenWindow, type WindowProof } from '../eigen/proven-window.ts';
 import type { EigenGroup } from '../eigen/rayleigh.ts';
-import { type Tile, type Wedge, wedgeHolds, type WindowRequest } from '../eigen/window.ts';
+import { type modesInWindow, type Tile, type Wedge, wedgeHolds, type WindowRequest } from '../eigen/window.ts';
 import { argument, type Complex, modulus, subtract } from '../numerics/complex.ts';
 import { closeByChannels } from '../operator/channel-boundary.ts';
 import type { DeviceFamily } from '../operator/device-family.ts';
@@ -24,7 +24,11 @@ export interface Completeness {
 
 /** A search that counts, and what it has counted. */
 export interface CountedSearch {
-  search(family: DeviceFamily, request: WindowRequest): { readonly tiles: readonly Tile[]; readonly covered: boolean };
+  /** `find` replaces the first search, where that is done. */
+  search(
+    family: DeviceFamily,
+    request: WindowRequest & { readonly find?: typeof modesInWindow },
+  ): { readonly tiles: readonly Tile[]; readonly covered: boolean };
   /** Every mode seen in the window or near it, one number a member. */
   known(): readonly Complex[];
   /** Judges the final list of a window by the factorizations of the search. */

@@ -18,6 +18,10 @@ import { type LayerPlan, returnedAt } from '../boundary/stretched-layer.ts';
 import { type Complex, modulus, subtract } from '../numerics/complex.ts';
 import type { DeviceFamily } from '../operator/device-family.ts';
 import { checkLayer, LAYER_MODE_SENSITIVITY, type LayerCheck } from './layer-check.ts';
+import type { Mesh, SizeWish } from '../mesh/mesh.ts';
+import { degreeEnergies, surplusEnergies } from './degree-energies.ts';
+import { bytesFor } from './memory.ts';
+import { errorRatios, largestExponent, type ModePicture, planRefinement, type Strategy } from './refinement-plan.ts';
 import { HIGHEST_ORDER } from './resolution.ts';
 
 /** Where the error of a number comes from, absolute, 1/length unit. */
@@ -33,27 +37,49 @@ export interface FoundMode {
   readonly layer: LayerCheck;
 }
 
-export interface ModeSearch {
+/** A mesh of the device, ready for any distribution of orders, and how to get a finer one. */
+export interface Ground<G> {
+  readonly mesh: Mesh;
+  /** A(k, level) with triangle t at order orders[t] + raise. The same array gives the same matrices again. */
+  family(orders: Int32Array, raise: 0 | 1): DeviceFamily;
+  /** The device meshed anew, with smaller triangles where they are wished for and where they were before. */
+  remeshed(wishes: readonly SizeWish[]): G;
+  /** The orders of another mesh, place by place. */
+  ordersFrom(other: Mesh, orders: Int32Array): Int32Array;
+}
+
+/** Why a search ended before its digits were reached. */
+export type Stop = 'order' | 'memory' | 'time';
+
+export interface ModeSearch<G> {
   readonly modes: readonly FoundMode[];
   /** What was seen in the window and not taken, with the reason. */
   readonly dropped: readonly { readonly k: Complex; readonly reason: string }[];
   /** False when some part of the window could not be searched to the end. */
   readonly covered: boolean;
-  /** Order that the modes are given at; their errors come from one order more. */
-  readonly order: number;
-  /** True when every error is below the digits asked for. */
+  /** Mesh and orders that the modes are given on; their errors come from one order more everywhere. */
+  readonly ground: G;
+  readonly orders: Int32Array;
+  /** True when every error is below its goal. */
   readonly reached: boolean;
+  /** What kept it from that, null when reached. */
+  readonly stopped: Stop | null;
 }
 
 export interface ModeSearchRequest {
   readonly wedge: Wedge;
   readonly level: number;
   readonly digits: number;
-  readonly startOrder: number;
   readonly layer: LayerPlan;
   readonly expected: (a: number, b: number) => number;
-  /** How the window is searched; `modesInWindow` if absent. */
-  readonly search?: (problem: DeviceFamily, request: WindowRequest) => WindowAnswer;
+  /** Counts what a search has found, and searches again where the count finds more; for the last mesh. */
+  readonly prove?: (problem: DeviceFamily, request: WindowRequest, found: WindowAnswer) => WindowAnswer;
+  readonly strategy?: Strategy;
+  /** Absolute error allowed for a mode; 10^−digits of |k| if absent. */
+  readonly goal?: (group: EigenGroup) => number;
+  /** Takes what the tiles hold beyond the wedge, too. */
+  readonly neighbours?: boolean;
+  readonly limits?: Limits;
   readonly progress?: (stage: string, done: number) => void;
 }
 
@@ -76,75 +102,160 @@ export const totalError = (error: ErrorParts): number => error.discretization + 
 export const groupWidth = (digits: number, k: number): number => Math.min(10 * 10 ** -digits, 1e-4) * k;
 
 /**
- * Searches at the starting order, then climbs: all vectors of a tile are embedded in the next order and improved
- * there by inverse iteration on its residual as one space; the difference is the error of the lower order. Stops when
- * every mode has the digits, or at the highest order.
+ * Searches at a low order, then refines triangle by triangle: the decay of a mode's hierarchical parts says which order
+ * each triangle needs and where smaller ones are better (refinement-plan.ts). All vectors of a tile are carried to the
+ * new orders and improved there by inverse iteration on its residual as one space, then to one order more everywhere:
+ * the step, with the tail that the decay foretells, is the error. A new mesh is searched anew.
  */
-export function climbModes(family: (order: number) => DeviceFamily, request: ModeSearchRequest): ModeSearch {
-  const { wedge, level, digits, layer, progress } = request;
+export function climbModes<G extends Ground<G>>(start: G, request: ModeSearchRequest): ModeSearch<G> {
+  const { wedge, level, digits, progress, limits = {} } = request;
+  const strategy = request.strategy ?? DEFAULT_STRATEGY;
+  const goalOf = request.goal ?? ((group: EigenGroup): number => 10 ** -digits * modulus(group.k));
   const width = groupWidth(digits, wedge.kMax);
-  let order = request.startOrder;
-  let here = family(order);
-  const search = family(Math.min(order, SEARCH_ORDER));
-  const found = (request.search ?? modesInWindow)(search, {
-    wedge: widened(wedge),
-    level,
-    expected: request.expected,
-    perTile: MODES_PER_TILE,
-    tolerance: KRYLOV_TOLERANCE,
-    seed: SEED,
-    progress: (done) => progress?.('searching', done),
-  });
-  let tiles: readonly Tile[] = found.tiles;
   const groupsAt = (at: DeviceFamily, list: readonly Tile[]): EigenGroup[][] =>
     list.map((t) => rayleighGroups(at, t.shift, level, t.vectors, t.ks.length, width));
   const inWindow = (list: readonly Tile[], of: readonly EigenGroup[][]): OwnedGroup[] =>
-    ownGroups(list, of, width).filter((o) => wedgeHolds(wedge, o.group.k));
-  let groups = groupsAt(search, tiles);
-  let covered = found.covered;
-  if (search !== here) {
-    const seen = inWindow(tiles, groups);
-    tiles = liftAll(search, here, tiles, request, width);
-    groups = groupsAt(here, tiles);
-    covered &&= seen.every((o) => stillThere(o.group, groups[o.tile]));
-  }
-  for (;;) {
-    const up = family(order + 1);
-    const higher = liftAll(here, up, tiles, request, width);
-    const groupsUp = groupsAt(up, higher);
-    const owned = inWindow(tiles, groups);
-    covered &&= owned.every((o) => stillThere(o.group, groupsUp[o.tile]));
-    const goal = 10 ** -digits;
-    const rows = owned.flatMap((o) => rowsOf(here, up, level, goal, o.group, groupsUp[o.tile]));
-    const reached = rows.every((row) => row.error <= goal * modulus(row.group.k));
-    if (reached || order + 1 >= HIGHEST_ORDER) {
-      const modes: FoundMode[] = [];
-      const dropped: { k: Complex; reason: string }[] = [];
-      for (const { group: found, error } of rows) {
-        const group = here.terms > 2 ? settleGroup(here, level, found) : found;
-        const { k, vectors, multiplicity } = group;
-        const check = checkLayer(here, layer, k, level, vectors, multiplicity);
-        if (check.sensitivity > LAYER_MODE_SENSITIVITY) {
-          dropped.push({
-            k,
-            reason: `moves with the layer's angle (|dk/dθ|/|k| = ${check.sensitivity.toExponential(1)})`,
-          });
-          continue;
-        }
-        modes.push({ group, layer: check, error: errorParts(group, error, layer) });
-      }
-      return { modes: joinUnresolved(modes), dropped, covered, order, reached };
+    ownGroups(list, of, width).filter((o) => request.neighbours === true || wedgeHolds(wedge, o.group.k));
+  const pictures = (family: DeviceFamily, seen: readonly OwnedGroup[]): ModePicture[] =>
+    seen
+      .filter(({ group }) => goalOf(group) < Infinity)
+      .map(({ group }) => ({
+        parts: degreeEnergies(family, group.k, level, group.vectors, group.multiplicity),
+        goal: goalOf(group),
+        outside: 10 ** -digits,
+        exponent: largestExponent(family.weights(group.k, level, 'value')),
+      }));
+
+  let ground = start;
+  let orders: Int32Array = new Int32Array(ground.mesh.regions.length).fill(SEARCH_ORDER);
+  for (let meshes = 1; ; meshes++) {
+    const mayRemesh = meshes < MOST_MESHES;
+    // 1 search at a low order
+    const searched = orders.map((p) => Math.min(p + 1, SEARCH_ORDER));
+    let from = ground.family(searched, 0);
+    const window: WindowRequest = {
+      wedge: widened(wedge),
+      level,
+      expected: request.expected,
+      perTile: MODES_PER_TILE,
+      tolerance: KRYLOV_TOLERANCE,
+      seed: SEED,
+      progress: (done) => progress?.('searching', done),
+    };
+    let found = modesInWindow(from, window);
+    let tiles: readonly Tile[] = found.tiles;
+    let seen = inWindow(tiles, groupsAt(from, tiles));
+    let plan = planRefinement(ground.mesh, searched, pictures(from, seen), strategy);
+    if (plan.wishes.length > 0 && mayRemesh && !stopBefore(limits, ground, plan.orders)) {
+      progress?.('meshing', 0);
+      const finer = ground.remeshed(plan.wishes);
+      orders = finer.ordersFrom(ground.mesh, plan.orders);
+      ground = finer;
+      continue;
     }
-    order++;
-    here = up;
-    tiles = higher;
-    groups = groupsUp;
+
+    // 2 what the count finds besides
+    if (request.prove) {
+      found = request.prove(from, window, found);
+      tiles = found.tiles;
+      seen = inWindow(tiles, groupsAt(from, tiles));
+      plan = planRefinement(ground.mesh, searched, pictures(from, seen), strategy);
+    }
+    let { covered } = found;
+
+    // 3 orders raised (and lowered) until the errors are small enough
+    orders = plan.orders;
+    for (;;) {
+      const here = ground.family(orders, 0);
+      const up = ground.family(orders, 1);
+      const raised = orders.map((p) => p + 1);
+      tiles = liftAll(from, here, tiles, request, width);
+      const groups = groupsAt(here, tiles);
+      covered &&= seen.every((o) => stillThere(o.group, groups[o.tile]));
+      const higher = liftAll(here, up, tiles, request, width);
+      const groupsUp = groupsAt(up, higher);
+      const owned = inWindow(tiles, groups);
+      covered &&= owned.every((o) => stillThere(o.group, groupsUp[o.tile]));
+      const goal = 10 ** -digits;
+      const rows = owned.flatMap((o) => rowsOf({ here, up, raised, level }, goal, o.group, groupsUp[o.tile]));
+      const reached = rows.every((row) => row.error <= goalOf(row.group));
+      let stopped: Stop | null = null;
+      if (!reached) {
+        const seenUp = inWindow(higher, groupsUp);
+        plan = planRefinement(ground.mesh, raised, pictures(up, seenUp), strategy);
+        const next = plan.orders.some((p, t) => p > orders[t]) ? plan.orders : raised;
+        const top = next.reduce((a, b) => Math.max(a, b), 0);
+        stopped = stopBefore(limits, ground, next) ?? (top >= HIGHEST_ORDER ? 'order' : null);
+        seen = owned;
+        from = up;
+        tiles = higher;
+        if (!stopped && plan.wishes.length > 0 && mayRemesh) {
+          progress?.('meshing', 0);
+          const finer = ground.remeshed(plan.wishes);
+          orders = finer.ordersFrom(ground.mesh, plan.orders);
+          ground = finer;
+          break;
+        }
+        if (!stopped) orders = next;
+      }
+      if (reached || stopped) {
+        return { ...takeRows(here, rows, request), covered, ground, orders, reached, stopped };
+      }
+    }
   }
+}
+
+/** Modes of the device, with what was seen and belongs to the layer. */
+function takeRows(
+  here: DeviceFamily,
+  rows: readonly LadderRow[],
+  { layer, level }: ModeSearchRequest,
+): Pick<ModeSearch<never>, 'modes' | 'dropped'> {
+  const modes: FoundMode[] = [];
+  const dropped: { k: Complex; reason: string }[] = [];
+  for (const { group: found, error } of rows) {
+    const group = here.terms > 2 ? settleGroup(here, level, found) : found;
+    const { k, vectors, multiplicity } = group;
+    const check = checkLayer(here, layer, k, level, vectors, multiplicity);
+    if (check.sensitivity > LAYER_MODE_SENSITIVITY) {
+      dropped.push({
+        k,
+        reason: `moves with the layer's angle (|dk/dθ|/|k| = ${check.sensitivity.toExponential(1)})`,
+      });
+      continue;
+    }
+    modes.push({ group, layer: check, error: errorParts(group, error, layer) });
+  }
+  return { modes: joinUnresolved(modes), dropped };
+}
+
+/** What may be spent. */
+export interface Limits {
+  /** Bytes for element matrices and one factorization. */
+  readonly bytes?: number;
+  /** True once no new step may begin. */
+  readonly outOfTime?: () => boolean;
+}
+
+/** Order leads where fields are smooth, size at corners. */
+export const DEFAULT_STRATEGY: Strategy = { highestOrder: HIGHEST_ORDER - 1, cornerOrder: 4 };
+
+/** Meshes that may be made for one search. */
+const MOST_MESHES = 8;
+
+/** Why a step to these orders (and one more) must not be made; null when it may. */
+function stopBefore<G>(limits: Limits, ground: Ground<G>, orders: Int32Array): Stop | null {
+  if (limits.outOfTime?.()) return 'time';
+  const need = bytesFor(
+    ground.mesh,
+    orders.map((p) => p + 1),
+  );
+  return need > (limits.bytes ?? Infinity) ? 'memory' : null;
 }
 
 /**
  * Order of the search itself: low, since Krylov works on all unknowns, high enough that every mode shows and none is
- * confused; the tile's space is then improved as a whole in the order wanted.
+ * confused; the tile's space is then improved as a whole in the orders wanted.
  */
 const SEARCH_ORDER = 5;
 
@@ -204,6 +315,15 @@ const LARGEST_MOVE = 0.02;
 const stillThere = (group: EigenGroup, higher: readonly EigenGroup[]): boolean =>
   discretization(group, higher) <= LARGEST_MOVE * modulus(group.k);
 
+/** Two spaces, the second one order higher everywhere. */
+interface Rungs {
+  readonly here: DeviceFamily;
+  readonly up: DeviceFamily;
+  /** Orders of the second. */
+  readonly raised: Int32Array;
+  readonly level: number;
+}
+
 /** A row of the answer with what the next order says of it. */
 interface LadderRow {
   readonly group: EigenGroup;
@@ -214,15 +334,9 @@ interface LadderRow {
  * One row a group; or one a member, where the members stay apart by more than the goal whatever the order: then they are
  * modes of their own that the group width has caught, such as the pair of a slightly dented disk.
  */
-function rowsOf(
-  here: DeviceFamily,
-  up: DeviceFamily,
-  level: number,
-  goal: number,
-  group: EigenGroup,
-  higher: readonly EigenGroup[],
-): LadderRow[] {
-  const whole = { group, error: discretization(group, higher) };
+function rowsOf(rungs: Rungs, goal: number, group: EigenGroup, higher: readonly EigenGroup[]): LadderRow[] {
+  const { here, up, level } = rungs;
+  const whole = { group, error: discretization(group, higher) * tailFactor(rungs, group, higher) };
   if (group.multiplicity === 1 || group.spread <= goal * modulus(group.k)) return [whole];
   const same = sameMembers(group, higher);
   const vectors = new Float64Array(same.reduce((sum, g) => sum + g.vectors.length, 0));
@@ -238,7 +352,38 @@ function rowsOf(
   if (group.spread < 3 * modulus(subtract(mean.k, group.k))) return [whole];
   const parts = rayleighGroups(here, group.k, level, group.vectors, count, group.spread / 2);
   const partsUp = rayleighGroups(up, group.k, level, vectors, count, group.spread / 2, false);
-  return parts.map((part) => ({ group: part, error: discretization(part, partsUp) }));
+  return parts.map((part) => ({
+    group: part,
+    error: discretization(part, partsUp) * tailFactor(rungs, part, partsUp),
+  }));
+}
+
+/**
+ * What the step to the next order must be multiplied by to hold the orders beyond as well: Σ η_t/(1 − q_t) / Σ η_t with
+ * the surplus η_t of each triangle and the ratio q_t by which its parts decay there. 1.05 to 1.3 where fields are smooth,
+ * more at corners.
+ */
+function tailFactor({ here, up, raised, level }: Rungs, group: EigenGroup, higher: readonly EigenGroup[]): number {
+  const same = sameMembers(group, higher);
+  if (same.reduce((sum, g) => sum + g.multiplicity, 0) !== group.multiplicity) return 1;
+  const vectors = new Float64Array(same.reduce((sum, g) => sum + g.vectors.length, 0));
+  let at = 0;
+  for (const g of same) {
+    vectors.set(g.vectors, at);
+    at += g.vectors.length;
+  }
+  const { k, multiplicity } = group;
+  const surplus = surplusEnergies(here, up, k, level, group.vectors, vectors, multiplicity);
+  const parts = degreeEnergies(up, k, level, vectors, multiplicity);
+  const exponent = largestExponent(up.weights(k, level, 'value'));
+  const ratios = errorRatios(up.operator.space.mesh, raised, parts, exponent);
+  let step = 0;
+  let all = 0;
+  for (let t = 0; t < surplus.length; t++) {
+    step += surplus[t];
+    all += surplus[t] / (1 - ratios[t]);
+  }
+  return step > 0 ? all / step : 1;
 }
 
 /** The groups one order higher that hold as many members, nearest first. */

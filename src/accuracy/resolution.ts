@@ -37,3 +37,6 @@ export function resolutionFor(digits: number): Resolution {
     layerTolerance: 10 ** -(digits + 2.3),
   };
 }
+
+/** What refinement begins with: corners are graded as the modes ask for, not by rule. */
+export const startResolution = (digits: number): Resolution => ({ ...resolutionFor(digits), cornerGrading: 0.25 });

@@ -52,13 +52,21 @@ export function assembleElements(space: Space, layer: PointCoefficients): Elemen
   const complex = new Uint8Array(triangles);
   for (let t = 0; t < triangles; t++) complex[t] = mesh.regions[t] === LAYER ? 1 : 0;
   const reference = referenceMatrices(space.order);
-  const rule = triangleRule(2 * space.order + EXTRA_DEGREE);
-  const basis = transposeBasis(space.order, rule.points);
-  const table = tabulateMap(rule.points, mesh.curveOrder);
-  const widest = largestElement(space);
-  const store = makeStore(space, complex, widest, workNumbers(basis.points, widest));
-  const work = makeWork(basis.points, widest, store?.kernels);
+  const degrees = degreesOf(space);
+  const tables = new Map<number, Tables>();
+  let room = 0;
+  for (const degree of [...new Set(degrees)].sort((a, b) => a - b)) {
+    const made = makeTables(degree, mesh.curveOrder, room);
+    tables.set(degree, made);
+    room += workNumbers(made.basis.points, functionCount(degree));
+  }
+  const store = makeStore(space, complex, largestElement(space), room);
+  const works = new Map<number, Work>();
+  for (const [degree, { basis, at }] of tables)
+    works.set(degree, makeWork(basis.points, functionCount(degree), store?.kernels, at));
   for (let t = 0; t < triangles; t++) {
+    const { rule, basis, table } = tables.get(degrees[t])!;
+    const work = works.get(degrees[t])!;
     const functions = space.functions.subarray(starts[t], starts[t + 1]);
     const signs = space.signs.subarray(starts[t], starts[t + 1]);
     const nd = functions.length;
@@ -75,6 +83,32 @@ export function assembleElements(space: Space, layer: PointCoefficients): Elemen
     applySigns(mass[t], signs, width);
   }
   return { stiffness, mass, complex, ...(store ? { store } : {}) };
+}
+
+/** Highest degree among the functions of each triangle: that of its own order or of a richer neighbour's edge. */
+function degreesOf({ starts, functions }: Space): Int32Array {
+  const out = new Int32Array(starts.length - 1);
+  for (let t = 0; t < out.length; t++) {
+    let last = 0;
+    for (let i = starts[t]; i < starts[t + 1]; i++) last = Math.max(last, functions[i]);
+    let degree = 1;
+    while (functionCount(degree) <= last) degree++;
+    out[t] = degree;
+  }
+  return out;
+}
+
+/** Rule, tabulated functions and map for triangles of one degree; their work begins at `at` in the common room. */
+interface Tables {
+  readonly rule: ReturnType<typeof triangleRule>;
+  readonly basis: Basis;
+  readonly table: ReturnType<typeof tabulateMap>;
+  readonly at: number;
+}
+
+function makeTables(degree: number, curveOrder: number, at: number): Tables {
+  const rule = triangleRule(2 * degree + EXTRA_DEGREE);
+  return { rule, basis: transposeBasis(degree, rule.points), table: tabulateMap(rule.points, curveOrder), at };
 }
 
 /** Plans one memory for work, tables, matrices and columns; undefined where there are no compiled kernels. */
@@ -138,11 +172,12 @@ interface Work {
   gram(left: Float64Array, right: Float64Array, rows: number, nd: number): Float64Array;
 }
 
-const workNumbers = (nq: number, nd: number): number => (6 * nq + nd) * nd + 8;
+/** Even, so that each begins on 16 bytes. */
+const workNumbers = (nq: number, nd: number): number => 2 * Math.ceil(((6 * nq + nd) * nd + 8) / 2);
 
-function makeWork(nq: number, nd: number, kernels: DenseKernels | undefined): Work {
+function makeWork(nq: number, nd: number, kernels: DenseKernels | undefined, at: number): Work {
   const all = kernels
-    ? kernels.numbers.subarray(kernels.base, kernels.base + workNumbers(nq, nd))
+    ? kernels.numbers.subarray(kernels.base + at, kernels.base + at + workNumbers(nq, nd))
     : new Float64Array(workNumbers(nq, nd));
   let free = 0;
   const take = (length: number): Float64Array => all.subarray(free, (free += length));

@@ -26,7 +26,7 @@ export interface Space {
 export function buildSpace(mesh: Mesh, orders: number | Int32Array): Space {
   const triangles = mesh.triangles.length / 3;
   const order = typeof orders === 'number' ? orders : orders.reduce((a, b) => Math.max(a, b), 1);
-  if (!(order >= 1 && order <= 20)) throw new RangeError(`the order came as ${order}; expected 1 to 20`);
+  if (!(order >= 1 && order <= MOST_ORDER)) throw new RangeError(`the order came as ${order}; expected 1 to 20`);
   const orderOf = (t: number): number => (typeof orders === 'number' ? orders : orders[t]);
 
   // edge orders and fixed boundary
@@ -90,6 +90,13 @@ export function buildSpace(mesh: Mesh, orders: number | Int32Array): Space {
   }
   return { mesh, order, unknowns, starts, list, functions, signs };
 }
+
+/** Highest order a triangle can have. */
+export const MOST_ORDER = 20;
+
+/** Orders of all triangles at order + shifts[t], at least 1 and at most 20; the order itself where all are alike. */
+export const ordersAt = (order: number, shifts: Int32Array | null): number | Int32Array =>
+  shifts ? shifts.map((s) => Math.min(Math.max(order + s, 1), MOST_ORDER)) : order;
 
 /** Largest number of shape functions on any triangle of the space. */
 export function largestElement(space: Space): number {

@@ -40,6 +40,7 @@ export class Draft {
   private readonly arrangement: Arrangement;
   private readonly names: readonly string[];
   private readonly base: (label: number) => number;
+  private readonly field: (x: number, y: number) => number;
   private stretch = 1;
   private readonly floor: number;
   private readonly limit: number;
@@ -49,6 +50,7 @@ export class Draft {
     names: readonly string[],
     discretisation: Discretisation,
     base: (label: number) => number,
+    field: (x: number, y: number) => number,
     center: Point,
     reach: number,
     limit: number,
@@ -56,6 +58,7 @@ export class Draft {
     this.arrangement = arrangement;
     this.names = names;
     this.base = base;
+    this.field = field;
     this.floor = 1e-8 * reach;
     this.limit = limit;
     const t = new Triangulation(center[0], center[1], 4 * reach);
@@ -290,7 +293,7 @@ export class Draft {
       return size[v] + GROWTH * Math.max(0, d - 0.6 * size[v]);
     };
     const mean = (size[a] + size[b] + size[c]) / 3;
-    return Math.min(this.base(region[i]), Math.max(mean, Math.min(grown(a), grown(b), grown(c))));
+    return Math.min(this.base(region[i]), this.field(mx, my), Math.max(mean, Math.min(grown(a), grown(b), grown(c))));
   }
 
   /** Whether two sides of the triangle are fixed segments: the tip of a sharp corner. */
@@ -312,7 +315,7 @@ export class Draft {
     // Segments on the border of the point's cavity.
     const seen = this.encroachedBy(at, target);
     if (seen >= 0) return this.trySplit(seen, slim, label);
-    let size = this.base(label);
+    let size = Math.min(this.base(label), this.field(target[0], target[1]));
     for (let e = 3 * at; e < 3 * at + 3; e++)
       size = Math.min(
         size,

@@ -4,6 +4,7 @@ import Flatbush from 'flatbush';
 import type { Arrangement, ArrangementEdge } from '../geometry/arrangement.ts';
 import { pointAt } from '../geometry/curves.ts';
 import { boxOf, curvatureAt, lengthOf, velocityAt } from '../geometry/pieces.ts';
+import type { SizeWish } from './mesh.ts';
 
 /** How fast the wanted size may grow with distance. */
 export const GROWTH = 0.5;
@@ -32,6 +33,7 @@ export interface Sizes {
   readonly mediumOf?: (label: number) => string;
   /** Size wanted at a wall corner as a share of the local one, from the lowest exponent of the field there. */
   readonly cornerShare?: (exponent: number) => number;
+  readonly wishes: readonly SizeWish[];
 }
 
 export interface Discretisation {
@@ -53,7 +55,7 @@ export function discretise(arrangement: Arrangement, sizes: Sizes): Discretisati
     y.push(vertices[2 * v + 1]);
     size.push(Infinity);
   }
-  const near = nearCorners(cornersOf(arrangement, sizes));
+  const near = sizeField([...cornersOf(arrangement, sizes), ...sizes.wishes]);
   const wanted = (edge: ArrangementEdge, px: number, py: number): number =>
     Math.min(sizes.ofLabel(edge.left), sizes.ofLabel(edge.right), near(px, py));
   let segments: Segment[] = [];
@@ -175,13 +177,16 @@ function returnOf(edge: ArrangementEdge, back: boolean, x: number, y: number): n
   return least;
 }
 
-/** Smallest of (corner size + growth × distance) at a point; of corners of one size only the nearest matters. */
-function nearCorners(corners: readonly { x: number; y: number; size: number }[]): (x: number, y: number) => number {
-  const bySize = new Map<number, { x: number; y: number }[]>();
-  for (const corner of corners) {
-    const list = bySize.get(corner.size);
-    if (list) list.push(corner);
-    else bySize.set(corner.size, [corner]);
+/**
+ * Smallest of (size + growth × distance) over the wishes, at a point; of wishes of one size only the nearest matters.
+ * Infinity without any.
+ */
+export function sizeField(wishes: readonly SizeWish[]): (x: number, y: number) => number {
+  const bySize = new Map<number, SizeWish[]>();
+  for (const wish of wishes) {
+    const list = bySize.get(wish.size);
+    if (list) list.push(wish);
+    else bySize.set(wish.size, [wish]);
   }
   const groups = [...bySize].map(([size, list]) => {
     const index = new Flatbush(list.length);
@@ -200,7 +205,7 @@ function nearCorners(corners: readonly { x: number; y: number; size: number }[])
 }
 
 /** True corners: a tangent jump of more than 5°, or where three or more edges meet. */
-function cornersOf({ vertices, edges }: Arrangement, sizes: Sizes): { x: number; y: number; size: number }[] {
+function cornersOf({ vertices, edges }: Arrangement, sizes: Sizes): SizeWish[] {
   if (sizes.cornerGrading >= 1) return [];
   const count = vertices.length / 2;
   const outward: [number, number][][] = Array.from({ length: count }, () => []);
@@ -214,7 +219,7 @@ function cornersOf({ vertices, edges }: Arrangement, sizes: Sizes): { x: number;
     local[edge.from] = Math.min(local[edge.from], h);
     local[edge.to] = Math.min(local[edge.to], h);
   }
-  const corners: { x: number; y: number; size: number }[] = [];
+  const corners: SizeWish[] = [];
   const walled = wallVertices({ edges }, sizes);
   for (let v = 0; v < count; v++) {
     const spokes = outward[v];

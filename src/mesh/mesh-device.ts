@@ -8,7 +8,7 @@ import { pointAt } from '../geometry/curves.ts';
 import { GeometryError } from '../geometry/geometry-error.ts';
 import { cutAlong } from './cut-along.ts';
 import { CURVE_ORDER, Draft, OUTSIDE } from './delaunay-refinement.ts';
-import { discretise } from './discretisation.ts';
+import { discretise, sizeField } from './discretisation.ts';
 import type { EdgeCause, Mesh, MeshPlan, WallPlan } from './mesh.ts';
 import { BACKGROUND, LAYER } from './mesh.ts';
 
@@ -53,12 +53,13 @@ export function meshDeviceWithNotes(bodies: readonly Body[], plan: MeshPlan): Me
         : label === 0
           ? plan.layerSize
           : Infinity;
-  const { cornerGrading, largestArc } = plan;
+  const { cornerGrading, largestArc, wishes = [] } = plan;
   const { walls } = plan;
   const discretisation = discretise(arrangement, {
     ofLabel: base,
     cornerGrading,
     largestArc,
+    wishes,
     ...(walls
       ? {
           endOf: (i: number) => {
@@ -71,7 +72,8 @@ export function meshDeviceWithNotes(bodies: readonly Body[], plan: MeshPlan): Me
         }
       : {}),
   });
-  const draft = new Draft(arrangement, names, discretisation, base, center, endRadius, MOST_VERTICES);
+  const field = sizeField(wishes);
+  const draft = new Draft(arrangement, names, discretisation, base, field, center, endRadius, MOST_VERTICES);
   for (const stretch of [1.1]) {
     draft.refine(24, stretch);
     draft.smooth(4);

@@ -95,4 +95,13 @@ export interface MeshPlan {
   /** Largest angle (radians) an edge may span on its curve. */
   readonly largestArc: number;
   readonly walls?: WallPlan;
+  /** Places where smaller triangles are wanted than the sizes above say; the size grows with distance from them. */
+  readonly wishes?: readonly SizeWish[];
+}
+
+/** A triangle side wanted at a point, length units. */
+export interface SizeWish {
+  readonly x: number;
+  readonly y: number;
+  readonly size: number;
 }

@@ -1,6 +1,6 @@
 // Which loss, frequency and input wave make a device absorb everything, and is it so?
 
-import { HIGHEST_ORDER, resolutionFor } from '../accuracy/resolution.ts';
+import { HIGHEST_ORDER } from '../accuracy/resolution.ts';
 import type { Device } from '../device/model.ts';
 import { scaleColumn, transposeProduct } from '../eigen/columns.ts';
 import type { Complex, ComplexArray } from '../numerics/complex.ts';
@@ -15,7 +15,7 @@ import {
 } from '../scattering/contrast.ts';
 import type { KnobCrossing } from './knob-crossing.ts';
 import { type AxisMode, type CrossingsAnswer, type CrossingsRequest, findCrossings } from './crossings.ts';
-import { familyOf, type Prepared, prepare, spaceOf } from './prepare.ts';
+import { familyOf, ownMesh, type Prepared, spaceOf } from './prepare.ts';
 
 /** Powers of one driven solve, as shares of the incoming power. */
 export interface PowerBalance {
@@ -65,8 +65,7 @@ const OWN_MESH_REFINEMENT = 0.83;
  */
 export function findAbsorption(device: Device, request: CrossingsRequest = {}): AbsorbAnswer {
   const answer = findCrossings(device, 'loss', request);
-  const resolution = resolutionFor(answer.digits);
-  const own = prepare(device, answer.prepared.scope, resolution, OWN_MESH_REFINEMENT, highestDriven(answer.crossings));
+  const own = ownMesh(answer.prepared, device, OWN_MESH_REFINEMENT, highestDriven(answer.crossings));
   const crossings = answer.crossings.map((mode, i) => {
     request.progress?.('forward checks', i / answer.crossings.length);
     return prove(answer.prepared, own, mode);
@@ -77,7 +76,7 @@ export function findAbsorption(device: Device, request: CrossingsRequest = {}): 
 /** Drive and forward checks of a zero that a knob has brought to the axis: no loss beyond the file's. */
 export function proveKnobCrossing(crossing: KnobCrossing): AbsorbingMode {
   const { device, answer, mode } = crossing;
-  const { prepared, order, digits } = answer;
+  const { prepared, order } = answer;
   const space = spaceOf(prepared, order);
   const M = multipoleOrder(device, prepared.bodyRadius, crossing.k);
   const multipoles = multipoleJumps(
@@ -101,7 +100,7 @@ export function proveKnobCrossing(crossing: KnobCrossing): AbsorbingMode {
     path: crossing.path,
     reached: crossing.reached,
   };
-  const own = prepare(device, prepared.scope, resolutionFor(digits), OWN_MESH_REFINEMENT, highestDriven([axis]));
+  const own = ownMesh(prepared, device, OWN_MESH_REFINEMENT, highestDriven([axis]));
   return prove(prepared, own, axis);
 }
 

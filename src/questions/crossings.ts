@@ -3,7 +3,7 @@
 import { countedSearch, isCountable } from '../accuracy/completeness.ts';
 import { layerShift, returnedToMode } from '../accuracy/layer-return.ts';
 import { groupWidth } from '../accuracy/mode-ladder.ts';
-import { DEFAULT_DIGITS, HIGHEST_ORDER, resolutionFor } from '../accuracy/resolution.ts';
+import { DEFAULT_DIGITS, HIGHEST_ORDER, startResolution } from '../accuracy/resolution.ts';
 import type { Device } from '../device/model.ts';
 import { embed } from '../elements/space.ts';
 import { type Crossing, findCrossing, ROUNDING } from '../eigen/crossing.ts';
@@ -15,6 +15,7 @@ import type { DeviceFamily, LevelSense } from '../operator/device-family.ts';
 import { multipoleJumps, multipoleOrder, type Multipoles } from '../scattering/contrast.ts';
 import { angleOfSpaces } from '../scattering/drive-space.ts';
 import { checkAtLevel, COUNT_ORDER, type CrossingsComplete } from './complete-crossings.ts';
+import { fitToModes } from './fit.ts';
 import { modeLabel } from './label.ts';
 import { followAll } from './mode-clusters.ts';
 import { expectedModes } from './mode-count.ts';
@@ -84,7 +85,7 @@ export function findCrossings(device: Device, sense: LevelSense, request: Crossi
   if (active.length === 0) throw new RangeError('no body is active; expected a pump section that names at least one');
   const levelMax = request.levelMax ?? defaultLevelMax(device);
   if (!(levelMax > 0)) throw new RangeError(`the largest level came as ${levelMax}; expected a positive number`);
-  const resolution = resolutionFor(digits);
+  const resolution = startResolution(digits);
   const { kMin, kMax } = device.band;
   const reach = Math.max(...active.map((b) => (levelMax * b.pumpWeight) / (2 * modulus(b.permittivity))));
   const slope = Math.min(1, 1.3 * reach + 0.01);
@@ -93,8 +94,15 @@ export function findCrossings(device: Device, sense: LevelSense, request: Crossi
   const direction = sense === 'gain' ? 'outgoing' : 'incoming';
   const wedge = wedgeFor(device, assignment, kMin * (1 - margin), kMax * (1 + margin), slope, 10 ** -digits);
   request.progress?.('meshing', 0);
-  const prepared = prepare(device, { kMin: wedge.kMin, kMax: wedge.kMax, slope }, resolution, 1, sharpOrders);
-  const order = resolution.order;
+  const fit = fitToModes(prepare(device, { kMin: wedge.kMin, kMax: wedge.kMax, slope }, resolution, 1, sharpOrders), {
+    wedge,
+    digits,
+    direction,
+    sense,
+    wanted: (g) => isSharp(g, digits) || mayCross(g, levelMax, sense),
+    ...(request.progress ? { progress: request.progress } : {}),
+  });
+  const { prepared, order } = fit;
   const family = familyOf(prepared, order, direction, sense);
 
   // 1 modes at level 0
@@ -139,7 +147,7 @@ export function findCrossings(device: Device, sense: LevelSense, request: Crossi
   const within = paths.filter((p) => p.crossing && inBand(device, p.crossing.k));
   const crossings = within.flatMap((path, i) => {
     request.progress?.('polishing', i / within.length);
-    return climbCrossing(prepared, direction, sense, path, digits, width);
+    return climbCrossing(prepared, direction, sense, path, digits, width, order);
   });
   const lost: ModePath[] = [];
   for (const resolved of sharp.filter((r) => !isBeyond(r))) {
@@ -260,7 +268,7 @@ function climbCrossing(
   path: ModePath,
   digits: number,
   width: number,
-  startOrder = resolutionFor(digits).order,
+  startOrder: number,
 ): AxisMode[] {
   const { device, layer } = prepared;
   let order = startOrder;

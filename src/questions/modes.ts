@@ -1,9 +1,18 @@
 // Where does a device resonate? Poles, or zeros, in a window of complex k.
 
 import { type Completeness, countedSearch, isCountable } from '../accuracy/completeness.ts';
-import { type ErrorParts, climbModes, type FoundMode, groupWidth, totalError } from '../accuracy/mode-ladder.ts';
+import {
+  type ErrorParts,
+  climbModes,
+  type FoundMode,
+  groupWidth,
+  type Limits,
+  type Stop,
+  totalError,
+} from '../accuracy/mode-ladder.ts';
 import { returnedToMode } from '../accuracy/layer-return.ts';
-import { DEFAULT_DIGITS, resolutionFor } from '../accuracy/resolution.ts';
+import type { Strategy } from '../accuracy/refinement-plan.ts';
+import { DEFAULT_DIGITS, startResolution } from '../accuracy/resolution.ts';
 import { metals } from '../device/metals.ts';
 import { type Device, isWalled } from '../device/model.ts';
 import type { Wedge } from '../eigen/window.ts';
@@ -13,7 +22,7 @@ import { multipoleOrder, type Multipoles } from '../scattering/contrast.ts';
 import { rimMultipoles } from '../scattering/rim-waves.ts';
 import { modeLabel } from './label.ts';
 import { expectedModes } from './mode-count.ts';
-import { familyOf, type Prepared, prepare, spaceOf } from './prepare.ts';
+import { groundOf, type Prepared, prepare, spaceOf } from './prepare.ts';
 
 /** Called now and then with what is being done and the share that is done, 0 … 1. It may throw to stop the work. */
 export type Progress = (stage: string, done: number) => void;
@@ -26,6 +35,9 @@ export interface ModesRequest {
   readonly assignment?: Assignment;
   /** Lowest Q = Re k / 2|Im k| asked for; default 10. */
   readonly qMin?: number;
+  readonly limits?: Limits;
+  /** Where order ends and size begins; by default order leads except at corners. */
+  readonly strategy?: Strategy;
   readonly progress?: Progress;
 }
 
@@ -58,8 +70,11 @@ export interface ModesAnswer {
   readonly complete: Completeness | null;
   /** All modes have the digits. */
   readonly reached: boolean;
+  /** What kept it from that. */
+  readonly stopped: Stop | null;
   readonly digits: number;
   readonly qMin: number;
+  /** Highest order among the triangles; `prepared` knows those of the others. */
   readonly order: number;
   readonly prepared: Prepared;
 }
@@ -82,26 +97,28 @@ export function findModes(device: Device, request: ModesRequest = {}): ModesAnsw
   const qMin = request.qMin ?? DEFAULT_Q_MIN;
   const assignment = request.assignment ?? 'poles';
   if (!(qMin >= 0.5)) throw new RangeError(`the lowest Q came as ${qMin}; expected 0.5 or more`);
-  const resolution = resolutionFor(digits);
+  const resolution = startResolution(digits);
   const { kMin, kMax } = device.band;
   const wedge = wedgeFor(device, assignment, kMin, kMax, 1 / (2 * qMin), 10 ** -digits);
   request.progress?.('meshing', 0);
-  const prepared = prepare(device, { kMin, kMax, slope: 1 / (2 * qMin) }, resolution);
+  const start = prepare(device, { kMin, kMax, slope: 1 / (2 * qMin) }, resolution);
   const direction = assignment === 'poles' ? 'outgoing' : 'incoming';
-  const counted = isCountable(device) ? countedSearch(device, prepared.layer, groupWidth(digits, kMax) / kMax) : null;
-  const search = climbModes((order) => familyOf(prepared, order, direction, 'gain'), {
+  const counted = isCountable(device) ? countedSearch(device, start.layer, groupWidth(digits, kMax) / kMax) : null;
+  const search = climbModes(groundOf(start, direction, 'gain'), {
     wedge,
     level: 0,
     digits,
-    startOrder: resolution.order,
-    layer: prepared.layer,
+    layer: start.layer,
     expected: expectedModes(device),
-    ...(counted ? { search: (family, window) => counted.search(family, window) } : {}),
+    ...(counted ? { prove: (family, window, found) => counted.search(family, { ...window, find: () => found }) } : {}),
     ...(request.progress ? { progress: request.progress } : {}),
+    ...(request.limits ? { limits: request.limits } : {}),
+    ...(request.strategy ? { strategy: request.strategy } : {}),
   });
+  const { prepared, order } = search.ground.prepared(search.orders);
   const modes = search.modes.map((found, i) => {
     request.progress?.('far fields', i / search.modes.length);
-    return describeMode(prepared, search.order, found, assignment);
+    return describeMode(prepared, order, found, assignment);
   });
   return {
     modes,
@@ -114,9 +131,10 @@ export function findModes(device: Device, request: ModesRequest = {}): ModesAnsw
         search.modes.map((m) => m.group),
       ) ?? null,
     reached: search.reached,
+    stopped: search.stopped,
     digits,
     qMin,
-    order: search.order,
+    order,
     prepared,
   };
 }

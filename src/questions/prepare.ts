@@ -1,11 +1,13 @@
 // From a checked device to matrices: what every question starts with.
 
+import type { Ground } from '../accuracy/mode-ladder.ts';
 import type { Resolution } from '../accuracy/resolution.ts';
 import { type LayerPlan, layerCoefficients } from '../boundary/stretched-layer.ts';
 import { metals } from '../device/metals.ts';
 import type { Device } from '../device/model.ts';
-import { buildSpace, type Space } from '../elements/space.ts';
-import type { Mesh } from '../mesh/mesh.ts';
+import { buildSpace, ordersAt, type Space } from '../elements/space.ts';
+import { meshLocator } from '../mesh/locate.ts';
+import type { Mesh, SizeWish } from '../mesh/mesh.ts';
 import { meshDeviceWithNotes } from '../mesh/mesh-device.ts';
 import type { Direction } from '../numerics/conventions.ts';
 import { type DeviceFamily, deviceFamily, type LevelSense } from '../operator/device-family.ts';
@@ -30,7 +32,14 @@ export interface Prepared {
   readonly bodyRadius: number;
   /** What the mesher had to say, for the user. */
   readonly notes: readonly string[];
-  /** The assembled operator of an order (outgoing), made once. */
+  readonly resolution: Resolution;
+  /** Multipoles that the layer was asked to serve. */
+  readonly highestOrder: ((x: number) => number) | undefined;
+  /** Where smaller triangles were asked for than the resolution says. */
+  readonly wishes: readonly SizeWish[];
+  /** What each triangle's order is above (below) the order asked for; null where all are alike. */
+  readonly shifts: Int32Array | null;
+  /** The assembled operator (outgoing) of an order, triangle t at order + shifts[t]; made once. */
   operator(order: number): OpenOperator;
 }
 
@@ -44,8 +53,9 @@ const LARGEST_ARC = 0.6;
 const LAYER_COARSENING = 3;
 
 /**
- * Meshes the device. `refine` < 1 asks for smaller triangles than the rule: an independent mesh for a forward check. The
- * layer serves the multipoles |m| ≤ `highestOrder` of x = n_b k × body radius; by default those that radiate freely.
+ * Meshes the device. `refine` < 1 asks for smaller triangles than the rule: an independent mesh for a forward check;
+ * `wishes` ask for still smaller ones in places. The layer serves the multipoles |m| ≤ `highestOrder` of
+ * x = n_b k × body radius; by default those that radiate freely.
  */
 export function prepare(
   device: Device,
@@ -54,6 +64,7 @@ export function prepare(
   refine = 1,
   highestOrder?: (x: number) => number,
   ends: 'layers' | 'openings' = 'layers',
+  wishes: readonly SizeWish[] = [],
 ): Prepared {
   const index = Math.sqrt(device.background.permittivity * device.background.permeability);
   const { center, radius, layer, walls } = planSpace(device, scope, resolution, ends, highestOrder);
@@ -76,21 +87,97 @@ export function prepare(
     layerSize: LAYER_COARSENING * size(index),
     cornerGrading: resolution.cornerGrading,
     largestArc: LARGEST_ARC * Math.min(1, refine),
+    wishes: wishes.map(({ x, y, size: side }) => ({ x, y, size: refine * side })),
   });
+  const parts = { device, scope, mesh, layer, bodyRadius: radius, notes, resolution, highestOrder, wishes };
+  return withShifts({ ...parts, shifts: null }, null);
+}
+
+/** The same mesh with another distribution of orders. */
+export function withShifts(prepared: Omit<Prepared, 'operator'>, shifts: Int32Array | null): Prepared {
+  const { device, mesh, layer } = prepared;
   const metalCount = metals(device).length;
   const operators = new Map<number, OpenOperator>();
   const operator = (order: number): OpenOperator => {
     let made = operators.get(order);
     if (!made) {
-      const space = buildSpace(mesh, order);
+      const space = buildSpace(mesh, ordersAt(order, shifts));
       const surfaces = metalCount > 0 ? surfaceTerms(space, FIRST_METAL, metalCount) : undefined;
-      made = assembleOpen(space, layerCoefficients(layer, center), 'outgoing', surfaces);
+      made = assembleOpen(space, layerCoefficients(layer, mesh.center), 'outgoing', surfaces);
       operators.set(order, made);
     }
     return made;
   };
-  return { device, scope, mesh, layer, bodyRadius: radius, notes, operator };
+  return { ...prepared, shifts, operator };
 }
+
+/** A mesh of its own for the same device and digits: triangles smaller by `refine` < 1, orders as in the same places. */
+export function ownMesh(
+  prepared: Prepared,
+  device: Device,
+  refine: number,
+  highestOrder?: (x: number) => number,
+): Prepared {
+  const { scope, resolution, wishes, mesh, shifts } = prepared;
+  const own = prepare(device, scope, resolution, refine, highestOrder, 'layers', wishes);
+  return shifts ? withShifts(own, ordersInPlace(own.mesh, mesh, shifts, 0)) : own;
+}
+
+/** For each triangle of a mesh the number that belongs to the triangle of another mesh where its middle lies. */
+export function ordersInPlace(mesh: Mesh, other: Mesh, numbers: Int32Array, outside: number): Int32Array {
+  const locate = meshLocator(other);
+  const { vertices, triangles, regions } = mesh;
+  return Int32Array.from(regions, (_, t) => {
+    let x = 0;
+    let y = 0;
+    for (let i = 3 * t; i < 3 * t + 3; i++) {
+      x += vertices[2 * triangles[i]] / 3;
+      y += vertices[2 * triangles[i] + 1] / 3;
+    }
+    const place = locate(x, y);
+    return place ? numbers[place.triangle] : outside;
+  });
+}
+
+/** A prepared device as the refinement of its mesh and orders sees it. */
+export interface PreparedGround extends Ground<PreparedGround> {
+  /** The device prepared with these orders; its highest order among them. */
+  prepared(orders: Int32Array): { readonly prepared: Prepared; readonly order: number };
+}
+
+export function groundOf(start: Prepared, direction: Direction, sense: LevelSense): PreparedGround {
+  const known = new WeakMap<Int32Array, { readonly prepared: Prepared; readonly order: number }>();
+  const prepared = (orders: Int32Array): { readonly prepared: Prepared; readonly order: number } => {
+    let made = known.get(orders);
+    if (!made) {
+      const order = orders.reduce((a, b) => Math.max(a, b), 1);
+      made = { prepared: withShifts(start, orders.map((p) => p - order)), order }; // prettier-ignore
+      known.set(orders, made);
+    }
+    return made;
+  };
+  return {
+    mesh: start.mesh,
+    prepared,
+    family: (orders, raise) => {
+      const { prepared: made, order } = prepared(orders);
+      return familyOf(made, order + raise, direction, sense);
+    },
+    remeshed: (wishes) =>
+      groundOf(
+        prepare(start.device, start.scope, start.resolution, 1, start.highestOrder, 'layers', [
+          ...start.wishes,
+          ...wishes,
+        ]),
+        direction,
+        sense,
+      ),
+    ordersFrom: (other, orders) => ordersInPlace(start.mesh, other, orders, LOWEST_FREE_ORDER),
+  };
+}
+
+/** For triangles whose middle lies beyond the other mesh. */
+const LOWEST_FREE_ORDER = 5;
 
 /** The family A(k, level) of a prepared device at an order. */
 export const familyOf = (prepared: Prepared, order: number, direction: Direction, sense: LevelSense): DeviceFamily =>

@@ -381,6 +381,7 @@ export function openBook(device: Device, prepared: Prepared, order: number, cont
     edgeCurve: 'mesh-edge-curve',
     curves: 'mesh-curves',
   } as const;
+  if (prepared.shifts) arrays['mesh-shifts'] = prepared.shifts;
   for (const [key, name] of Object.entries(meshArrays)) arrays[name] = mesh[key as keyof typeof meshArrays];
   if (mesh.edgeFree) arrays['mesh-edge-free'] = mesh.edgeFree;
   const bodies = device.bodies.map((body, i) => ({
@@ -460,6 +461,7 @@ export function openBook(device: Device, prepared: Prepared, order: number, cont
         },
         mesh: {
           order,
+          ...(prepared.shifts ? { shifts: 'mesh-shifts' } : {}),
           center: mesh.center,
           rimRadius: mesh.rimRadius,
           endRadius: mesh.endRadius,

@@ -174,6 +174,8 @@ function checkMesh(value: unknown, arrays: Entries): void {
   same('edgeCurve', length['edges'] / 2);
   if (names['edgeFree'] !== undefined)
     arrayNamed(arrays, names['edgeFree'], 'mesh.arrays.edgeFree', ['i32'], { exact: length['edges'] / 2 });
+  if (mesh['shifts'] !== undefined)
+    arrayNamed(arrays, mesh['shifts'], 'mesh.shifts', ['i32'], { exact: length['regions'] });
 }
 
 /** @returns the number of display points. */

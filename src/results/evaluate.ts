@@ -2,7 +2,7 @@
 
 import { tabulateBasis } from '../elements/basis.ts';
 import { evaluateInto } from '../elements/evaluate.ts';
-import { buildSpace, type Space } from '../elements/space.ts';
+import { buildSpace, ordersAt, type Space } from '../elements/space.ts';
 import { meshLocator } from '../mesh/locate.ts';
 import { LAYER, type Mesh } from '../mesh/mesh.ts';
 import { type FieldSampler, fieldOf, type RunView } from './run-view.ts';
@@ -38,6 +38,8 @@ export function fieldSampler(run: RunView): FieldSampler {
   const mesh = meshFrom(run);
   const locate = meshLocator(mesh);
   const spaces = new Map<number, Space>();
+  const { shifts: named } = run.record.mesh;
+  const shifts = named === undefined ? null : (run.array(named) as Int32Array);
   return (fieldId, x, y) => {
     const entry = fieldOf(run.record, fieldId);
     const place = locate(x, y);
@@ -45,10 +47,10 @@ export function fieldSampler(run: RunView): FieldSampler {
     const order = entry.order ?? run.record.mesh.order;
     let space = spaces.get(order);
     if (!space) {
-      space = buildSpace(mesh, order);
+      space = buildSpace(mesh, ordersAt(order, shifts));
       spaces.set(order, space);
     }
-    const table = tabulateBasis(order, [place.l1, place.l2]);
+    const table = tabulateBasis(space.order, [place.l1, place.l2]);
     const value = evaluateInto(
       new Float64Array(2),
       space,

@@ -227,9 +227,11 @@ export interface RunRecord {
     readonly regions: string;
     readonly tolerance: number;
   };
-  /** The finite-element mesh (fields of src/mesh/mesh.ts by name) and the order of its space. */
+  /** The finite-element mesh (fields of src/mesh/mesh.ts by name) and the highest order of its space. */
   readonly mesh: {
     readonly order: number;
+    /** Array name: i32, one a triangle, what its order is above (below) that of the field; absent: all alike. */
+    readonly shifts?: string;
     readonly center: Pair;
     readonly rimRadius: number;
     readonly endRadius: number;
