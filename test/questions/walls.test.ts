@@ -58,7 +58,8 @@ enclosure: { wall: ${wall}, spaces: [ { disk: { center: [0, 0], radius: 1 } } ] 
     const parts = [...half('even').modes, ...half('odd').modes].sort((a, b) => a.k.re - b.k.re);
     expect(parts).toHaveLength(whole.modes.length);
     parts.forEach((m, i) => {
-      expect(Math.abs(m.k.re - whole.modes[i].k.re)).toBeLessThan(1e-4);
+      // two meshes: within the sum of the errors
+      expect(Math.abs(m.k.re - whole.modes[i].k.re)).toBeLessThan(m.kError + whole.modes[i].kError);
       expect(m.label).toMatch(/^(even|odd) in x$/);
     });
   });

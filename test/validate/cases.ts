@@ -2,13 +2,15 @@
 
 import { readFileSync } from 'node:fs';
 import type { Polarization } from '../../src/numerics/conventions.ts';
-import { type Cylinder, clusterDevice, diskDevice, type Layers, layeredDevice } from './devices.ts';
+import { type Cylinder, clusterDevice, diskDevice, type Layers, layeredDevice, polygonDevice } from './devices.ts';
 import {
   absorptionRows,
+  agreementRows,
   conjugateRows,
   type CrossingCase,
   driveRows,
   type ExactMode,
+  growthRows,
   modeRows,
   type Row,
   thresholdRows,
@@ -114,6 +116,8 @@ export function allCases(): Case[] {
     ...layeredCrossings(),
     ...clusterPoles(),
     ...clusterCrossings(),
+    ...growth(),
+    ...polygons(),
   ];
 }
 
@@ -298,6 +302,86 @@ function clusterCrossings(): Case[] {
       (k) => clusterDevice(clusters.structures[t.name], { polarization: t.pol, band: bandAbout(k), pumped: t.pumped }),
       t.name === 'twelve',
     ),
+  );
+}
+
+/** What the growth of work is measured by. */
+const GROWTH_DIGITS = [4, 6, 8, 10];
+const MOST_GROWTH = 8;
+
+/** Smooth devices at 4 to 10 digits: each promise kept, and ten digits cost at most eight times the unknowns of four. */
+function growth(): Case[] {
+  const disk = diskModes(2, 'Ez', [1, 2]);
+  const ringPoles = (name: string): ExactMode[] =>
+    layered.poles
+      .filter((e) => e.name === name && e.pol === 'Ez')
+      .flatMap((e) =>
+        e.k
+          .filter(([re, im]) => re >= 1 && re <= 2 && -im * 6 <= re)
+          .map(([re, im]) => ({ k: { re, im }, multiplicity: e.m === 0 ? 1 : 2, label: `m = ${e.m}` })),
+      );
+  const band: Pair = [1, 2];
+  const setting = { polarization: 'Ez', band } as const;
+  const five = clusters.poles.find((e) => e.name === 'five' && e.pol === 'Ez')!;
+  const [re, im, halfRe, halfIm] = five.ellipses[0];
+  const inside = (k: { re: number; im: number }): boolean =>
+    ((k.re - re) / halfRe) ** 2 + ((k.im - im) / halfIm) ** 2 < 1;
+  const posts = five.k
+    .map(([x, y]) => ({ k: { re: x, im: y }, multiplicity: 1, label: '' }))
+    .filter((e) => inside(e.k));
+  const rows = (c: Parameters<typeof growthRows>[0]) => () => growthRows(c, GROWTH_DIGITS, MOST_GROWTH);
+  return [
+    {
+      id: 'growth disk n=2 Ez',
+      long: false,
+      rows: rows({ device: diskDevice(2, setting), exact: disk.exact, qMin: disks.lowQ, complete: disk.complete }),
+    },
+    {
+      id: 'growth ring Ez',
+      long: false,
+      rows: rows({
+        device: layeredDevice(layered.structures['ring'], setting),
+        exact: ringPoles('ring'),
+        qMin: 3,
+        complete: () => false,
+      }),
+    },
+    {
+      id: 'growth five posts Ez',
+      long: false,
+      rows: rows({
+        device: clusterDevice(clusters.structures['five'], { polarization: 'Ez', band: [re - halfRe, re + halfRe] }),
+        exact: posts,
+        qMin: 0.98 * Math.min(...posts.map(({ k }) => k.re / (-2 * k.im))),
+        complete: ({ k }) => inside(k),
+      }),
+    },
+  ];
+}
+
+/** Order leads everywhere, or size does. */
+const ORDER_LED = { highestOrder: 13, cornerOrder: 13 };
+const SIZE_LED = { highestOrder: 5, cornerOrder: 3 };
+
+/** Polygons have no exact solution: two refinements that share nothing must agree within their errors. */
+function polygons(): Case[] {
+  return (['square', 'triangle'] as const).flatMap((shape) =>
+    POLARIZATIONS.flatMap((polarization) => {
+      const agree = (id: string, side: number, band: Pair, qMin: number, long: boolean): Case => ({
+        id,
+        long,
+        rows: () =>
+          agreementRows(polygonDevice(shape, side, 2.4, { polarization, band }), { digits: 6, qMin }, [
+            ORDER_LED,
+            SIZE_LED,
+          ]),
+      });
+      return [
+        // sides of four vacuum wavelengths at k = 2π
+        agree(`polygon ${shape} ${polarization} of 4 wavelengths`, 4, [6.24, 6.3], 20, true),
+        agree(`polygon ${shape} ${polarization} of half a wavelength`, 0.5, [5, 7.5], 3, false),
+      ];
+    }),
   );
 }
 

@@ -53,6 +53,13 @@ export const clusterDevice = (cylinders: readonly Cylinder[], setting: Setting):
     setting,
   );
 
+/** A square or an equilateral triangle of a real index. */
+export const polygonDevice = (shape: 'square' | 'triangle', side: number, index: number, setting: Setting): Device => {
+  const height = (side * Math.sqrt(3)) / 2;
+  const points = shape === 'square' ? [[0, 0], [side, 0], [side, side], [0, side]] : [[0, 0], [side, 0], [side / 2, height]]; // prettier-ignore
+  return device([{ index: 0, eps: index * index, shape: { polygon: { points } } }], setting);
+};
+
 interface Part {
   readonly index: number;
   readonly eps: Value;

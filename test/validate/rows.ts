@@ -3,6 +3,8 @@
 import { type AbsorbAnswer, findAbsorption } from '../../src/questions/absorb.ts';
 import type { AxisMode, CrossingsAnswer } from '../../src/questions/crossings.ts';
 import { type Assignment, findModes, type ModesAnswer } from '../../src/questions/modes.ts';
+import type { Strategy } from '../../src/accuracy/refinement-plan.ts';
+import { spaceOf } from '../../src/questions/prepare.ts';
 import { findThresholds } from '../../src/questions/threshold.ts';
 import type { Device } from '../../src/device/model.ts';
 import type { Complex } from '../../src/numerics/complex.ts';
@@ -50,6 +52,52 @@ export function modeRows(c: ModesCase): Row[] {
   const answer = findModes(c.device, { digits: c.digits, qMin: c.qMin, assignment: c.assignment ?? 'poles' });
   return [...answerRows(answer), ...matchRows(answer, c)];
 }
+
+/** The same poles at several digits, each to its promise, and how the number of unknowns grows from the first to the last. */
+export function growthRows(c: Omit<ModesCase, 'digits'>, digits: readonly number[], mostGrowth: number): Row[] {
+  const unknowns: number[] = [];
+  const rows = digits.flatMap((d) => {
+    const answer = findModes(c.device, { digits: d, qMin: c.qMin });
+    unknowns.push(spaceOf(answer.prepared, answer.order).unknowns);
+    const own = [...answerRows(answer), ...matchRows(answer, { ...c, digits: d })];
+    return own.map((row) => ({ ...row, what: `digits ${d}: ${row.what}` }));
+  });
+  const growth = unknowns[unknowns.length - 1] / unknowns[0];
+  rows.push({
+    what: `unknowns ${unknowns.join(', ')}: last over first`,
+    exact: `at most ${mostGrowth}`,
+    computed: growth.toPrecision(3),
+    error: growth,
+    bound: mostGrowth,
+    estimate: NaN,
+  });
+  return rows;
+}
+
+/** Two refinements of the same device that share neither mesh nor orders: each pair of modes within the sum of its errors. */
+export function agreementRows(
+  device: Device,
+  request: Pick<ModesCase, 'digits' | 'qMin'>,
+  strategies: readonly [Strategy, Strategy],
+): Row[] {
+  const [one, other] = strategies.map((strategy) => findModes(device, { ...request, strategy }));
+  const rows = [...answerRows(one), ...answerRows(other), count('modes, as many', total(one), total(other))];
+  for (const mode of one.modes) {
+    const same = nearest(other.modes, mode.k);
+    if (!same) continue;
+    rows.push({
+      what: `orders to ${strategies[0].highestOrder} against orders to ${strategies[1].highestOrder}`,
+      exact: show(mode.k),
+      computed: show(same.k),
+      error: distance(mode.k, same.k),
+      bound: mode.kError + same.kError,
+      estimate: NaN,
+    });
+  }
+  return rows;
+}
+
+const total = (answer: ModesAnswer): number => answer.modes.reduce((sum, m) => sum + m.multiplicity, 0);
 
 /** Poles and zeros of a lossless device: both against the exact ones, and conjugate to each other. */
 export function conjugateRows(c: ModesCase, conjugateBound: number): Row[] {
