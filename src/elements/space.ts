@@ -94,9 +94,14 @@ export function buildSpace(mesh: Mesh, orders: number | Int32Array): Space {
 /** Highest order a triangle can have. */
 export const MOST_ORDER = 20;
 
-/** Orders of all triangles at order + shifts[t], at least 1 and at most 20; the order itself where all are alike. */
-export const ordersAt = (order: number, shifts: Int32Array | null): number | Int32Array =>
-  shifts ? shifts.map((s) => Math.min(Math.max(order + s, 1), MOST_ORDER)) : order;
+/**
+ * Orders of all triangles: order + shifts[t] from the order on that the shifts were made for, below it at most `order`; at
+ * least 1 and at most 20. The order itself where all are alike.
+ */
+export const ordersAt = (order: number, shifts: Int32Array | null, madeFor = 0): number | Int32Array =>
+  shifts
+    ? shifts.map((s) => Math.min(Math.max(order >= madeFor ? order + s : Math.min(madeFor + s, order), 1), MOST_ORDER))
+    : order;
 
 /** Largest number of shape functions on any triangle of the space. */
 export function largestElement(space: Space): number {

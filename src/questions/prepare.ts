@@ -39,7 +39,12 @@ export interface Prepared {
   readonly wishes: readonly SizeWish[];
   /** What each triangle's order is above (below) the order asked for; null where all are alike. */
   readonly shifts: Int32Array | null;
-  /** The assembled operator (outgoing) of an order, triangle t at order + shifts[t]; made once. */
+  /** The order that the shifts were made for. */
+  readonly madeFor: number;
+  /**
+   * The assembled operator (outgoing) of an order, made once: triangle t at order + shifts[t]; below the order that the
+   * shifts were made for, no triangle above the order.
+   */
   operator(order: number): OpenOperator;
 }
 
@@ -90,25 +95,29 @@ export function prepare(
     wishes: wishes.map(({ x, y, size: side }) => ({ x, y, size: refine * side })),
   });
   const parts = { device, scope, mesh, layer, bodyRadius: radius, notes, resolution, highestOrder, wishes };
-  return withShifts({ ...parts, shifts: null }, null);
+  return withShifts(parts, null, 0);
 }
 
 /** The same mesh with another distribution of orders. */
-export function withShifts(prepared: Omit<Prepared, 'operator'>, shifts: Int32Array | null): Prepared {
+export function withShifts(
+  prepared: Omit<Prepared, 'operator' | 'shifts' | 'madeFor'>,
+  shifts: Int32Array | null,
+  madeFor: number,
+): Prepared {
   const { device, mesh, layer } = prepared;
   const metalCount = metals(device).length;
   const operators = new Map<number, OpenOperator>();
   const operator = (order: number): OpenOperator => {
     let made = operators.get(order);
     if (!made) {
-      const space = buildSpace(mesh, ordersAt(order, shifts));
+      const space = buildSpace(mesh, ordersAt(order, shifts, madeFor));
       const surfaces = metalCount > 0 ? surfaceTerms(space, FIRST_METAL, metalCount) : undefined;
       made = assembleOpen(space, layerCoefficients(layer, mesh.center), 'outgoing', surfaces);
       operators.set(order, made);
     }
     return made;
   };
-  return { ...prepared, shifts, operator };
+  return { ...prepared, shifts, madeFor, operator };
 }
 
 /** A mesh of its own for the same device and digits: triangles smaller by `refine` < 1, orders as in the same places. */
@@ -118,9 +127,9 @@ export function ownMesh(
   refine: number,
   highestOrder?: (x: number) => number,
 ): Prepared {
-  const { scope, resolution, wishes, mesh, shifts } = prepared;
+  const { scope, resolution, wishes, mesh, shifts, madeFor } = prepared;
   const own = prepare(device, scope, resolution, refine, highestOrder, 'layers', wishes);
-  return shifts ? withShifts(own, ordersInPlace(own.mesh, mesh, shifts, 0)) : own;
+  return shifts ? withShifts(own, ordersInPlace(own.mesh, mesh, shifts, 0), madeFor) : own;
 }
 
 /** For each triangle of a mesh the number that belongs to the triangle of another mesh where its middle lies. */
@@ -151,7 +160,7 @@ export function groundOf(start: Prepared, direction: Direction, sense: LevelSens
     let made = known.get(orders);
     if (!made) {
       const order = orders.reduce((a, b) => Math.max(a, b), 1);
-      made = { prepared: withShifts(start, orders.map((p) => p - order)), order }; // prettier-ignore
+      made = { prepared: withShifts(start, orders.map((p) => p - order), order), order }; // prettier-ignore
       known.set(orders, made);
     }
     return made;
