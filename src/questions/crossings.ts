@@ -329,8 +329,12 @@ function climbCrossing(
       return [
         {
           k,
-          // an error as large as the number says that nothing is known
-          kError: Math.min(k, Math.max(kStep, spread) + left * Math.abs(k - here.k) + 1e-14 * k),
+          // the order moves the complex k of the mode; its real part alone may stand still by chance. An error as large
+          // as the number says that nothing is known
+          kError: Math.min(
+            k,
+            Math.max(Math.hypot(kStep, slope.im * levelStep), spread) + left * Math.abs(k - here.k) + 1e-14 * k,
+          ),
           // where the highest order cannot tell the side of the axis the level is nought within its error
           level: Math.max(0, level),
           levelError: Math.min(
