@@ -211,7 +211,7 @@ function windingOf(phase: (k: Complex) => number, { kMin, kMax, low, high }: Wed
   };
   corners.forEach((from, i) => {
     const to = corners[(i + 1) % 4];
-    const steps = Math.max(4, Math.ceil(2 * rate * modulus(subtract(to, from))));
+    const steps = Math.max(24, Math.ceil(2 * rate * modulus(subtract(to, from))));
     let before = from;
     let value = phase(from);
     for (let s = 1; s <= steps; s++) {
