@@ -2,7 +2,7 @@
 
 import { readFileSync, statSync } from 'node:fs';
 import { totalmem } from 'node:os';
-import { DeviceError, deviceSize, type Device, isWalled, readDevice, showBytes } from '../src/index.ts';
+import { DeviceError, deviceSize, type Device, readDevice, showBytes } from '../src/index.ts';
 import { InputError } from './faults.ts';
 import type { DeviceOptions } from './options.ts';
 
@@ -27,16 +27,6 @@ export function openDevice(path: string, options: DeviceOptions): DeviceFile {
 }
 
 /** A threshold and an absorption point need a body that gains or absorbs. */
-export function refuseGuides({ path, device }: DeviceFile): void {
-  if (!isWalled(device) && !device.symmetry) return;
-  throw new InputError(
-    path,
-    device.symmetry ? 'a device with symmetry lines' : 'a device with walls around it',
-    'open space all around, for this command works with the waves of the rim',
-    'use "wavewell match": --in none --pump finds thresholds, --in with all guides finds coherent absorption',
-  );
-}
-
 export function refusePassive({ path, device }: DeviceFile): void {
   if (device.bodies.some((body) => body.pumpWeight > 0)) return;
   throw new DeviceError([

@@ -42,15 +42,6 @@ export {
 } from './questions/absorb.ts';
 export { defaultLevelMax, type AxisMode, type CrossingsRequest } from './questions/crossings.ts';
 export { prepare, type Prepared, type Scope } from './questions/prepare.ts';
-export {
-  findKnobMatches,
-  findMatches,
-  inputsOf,
-  type MatchAnswer,
-  type MatchRequest,
-  type RealMatch,
-} from './questions/match.ts';
-export { knobMatchRecord, matchRecord } from './questions/match-record.ts';
 export { findScattering, type ScatterAnswer, type ScatterPoint, type ScatterRequest } from './questions/scatter.ts';
 export { spectrumRecord } from './questions/scatter-record.ts';
 export { prepareOpenings, type DeviceChannel, type PreparedOpenings } from './questions/prepare-openings.ts';
@@ -87,7 +78,6 @@ export type {
   RunField,
   RunMark,
   RunRecord,
-  MatchAnswerRow,
   ScatterAnswerPoint,
 } from './results/format.ts';
 export { fieldSampler } from './results/evaluate.ts';
