@@ -2,7 +2,7 @@
 
 import { readFileSync, statSync } from 'node:fs';
 import { totalmem } from 'node:os';
-import { DeviceError, deviceSize, type Device, readDevice, showBytes } from '../src/index.ts';
+import { DeviceError, deviceSize, type Device, isWalled, readDevice, showBytes } from '../src/index.ts';
 import { InputError } from './faults.ts';
 import type { DeviceOptions } from './options.ts';
 
@@ -24,6 +24,17 @@ export function openDevice(path: string, options: DeviceOptions): DeviceFile {
   });
   refuseTooLarge(path, device);
   return { path, text, device };
+}
+
+/** Thresholds and absorption points are told by the waves of the whole rim. */
+export function refuseWalls({ path, device }: DeviceFile): void {
+  if (!isWalled(device) && !device.symmetry) return;
+  throw new InputError(
+    path,
+    device.symmetry ? 'a device with symmetry lines' : 'a device with walls around it',
+    'open space all around: this command works with the waves of the rim',
+    'ask "wavewell modes" (with --zeros for incoming waves) or "wavewell spectrum"',
+  );
 }
 
 /** A threshold and an absorption point need a body that gains or absorbs. */

@@ -4,7 +4,7 @@ import { countedSearch, isCountable } from '../accuracy/completeness.ts';
 import { layerShift, returnedToMode } from '../accuracy/layer-return.ts';
 import { groupWidth } from '../accuracy/mode-ladder.ts';
 import { DEFAULT_DIGITS, HIGHEST_ORDER, startResolution } from '../accuracy/resolution.ts';
-import type { Device } from '../device/model.ts';
+import { type Device, isWalled } from '../device/model.ts';
 import { embed } from '../elements/space.ts';
 import { type Crossing, findCrossing, ROUNDING } from '../eigen/crossing.ts';
 import type { ModePath } from '../eigen/follow.ts';
@@ -77,12 +77,14 @@ export function defaultLevelMax(device: Device): number {
  * All crossings in the band below `levelMax`, lowest level first. Poles are followed under gain, zeros under loss; each
  * from level 0 to the axis. The window at level 0 is widened by what the level can move: |δk|/k ≈ D w / 2|ε|.
  *
- * @throws RangeError when no body is active, or for digits out of range.
+ * @throws RangeError when no body is active, for walls around or symmetry lines, or for digits out of range.
  */
 export function findCrossings(device: Device, sense: LevelSense, request: CrossingsRequest = {}): CrossingsAnswer {
   const digits = request.digits ?? DEFAULT_DIGITS;
   const active = device.bodies.filter((b) => b.pumpWeight > 0);
   if (active.length === 0) throw new RangeError('no body is active; expected a pump section that names at least one');
+  if (isWalled(device) || device.symmetry)
+    throw new RangeError('the device has walls around it or symmetry lines; expected open space all around');
   const levelMax = request.levelMax ?? defaultLevelMax(device);
   if (!(levelMax > 0)) throw new RangeError(`the largest level came as ${levelMax}; expected a positive number`);
   const resolution = startResolution(digits);
