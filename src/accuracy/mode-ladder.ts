@@ -19,9 +19,10 @@ import { type Complex, modulus, subtract } from '../numerics/complex.ts';
 import type { DeviceFamily } from '../operator/device-family.ts';
 import { checkLayer, LAYER_MODE_SENSITIVITY, type LayerCheck } from './layer-check.ts';
 import type { Mesh, SizeWish } from '../mesh/mesh.ts';
+import { smallestExponent } from './corner-exponent.ts';
 import { degreeEnergies, surplusEnergies } from './degree-energies.ts';
 import { bytesFor } from './memory.ts';
-import { errorRatios, largestExponent, type ModePicture, planRefinement, type Strategy } from './refinement-plan.ts';
+import { errorRatios, type ModePicture, planRefinement, type Strategy } from './refinement-plan.ts';
 import { HIGHEST_ORDER } from './resolution.ts';
 
 /** Where the error of a number comes from, absolute, 1/length unit. */
@@ -123,7 +124,7 @@ export function climbModes<G extends Ground<G>>(start: G, request: ModeSearchReq
         parts: degreeEnergies(family, group.k, level, group.vectors, group.multiplicity),
         goal: goalOf(group),
         outside: 10 ** -digits,
-        exponent: largestExponent(family.weights(group.k, level, 'value')),
+        exponent: smallestExponent(ground.mesh, family.weights(group.k, level, 'value')),
       }));
 
   let ground = start;
@@ -375,7 +376,7 @@ function tailFactor({ here, up, raised, level }: Rungs, group: EigenGroup, highe
   const { k, multiplicity } = group;
   const surplus = surplusEnergies(here, up, k, level, group.vectors, vectors, multiplicity);
   const parts = degreeEnergies(up, k, level, vectors, multiplicity);
-  const exponent = largestExponent(up.weights(k, level, 'value'));
+  const exponent = smallestExponent(up.operator.space.mesh, up.weights(k, level, 'value'));
   const ratios = errorRatios(up.operator.space.mesh, raised, parts, exponent);
   let step = 0;
   let all = 0;

@@ -2,7 +2,6 @@
 
 import { cornerVertices } from '../mesh/corners.ts';
 import { BACKGROUND, LAYER, type Mesh, type SizeWish } from '../mesh/mesh.ts';
-import type { RegionWeights } from '../operator/region-weights.ts';
 import type { DegreeEnergies } from './degree-energies.ts';
 
 /** Where order ends and size begins. */
@@ -20,7 +19,7 @@ export interface ModePicture {
   readonly goal: number;
   /** What the field outside may be off by, as a share of its energy. */
   readonly outside: number;
-  /** See largestExponent. */
+  /** Of the field at its worst corner: corner-exponent.ts. Decay at low degrees alone would promise too much. */
   readonly exponent: number;
 }
 
@@ -158,17 +157,6 @@ export function errorRatios(
 function singularExponent(s: ArrayLike<number>, top: number, largest: number): number {
   const slope = Math.log(decayRatio(s, top)) / Math.log((top - 1) / top);
   return Math.min(Math.max((slope - 1) / 4, 0.5), largest);
-}
-
-/**
- * Largest exponent that a corner can have: below 1 where p of ∇·(p∇u) jumps (`Hz`, magnetic bodies), else 2, from
- * r² log r. Decay at low degrees alone would promise too much.
- */
-export function largestExponent({ stiffness }: RegionWeights): number {
-  for (let i = 4; i < stiffness.length; i += 2) {
-    if (stiffness[i] !== stiffness[2] || stiffness[i + 1] !== stiffness[3]) return 1;
-  }
-  return 2;
 }
 
 /** Smallest factors by which a size may change at one go. */
