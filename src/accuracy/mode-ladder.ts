@@ -337,7 +337,7 @@ interface LadderRow {
  */
 function rowsOf(rungs: Rungs, goal: number, group: EigenGroup, higher: readonly EigenGroup[]): LadderRow[] {
   const { here, up, level } = rungs;
-  const whole = { group, error: discretization(group, higher) * tailFactor(rungs, group, higher) };
+  const whole = { group, error: Math.max(discretization(group, higher), surplusOf(rungs, group, higher)) };
   if (group.multiplicity === 1 || group.spread <= goal * modulus(group.k)) return [whole];
   const same = sameMembers(group, higher);
   const vectors = new Float64Array(same.reduce((sum, g) => sum + g.vectors.length, 0));
@@ -355,18 +355,18 @@ function rowsOf(rungs: Rungs, goal: number, group: EigenGroup, higher: readonly 
   const partsUp = rayleighGroups(up, group.k, level, vectors, count, group.spread / 2, false);
   return parts.map((part) => ({
     group: part,
-    error: discretization(part, partsUp) * tailFactor(rungs, part, partsUp),
+    error: Math.max(discretization(part, partsUp), surplusOf(rungs, part, partsUp)),
   }));
 }
 
 /**
- * What the step to the next order must be multiplied by to hold the orders beyond as well: Σ η_t/(1 − q_t) / Σ η_t with
- * the surplus η_t of each triangle and the ratio q_t by which its parts decay there. 1.05 to 1.3 where fields are smooth,
- * more at corners.
+ * What the orders beyond may still move k by: Σ η_t/(1 − q_t) with the surplus η_t of each triangle, which bounds its part
+ * of the step, and the ratio q_t by which the parts of further orders fall there. The step itself may be less: parts of
+ * smooth triangles and of corners have phases of their own and may cancel in it, but fall at different rates.
  */
-function tailFactor({ here, up, raised, level }: Rungs, group: EigenGroup, higher: readonly EigenGroup[]): number {
+function surplusOf({ here, up, raised, level }: Rungs, group: EigenGroup, higher: readonly EigenGroup[]): number {
   const same = sameMembers(group, higher);
-  if (same.reduce((sum, g) => sum + g.multiplicity, 0) !== group.multiplicity) return 1;
+  if (same.reduce((sum, g) => sum + g.multiplicity, 0) !== group.multiplicity) return Infinity;
   const vectors = new Float64Array(same.reduce((sum, g) => sum + g.vectors.length, 0));
   let at = 0;
   for (const g of same) {
@@ -378,13 +378,7 @@ function tailFactor({ here, up, raised, level }: Rungs, group: EigenGroup, highe
   const parts = degreeEnergies(up, k, level, vectors, multiplicity);
   const exponent = smallestExponent(up.operator.space.mesh, up.weights(k, level, 'value'));
   const ratios = errorRatios(up.operator.space.mesh, raised, parts, exponent);
-  let step = 0;
-  let all = 0;
-  for (let t = 0; t < surplus.length; t++) {
-    step += surplus[t];
-    all += surplus[t] / (1 - ratios[t]);
-  }
-  return step > 0 ? all / step : 1;
+  return surplus.reduce((sum, eta, t) => sum + eta / (1 - ratios[t]), 0);
 }
 
 /** The groups one order higher that hold as many members, nearest first. */
