@@ -78,7 +78,7 @@ export function provenWindow(problem: EigenProblem, request: ProvenRequest): Pro
   let known = members(tiles, groups, request);
   let searchedAgain = 0;
 
-  const contours = found.tiles.map((tile) => {
+  const first = found.tiles.map((tile) => {
     let contour = sampleContour(logDeterminant, circleOf(tile, known), FIRST_POINTS, START);
     for (let round = 0; ;) {
       const list = [...known, ...extra];
@@ -105,7 +105,18 @@ export function provenWindow(problem: EigenProblem, request: ProvenRequest): Pro
     }
     return request.doubled ? doubleContour(logDeterminant, contour) : contour;
   });
-  const points = contours.reduce((sum, c) => sum + c.logs.length, 0);
+  // a circle drawn before all was known may run through a cluster: such a one is drawn anew
+  let spent = 0;
+  const contours = first.map((contour, i) => {
+    const list = [...known, ...extra];
+    if (resolved(contour, list).proven) return contour;
+    spent += contour.logs.length;
+    let again = sampleContour(logDeterminant, circleOf(found.tiles[i], list, Infinity), FIRST_POINTS, START);
+    while (!resolved(again, list).proven && again.logs.length < (request.mostPoints ?? MOST_POINTS))
+      again = doubleContour(logDeterminant, again);
+    return again;
+  });
+  const points = spent + contours.reduce((sum, c) => sum + c.logs.length, 0);
   const proof = { contours, known: [...known, ...extra], points, searchedAgain };
   return { tiles, covered: found.covered, proof };
 }
@@ -177,10 +188,9 @@ const CLEAR = 0.06;
  * The circle that holds the tile's part of the window and keeps farthest, relative to its radius, from what is known. It
  * does not go beyond what the search has seen to the end.
  */
-function circleOf(tile: Tile, known: readonly Complex[]): { center: Complex; radius: number } {
+function circleOf(tile: Tile, known: readonly Complex[], seen = seenBy(tile)): { center: Complex; radius: number } {
   const { shift, radius } = tile;
   const center = multiply(shift, shift);
-  const seen = tile.ks.reduce((most, k) => Math.max(most, squareDistance(k, shift)), radius);
   const widest = Math.max(radius, Math.min(WIDEST * radius, 0.99 * seen, CLEAR_OF_ZERO * modulus(center)));
   const distances = known.map((k) => squareDistance(k, shift));
   let best = radius;
@@ -196,6 +206,9 @@ function circleOf(tile: Tile, known: readonly Complex[]): { center: Complex; rad
   }
   return { center, radius: best };
 }
+
+const seenBy = ({ ks, shift, radius }: Tile): number =>
+  ks.reduce((most, k) => Math.max(most, squareDistance(k, shift)), radius);
 
 /** Places closer to the window than this share of |k| count as in it. */
 const EDGE = 0.01;
