@@ -88,7 +88,17 @@ function printDoubts({ answer, command }: RunRecord): void {
   else if (answer['covered'] === false)
     say(ink.yellow('Part of the window could not be searched: the list may lack modes.'));
   if (answer['reached'] === false || crossings.some((c) => c.reached === false))
-    say(ink.yellow('The digits asked for were not reached; the errors say how far the numbers go.'));
+    say(
+      ink.yellow(
+        `The digits asked for were not reached${stopText(answer['stopped'])}; the errors say how far the numbers go.`,
+      ),
+    );
+}
+
+function stopText(stopped: unknown): string {
+  if (stopped === 'memory') return ' within the memory allowed (--most-memory)';
+  if (stopped === 'time') return ' within the time allowed (--most-time)';
+  return stopped === 'order' ? ' with the highest order there is' : '';
 }
 
 function sayComplete({ found, counted, proven, reason, below }: CompleteAnswer, command: string): void {

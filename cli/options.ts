@@ -65,6 +65,8 @@ export interface DeviceOptions {
 /** What a computing command takes besides. */
 export interface SolveOptions extends DeviceOptions {
   readonly digits?: number;
+  readonly mostMemory?: number;
+  readonly mostTime?: number;
   readonly again?: true;
 }
 
@@ -80,7 +82,16 @@ export function withDeviceOptions(command: Command, out: string): Command {
 
 export function withSolveOptions(command: Command): Command {
   return withDeviceOptions(
-    withDigits(command).option('--again', 'computes anew although a stored run has the answer'),
+    withDigits(command)
+      .option(
+        '--most-memory <GIB>',
+        "memory that refinement may use (three quarters of the machine's if absent)",
+        (text) => readAboveZero(text, '--most-memory'),
+      )
+      .option('--most-time <S>', 'seconds after which nothing is refined any more (no limit if absent)', (text) =>
+        readAboveZero(text, '--most-time'),
+      )
+      .option('--again', 'computes anew although a stored run has the answer'),
     'run folder to write (instead of runs/DEVICE/COMMAND-HASH)',
   );
 }

@@ -8,7 +8,13 @@ import type { Along, Settings } from './tasks.ts';
 
 export function commonSettings(options: SolveOptions): Settings {
   const knobs = Object.entries(options.knob ?? {}).sort(([a], [b]) => (a < b ? -1 : 1));
-  return { digits: options.digits ?? DEFAULT_DIGITS, band: options.band ?? null, knobs: Object.fromEntries(knobs) };
+  return {
+    digits: options.digits ?? DEFAULT_DIGITS,
+    band: options.band ?? null,
+    knobs: Object.fromEntries(knobs),
+    ...(options.mostMemory === undefined ? {} : { mostMemory: options.mostMemory }),
+    ...(options.mostTime === undefined ? {} : { mostTime: options.mostTime }),
+  };
 }
 
 /** The knob that is the parameter, with its range from the option or else from the file. */

@@ -26,6 +26,10 @@ export interface Settings {
   readonly digits: number;
   readonly band: readonly [number, number] | null;
   readonly knobs: Readonly<Record<string, number>>;
+  /** GiB that refinement may use; absent: a share of the machine's. */
+  readonly mostMemory?: number;
+  /** Seconds after which nothing is refined any more. */
+  readonly mostTime?: number;
   /** `modes`. */
   readonly assignment?: Assignment;
   readonly qMin?: number;

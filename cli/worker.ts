@@ -1,6 +1,6 @@
 // What does the thread beside the command compute?
 
-import { availableParallelism } from 'node:os';
+import { availableParallelism, totalmem } from 'node:os';
 import { parentPort, workerData } from 'node:worker_threads';
 import {
   absorbRecord,
@@ -14,6 +14,7 @@ import {
   spectrumRecord,
   findThresholds,
   knobRecord,
+  type Limits,
   measureMesh,
   modesRecord,
   prepare,
@@ -24,7 +25,7 @@ import {
   thresholdRecord,
 } from '../src/index.ts';
 import { reportFault } from './faults.ts';
-import type { FarMessage, FarTask, MeshInput, MeshOutput, RunInput, RunOutput } from './tasks.ts';
+import type { FarMessage, FarTask, MeshInput, MeshOutput, RunInput, RunOutput, Settings } from './tasks.ts';
 
 /** Milliseconds between two reports. */
 const PACE = 50;
@@ -39,12 +40,30 @@ const progress: Progress = (stage, done) => {
   tell({ kind: 'progress', stage, done });
 };
 
+/** Share of the machine's memory that refinement may use when nothing else is said. */
+const SHARE_OF_MEMORY = 0.75;
+
+const GIB = 2 ** 30;
+
+function limitsOf({ mostMemory, mostTime = Infinity }: Settings): Limits {
+  const end = performance.now() + 1000 * mostTime;
+  return {
+    bytes: mostMemory === undefined ? SHARE_OF_MEMORY * totalmem() : mostMemory * GIB,
+    outOfTime: () => performance.now() > end,
+  };
+}
+
 function computeRun(input: RunInput): RunOutput {
   const { command, text, context, read } = input;
   const device = readDevice(text, context.deviceFile, read);
   const { digits, assignment, qMin, levelMax, along } = input.settings;
+  const limits = limitsOf(input.settings);
   if (command === 'modes')
-    return modesRecord(device, findModes(device, { digits, qMin: qMin!, assignment: assignment!, progress }), context);
+    return modesRecord(
+      device,
+      findModes(device, { digits, qMin: qMin!, assignment: assignment!, limits, progress }),
+      context,
+    );
   if (command === 'spectrum') {
     const { kMin, kMax } = device.band;
     const n = input.settings.points!;
@@ -59,12 +78,12 @@ function computeRun(input: RunInput): RunOutput {
     const at = (value: number): Device =>
       readDevice(text, context.deviceFile, { ...read, knobs: { ...read.knobs, [knob]: value } });
     const side = command === 'threshold' ? 'poles' : 'zeros';
-    const found = findKnobCrossings(at, { digits, assignment: side, range, progress });
+    const found = findKnobCrossings(at, { digits, assignment: side, range, limits, progress });
     return found.length === 0
       ? null
       : knobRecord(device, knob, found, command === 'threshold' ? 'gain' : 'loss', context);
   }
-  const request = { digits, progress, ...(levelMax === null || levelMax === undefined ? {} : { levelMax }) };
+  const request = { digits, limits, progress, ...(levelMax === null || levelMax === undefined ? {} : { levelMax }) };
   return command === 'threshold'
     ? thresholdRecord(device, findThresholds(device, request), context)
     : absorbRecord(device, findAbsorption(device, request), context);

@@ -32,6 +32,7 @@ export {
   type ModesRequest,
   type Progress,
 } from './questions/modes.ts';
+export type { Limits } from './accuracy/memory.ts';
 export { findThresholds, type LasingMode, type ThresholdAnswer } from './questions/threshold.ts';
 export {
   findAbsorption,
@@ -40,7 +41,8 @@ export {
   type AbsorbingMode,
   type PowerBalance,
 } from './questions/absorb.ts';
-export { defaultLevelMax, type AxisMode, type CrossingsRequest } from './questions/crossings.ts';
+export { defaultLevelMax, type CrossingsRequest } from './questions/crossings.ts';
+export type { AxisMode } from './questions/polish-crossing.ts';
 export { prepare, type Prepared, type Scope } from './questions/prepare.ts';
 export { findScattering, type ScatterAnswer, type ScatterPoint, type ScatterRequest } from './questions/scatter.ts';
 export { spectrumRecord } from './questions/scatter-record.ts';

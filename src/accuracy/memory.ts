@@ -1,6 +1,27 @@
-// How much memory will a solve on a mesh with given orders take?
+// May a step to higher orders still be made, and how much memory will it take?
 
 import { LAYER, type Mesh } from '../mesh/mesh.ts';
+
+/** What may be spent. */
+export interface Limits {
+  /** Bytes for element matrices and one factorization. */
+  readonly bytes?: number;
+  /** True once no new step may begin. */
+  readonly outOfTime?: () => boolean;
+}
+
+/** Why a search ended before its digits were reached. */
+export type Stop = 'order' | 'memory' | 'time';
+
+/** Why a step to these orders (and one more) must not be made; null when it may. */
+export function stopBefore(limits: Limits, mesh: Mesh, orders: Int32Array): Stop | null {
+  if (limits.outOfTime?.()) return 'time';
+  const need = bytesFor(
+    mesh,
+    orders.map((p) => p + 1),
+  );
+  return need > (limits.bytes ?? Infinity) ? 'memory' : null;
+}
 
 /** Numbers in the factor L of a grid of n unknowns in nested dissection order: 7.75 n log₂ n. Source: A. George, SIAM J. Numer. Anal. 10 (1973) 345 (from memory). */
 const factorNumbers = (n: number): number => 7.75 * n * Math.log2(Math.max(2, n));

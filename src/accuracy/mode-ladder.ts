@@ -20,10 +20,11 @@ import type { DeviceFamily } from '../operator/device-family.ts';
 import { checkLayer, LAYER_MODE_SENSITIVITY, type LayerCheck } from './layer-check.ts';
 import type { Mesh, SizeWish } from '../mesh/mesh.ts';
 import { smallestExponent } from './corner-exponent.ts';
-import { degreeEnergies, surplusEnergies } from './degree-energies.ts';
-import { bytesFor } from './memory.ts';
-import { errorRatios, type ModePicture, planRefinement, type Strategy } from './refinement-plan.ts';
+import { degreeEnergies } from './degree-energies.ts';
+import { type Limits, type Stop, stopBefore } from './memory.ts';
+import { type ModePicture, planRefinement, type Strategy } from './refinement-plan.ts';
 import { HIGHEST_ORDER } from './resolution.ts';
+import { remainingStep } from './remaining-step.ts';
 
 /** Where the error of a number comes from, absolute, 1/length unit. */
 export interface ErrorParts {
@@ -48,9 +49,6 @@ export interface Ground<G> {
   /** The orders of another mesh, place by place. */
   ordersFrom(other: Mesh, orders: Int32Array): Int32Array;
 }
-
-/** Why a search ended before its digits were reached. */
-export type Stop = 'order' | 'memory' | 'time';
 
 export interface ModeSearch<G> {
   readonly modes: readonly FoundMode[];
@@ -147,7 +145,7 @@ export function climbModes<G extends Ground<G>>(start: G, request: ModeSearchReq
     let tiles: readonly Tile[] = found.tiles;
     let seen = inWindow(tiles, groupsAt(from, tiles));
     let plan = planRefinement(ground.mesh, searched, pictures(from, seen), strategy);
-    if (plan.wishes.length > 0 && mayRemesh && !stopBefore(limits, ground, plan.orders)) {
+    if (plan.wishes.length > 0 && mayRemesh && !stopBefore(limits, ground.mesh, plan.orders)) {
       progress?.('meshing', 0);
       const finer = ground.remeshed(plan.wishes);
       orders = finer.ordersFrom(ground.mesh, plan.orders);
@@ -178,7 +176,7 @@ export function climbModes<G extends Ground<G>>(start: G, request: ModeSearchReq
       const owned = inWindow(tiles, groups);
       covered &&= owned.every((o) => stillThere(o.group, groupsUp[o.tile]));
       const goal = 10 ** -digits;
-      const rows = owned.flatMap((o) => rowsOf({ here, up, raised, level }, goal, o.group, groupsUp[o.tile]));
+      const rows = owned.flatMap((o) => rowsOf({ here, up, level }, goal, o.group, groupsUp[o.tile]));
       const reached = rows.every((row) => row.error <= goalOf(row.group));
       let stopped: Stop | null = null;
       if (!reached) {
@@ -186,7 +184,7 @@ export function climbModes<G extends Ground<G>>(start: G, request: ModeSearchReq
         plan = planRefinement(ground.mesh, raised, pictures(up, seenUp), strategy);
         const next = plan.orders.some((p, t) => p > orders[t]) ? plan.orders : raised;
         const top = next.reduce((a, b) => Math.max(a, b), 0);
-        stopped = stopBefore(limits, ground, next) ?? (top >= HIGHEST_ORDER ? 'order' : null);
+        stopped = stopBefore(limits, ground.mesh, next) ?? (top >= HIGHEST_ORDER ? 'order' : null);
         seen = owned;
         from = up;
         tiles = higher;
@@ -230,29 +228,11 @@ function takeRows(
   return { modes: joinUnresolved(modes), dropped };
 }
 
-/** What may be spent. */
-export interface Limits {
-  /** Bytes for element matrices and one factorization. */
-  readonly bytes?: number;
-  /** True once no new step may begin. */
-  readonly outOfTime?: () => boolean;
-}
-
 /** Order leads where fields are smooth, size at corners. */
 export const DEFAULT_STRATEGY: Strategy = { highestOrder: HIGHEST_ORDER - 1, cornerOrder: 4 };
 
 /** Meshes that may be made for one search. */
 const MOST_MESHES = 8;
-
-/** Why a step to these orders (and one more) must not be made; null when it may. */
-function stopBefore<G>(limits: Limits, ground: Ground<G>, orders: Int32Array): Stop | null {
-  if (limits.outOfTime?.()) return 'time';
-  const need = bytesFor(
-    ground.mesh,
-    orders.map((p) => p + 1),
-  );
-  return need > (limits.bytes ?? Infinity) ? 'memory' : null;
-}
 
 /**
  * Order of the search itself: low, since Krylov works on all unknowns, high enough that every mode shows and none is
@@ -320,8 +300,6 @@ const stillThere = (group: EigenGroup, higher: readonly EigenGroup[]): boolean =
 interface Rungs {
   readonly here: DeviceFamily;
   readonly up: DeviceFamily;
-  /** Orders of the second. */
-  readonly raised: Int32Array;
   readonly level: number;
 }
 
@@ -359,12 +337,8 @@ function rowsOf(rungs: Rungs, goal: number, group: EigenGroup, higher: readonly 
   }));
 }
 
-/**
- * What the orders beyond may still move k by: Σ η_t/(1 − q_t) with the surplus η_t of each triangle, which bounds its part
- * of the step, and the ratio q_t by which the parts of further orders fall there. The step itself may be less: parts of
- * smooth triangles and of corners have phases of their own and may cancel in it, but fall at different rates.
- */
-function surplusOf({ here, up, raised, level }: Rungs, group: EigenGroup, higher: readonly EigenGroup[]): number {
+/** What the orders beyond may still move the group by; Infinity where the next order groups its members otherwise. */
+function surplusOf({ here, up, level }: Rungs, group: EigenGroup, higher: readonly EigenGroup[]): number {
   const same = sameMembers(group, higher);
   if (same.reduce((sum, g) => sum + g.multiplicity, 0) !== group.multiplicity) return Infinity;
   const vectors = new Float64Array(same.reduce((sum, g) => sum + g.vectors.length, 0));
@@ -373,12 +347,7 @@ function surplusOf({ here, up, raised, level }: Rungs, group: EigenGroup, higher
     vectors.set(g.vectors, at);
     at += g.vectors.length;
   }
-  const { k, multiplicity } = group;
-  const surplus = surplusEnergies(here, up, k, level, group.vectors, vectors, multiplicity);
-  const parts = degreeEnergies(up, k, level, vectors, multiplicity);
-  const exponent = smallestExponent(up.operator.space.mesh, up.weights(k, level, 'value'));
-  const ratios = errorRatios(up.operator.space.mesh, raised, parts, exponent);
-  return surplus.reduce((sum, eta, t) => sum + eta / (1 - ratios[t]), 0);
+  return remainingStep(here, up, group.k, level, group.vectors, vectors, group.multiplicity);
 }
 
 /** The groups one order higher that hold as many members, nearest first. */

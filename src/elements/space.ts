@@ -11,6 +11,8 @@ export interface Space {
   readonly mesh: Mesh;
   /** Largest order present. */
   readonly order: number;
+  /** Order of each triangle. */
+  readonly orders: Int32Array;
   readonly unknowns: number;
   /** Triangle t uses entries starts[t] … starts[t+1] of the three lists below. */
   readonly starts: Int32Array;
@@ -27,7 +29,7 @@ export function buildSpace(mesh: Mesh, orders: number | Int32Array): Space {
   const triangles = mesh.triangles.length / 3;
   const order = typeof orders === 'number' ? orders : orders.reduce((a, b) => Math.max(a, b), 1);
   if (!(order >= 1 && order <= MOST_ORDER)) throw new RangeError(`the order came as ${order}; expected 1 to 20`);
-  const orderOf = (t: number): number => (typeof orders === 'number' ? orders : orders[t]);
+  const orderOfEach = typeof orders === 'number' ? new Int32Array(triangles).fill(orders) : orders;
 
   // edge orders and fixed boundary
   const edges = mesh.edges.length / 2;
@@ -37,7 +39,7 @@ export function buildSpace(mesh: Mesh, orders: number | Int32Array): Space {
   for (let e = 0; e < edges; e++) {
     const t0 = mesh.edgeTriangles[2 * e];
     const t1 = mesh.edgeTriangles[2 * e + 1];
-    edgeOrder[e] = Math.max(t0 >= 0 ? orderOf(t0) : 1, t1 >= 0 ? orderOf(t1) : 1);
+    edgeOrder[e] = Math.max(t0 >= 0 ? orderOfEach[t0] : 1, t1 >= 0 ? orderOfEach[t1] : 1);
     if ((t0 < 0 || t1 < 0) && (mesh.edgeFree?.[e] ?? -1) < 0) {
       edgeFixed[e] = 1;
       vertexFixed[mesh.edges[2 * e]] = 1;
@@ -55,7 +57,7 @@ export function buildSpace(mesh: Mesh, orders: number | Int32Array): Space {
   }
   const starts = new Int32Array(triangles + 1);
   for (let t = 0; t < triangles; t++) {
-    const p = orderOf(t);
+    const p = orderOfEach[t];
     let count = 3 + ((p - 1) * (p - 2)) / 2;
     for (let i = 0; i < 3; i++) count += edgeOrder[mesh.triangleEdges[3 * t + i]] - 1;
     starts[t + 1] = starts[t] + count;
@@ -81,14 +83,14 @@ export function buildSpace(mesh: Mesh, orders: number | Int32Array): Space {
         at++;
       }
     }
-    for (let j = 3; j <= orderOf(t); j++) {
+    for (let j = 3; j <= orderOfEach[t]; j++) {
       for (let i = 0; i < j - 2; i++) {
         list[at] = unknowns++;
         functions[at++] = interiorFunction(j) + i;
       }
     }
   }
-  return { mesh, order, unknowns, starts, list, functions, signs };
+  return { mesh, order, orders: orderOfEach, unknowns, starts, list, functions, signs };
 }
 
 /** Highest order a triangle can have. */

@@ -14,7 +14,8 @@ import {
   type Multipoles,
 } from '../scattering/contrast.ts';
 import type { KnobCrossing } from './knob-crossing.ts';
-import { type AxisMode, type CrossingsAnswer, type CrossingsRequest, findCrossings } from './crossings.ts';
+import { type CrossingsAnswer, type CrossingsRequest, findCrossings } from './crossings.ts';
+import type { AxisMode } from './polish-crossing.ts';
 import { familyOf, ownMesh, type Prepared, spaceOf } from './prepare.ts';
 
 /** Powers of one driven solve, as shares of the incoming power. */
@@ -99,6 +100,7 @@ export function proveKnobCrossing(crossing: KnobCrossing): AbsorbingMode {
     multipolesError: 0,
     path: crossing.path,
     reached: crossing.reached,
+    stopped: crossing.reached ? null : 'order',
   };
   const own = ownMesh(prepared, device, OWN_MESH_REFINEMENT, highestDriven([axis]));
   return prove(prepared, own, axis);

@@ -1,5 +1,6 @@
 // At which value of a knob does a mode of the device, as its file describes it, lie on the real axis?
 
+import type { Limits } from '../accuracy/memory.ts';
 import { DEFAULT_DIGITS } from '../accuracy/resolution.ts';
 import type { Device } from '../device/model.ts';
 import { modulus, subtract } from '../numerics/complex.ts';
@@ -12,6 +13,7 @@ export interface KnobCrossingsRequest {
   readonly range: readonly [number, number];
   /** Lowest Q at which modes are followed; default 3. */
   readonly qMin?: number;
+  readonly limits?: Limits;
   readonly progress?: Progress;
 }
 
@@ -146,6 +148,7 @@ function polish(
       digits,
       assignment: request.assignment,
       qMin: request.qMin ?? 3,
+      ...(request.limits ? { limits: request.limits } : {}),
     });
     const same = answer.modes.filter((m) => m.multiplicity === ends[0].multiplicity && m.label === ends[0].label);
     if (same.length === 0) return null;

@@ -1,16 +1,9 @@
 // Where does a device resonate? Poles, or zeros, in a window of complex k.
 
 import { type Completeness, countedSearch, isCountable } from '../accuracy/completeness.ts';
-import {
-  type ErrorParts,
-  climbModes,
-  type FoundMode,
-  groupWidth,
-  type Limits,
-  type Stop,
-  totalError,
-} from '../accuracy/mode-ladder.ts';
+import { type ErrorParts, climbModes, type FoundMode, groupWidth, totalError } from '../accuracy/mode-ladder.ts';
 import { returnedToMode } from '../accuracy/layer-return.ts';
+import type { Limits, Stop } from '../accuracy/memory.ts';
 import type { Strategy } from '../accuracy/refinement-plan.ts';
 import { DEFAULT_DIGITS, startResolution } from '../accuracy/resolution.ts';
 import { metals } from '../device/metals.ts';

@@ -23,7 +23,8 @@ import {
 import type { Multipoles } from '../scattering/contrast.ts';
 import { farField } from '../scattering/amplitudes.ts';
 import { type AbsorbAnswer, type AbsorbingMode, proveKnobCrossing } from './absorb.ts';
-import type { AxisMode, CrossingsAnswer } from './crossings.ts';
+import type { CrossingsAnswer } from './crossings.ts';
+import type { AxisMode } from './polish-crossing.ts';
 import type { KnobCrossing } from './knob-crossing.ts';
 import type { Mode, ModesAnswer } from './modes.ts';
 import { type Prepared, spaceOf } from './prepare.ts';
@@ -89,6 +90,7 @@ export function modesRecord(device: Device, answer: ModesAnswer, context: RunCon
     covered: answer.covered,
     ...(answer.complete ? { complete: answer.complete } : {}),
     reached: answer.reached,
+    ...(answer.stopped ? { stopped: answer.stopped } : {}),
     order: answer.order,
     unknowns: spaceOf(answer.prepared, answer.order).unknowns,
     notes: answer.prepared.notes,
@@ -238,6 +240,7 @@ const baseOrder = (crossings: readonly AxisMode[]): number => Math.max(1, ...cro
 const searched = (answer: Omit<CrossingsAnswer, 'crossings'>): Record<string, unknown> => ({
   levelMax: answer.levelMax,
   covered: answer.covered,
+  ...(answer.stopped ? { stopped: answer.stopped } : {}),
   ...(answer.complete ? { complete: answer.complete } : {}),
   beyond: answer.beyond.map((k) => [k.re, k.im]),
   others: answer.others.map((p) => ({

@@ -5,7 +5,7 @@ import { gainReport } from '../materials/gain.ts';
 import { fromWavenumber } from '../materials/spectral-units.ts';
 import { errorText, significant, toError } from '../results/number-text.ts';
 import type { AbsorbAnswer } from './absorb.ts';
-import type { AxisMode } from './crossings.ts';
+import type { AxisMode } from './polish-crossing.ts';
 import type { KnobCrossing } from './knob-crossing.ts';
 import type { ModesAnswer } from './modes.ts';
 import type { ThresholdAnswer } from './threshold.ts';

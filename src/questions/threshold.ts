@@ -2,7 +2,8 @@
 
 import type { Device } from '../device/model.ts';
 import { farField } from '../scattering/amplitudes.ts';
-import { type AxisMode, type CrossingsAnswer, type CrossingsRequest, findCrossings } from './crossings.ts';
+import { type CrossingsAnswer, type CrossingsRequest, findCrossings } from './crossings.ts';
+import type { AxisMode } from './polish-crossing.ts';
 
 export interface LasingMode extends AxisMode {
   /** Far-field power density at 0 … 359°, mean 1, of the first member. */

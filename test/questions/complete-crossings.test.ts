@@ -2,7 +2,8 @@
 
 import { describe, expect, test } from 'vitest';
 import { checkAtLevel, type LevelCheckRequest, type ListedCrossing } from '../../src/questions/complete-crossings.ts';
-import { type AxisMode, findCrossings } from '../../src/questions/crossings.ts';
+import { findCrossings } from '../../src/questions/crossings.ts';
+import type { AxisMode } from '../../src/questions/polish-crossing.ts';
 import { diskDevice } from '../validate/devices.ts';
 
 const listed = (crossings: readonly AxisMode[]): ListedCrossing[] => crossings.map((c) => ({ ...c, slack: 1e-3 }));

@@ -1,7 +1,8 @@
 // How far is an answer from the exact one, and does it keep the bounds?
 
 import { type AbsorbAnswer, findAbsorption } from '../../src/questions/absorb.ts';
-import type { AxisMode, CrossingsAnswer } from '../../src/questions/crossings.ts';
+import type { CrossingsAnswer } from '../../src/questions/crossings.ts';
+import type { AxisMode } from '../../src/questions/polish-crossing.ts';
 import { type Assignment, findModes, type ModesAnswer } from '../../src/questions/modes.ts';
 import type { Strategy } from '../../src/accuracy/refinement-plan.ts';
 import { spaceOf } from '../../src/questions/prepare.ts';
