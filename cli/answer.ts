@@ -7,6 +7,7 @@ import {
   errorText,
   FREQUENCY_UNITS,
   fromWavenumber,
+  type MatchAnswerRow,
   type ModeAnswer,
   type PowerCheck,
   type RunRecord,
@@ -60,6 +61,8 @@ export function printStory({ run, folder, reused }: Asked): void {
   if (crossings && crossings.length > 0) printCrossings(record, crossings);
   const points = record.answer['points'] as readonly ScatterAnswerPoint[] | undefined;
   if (points) printSpectrum(record, points);
+  const matches = record.answer['matches'] as readonly MatchAnswerRow[] | undefined;
+  if (matches) printMatches(record, matches);
   printDoubts(record);
   say();
   sayFacts([['run ', reused ? `${folder}  (read back: same file, same options; --again computes anew)` : folder]]);
@@ -70,7 +73,8 @@ export function answerCode({ answer }: RunRecord): number {
   const modes = answer['modes'] as readonly unknown[] | undefined;
   const crossings = answer['crossings'] as readonly CrossingAnswer[] | undefined;
   const points = answer['points'] as readonly unknown[] | undefined;
-  const found = (modes ?? crossings ?? points ?? []).length > 0;
+  const matches = answer['matches'] as readonly unknown[] | undefined;
+  const found = (matches ?? modes ?? crossings ?? points ?? []).length > 0;
   const reached = answer['reached'] !== false && (crossings ?? []).every((c) => c.reached !== false);
   return found && reached && isWhole(answer) ? DONE : NOT_FOUND;
 }
@@ -140,6 +144,71 @@ function printModes(record: RunRecord, modes: readonly ModeAnswer[]): void {
       ]),
   );
   printRest(modes.length);
+}
+
+function printMatches(record: RunRecord, matches: readonly MatchAnswerRow[]): void {
+  const { answer } = record;
+  const band = bandColumn(record);
+  const knob = (answer['knob'] as string | undefined) ?? 'level D';
+  const channels = answer['channels'] as readonly string[];
+  const spectrum = (answer['spectrum'] ?? []) as readonly {
+    k: readonly [number, number];
+    kError: number;
+    trapped: boolean;
+  }[];
+  if (spectrum.length > 0) {
+    say();
+    sayTable(
+      [
+        { head: 'complex k' },
+        { head: 'Re', align: 'right' },
+        { head: 'Im', align: 'right' },
+        { head: '±', align: 'right' },
+        { head: '' },
+      ],
+      spectrum
+        .slice(0, MOST_ROWS)
+        .map((m) => [
+          '',
+          toError(m.k[0], m.kError),
+          toError(m.k[1], m.kError),
+          errorText(m.kError),
+          m.trapped ? 'trapped' : '',
+        ]),
+    );
+  }
+  if (matches.length === 0) return;
+  say();
+  sayTable(
+    [
+      { head: '', align: 'right' },
+      { head: band.head, align: 'right' },
+      { head: knob, align: 'right' },
+      { head: 'back', align: 'right' },
+      { head: 'absorbed', align: 'right' },
+      { head: 'to' },
+    ],
+    matches
+      .slice(0, MOST_ROWS)
+      .map((m, i) => [
+        String(i + 1),
+        band.write(m.k, m.kError),
+        withError(m.level, m.levelError),
+        m.reflected.toExponential(1),
+        significant(m.absorbed, 6),
+        channels.flatMap((c, j) => (m.out[j] > 1e-9 ? [`${c} ${significant(m.out[j], 4)}`] : [])).join(', '),
+      ]),
+  );
+  const [first] = matches;
+  say();
+  sayTable(
+    [{ head: 'drive of 1' }, { head: 'amplitude', align: 'right' }, { head: 'phase [deg]', align: 'right' }],
+    first.drive.map(({ channel, amplitude: [re, im] }) => [
+      channel,
+      significant(Math.hypot(re, im), 7),
+      ((Math.atan2(im, re) * 180) / Math.PI).toFixed(4),
+    ]),
+  );
 }
 
 /** Entries in decibels for up to this many channels: beyond, the reflections only. */

@@ -7,6 +7,7 @@ import { addDemo } from './demo.ts';
 import { INPUT_WRONG } from './exit-codes.ts';
 import { addExport } from './export.ts';
 import { reportFault } from './faults.ts';
+import { addMatch } from './match.ts';
 import { addMesh } from './mesh.ts';
 import { addModes } from './modes.ts';
 import { WellCommand } from './options.ts';
@@ -46,6 +47,7 @@ function commands(): WellCommand {
   addModes(program);
   addThreshold(program);
   addAbsorb(program);
+  addMatch(program);
   addSpectrum(program);
   addView(program);
   addExport(program);

@@ -14,7 +14,7 @@ export type FarMessage =
   | { readonly kind: 'done'; readonly output: unknown }
   | { readonly kind: 'fault'; readonly report: FaultReport };
 
-export type RunCommand = 'modes' | 'threshold' | 'absorb' | 'spectrum';
+export type RunCommand = 'modes' | 'threshold' | 'absorb' | 'spectrum' | 'match';
 
 export interface Along {
   readonly knob: string;
@@ -33,6 +33,9 @@ export interface Settings {
   /** `modes`. */
   readonly assignment?: Assignment;
   readonly qMin?: number;
+  /** `match`: channels or guides that take waves in. */
+  readonly inputs?: readonly string[];
+  readonly sense?: 'gain' | 'loss';
   /** `spectrum`: points over the band. */
   readonly points?: number;
   /** `threshold` and `absorb`; null: the default of the device. */

@@ -9,6 +9,11 @@ import {
   deviceSize,
   findAbsorption,
   findKnobCrossings,
+  findKnobMatches,
+  findMatches,
+  inputsOf,
+  knobMatchRecord,
+  matchRecord,
   findModes,
   findScattering,
   spectrumRecord,
@@ -72,6 +77,20 @@ function computeRun(input: RunInput): RunOutput {
       im: 0,
     }));
     return spectrumRecord(device, findScattering(device, ks, { digits, progress }), context);
+  }
+  if (command === 'match') {
+    const { inputs = [], sense = 'loss' } = input.settings;
+    const request = { inputs, sense, digits, qMin: qMin!, progress };
+    if (!along) {
+      const most = levelMax === null || levelMax === undefined ? {} : { levelMax };
+      return matchRecord(device, findMatches(device, { ...request, ...most }), sense, context);
+    }
+    const at = (value: number): Device =>
+      readDevice(text, context.deviceFile, { ...read, knobs: { ...read.knobs, [along.knob]: value } });
+    const found = findKnobMatches(at, { ...request, range: along.range });
+    return found.length === 0
+      ? null
+      : knobMatchRecord(device, along.knob, found, inputsOf(found[0].openings, inputs), context);
   }
   if (along) {
     const { knob, range } = along;

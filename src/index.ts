@@ -44,6 +44,15 @@ export {
 export { defaultLevelMax, type CrossingsRequest } from './questions/crossings.ts';
 export type { AxisMode } from './questions/polish-crossing.ts';
 export { prepare, type Prepared, type Scope } from './questions/prepare.ts';
+export {
+  findKnobMatches,
+  findMatches,
+  inputsOf,
+  type MatchAnswer,
+  type MatchRequest,
+  type RealMatch,
+} from './questions/match.ts';
+export { knobMatchRecord, matchRecord } from './questions/match-record.ts';
 export { findScattering, type ScatterAnswer, type ScatterPoint, type ScatterRequest } from './questions/scatter.ts';
 export { spectrumRecord } from './questions/scatter-record.ts';
 export { prepareOpenings, type DeviceChannel, type PreparedOpenings } from './questions/prepare-openings.ts';
@@ -80,6 +89,7 @@ export type {
   RunField,
   RunMark,
   RunRecord,
+  MatchAnswerRow,
   ScatterAnswerPoint,
 } from './results/format.ts';
 export { fieldSampler } from './results/evaluate.ts';

@@ -99,6 +99,23 @@ export interface ScatterAnswerPoint {
   readonly reciprocity: number;
 }
 
+/** A reflectionless mode at real k, with the driven solve of an independent mesh that proves it. */
+export interface MatchAnswerRow {
+  readonly k: number;
+  readonly kError: number;
+  /** Loss or pump, or the knob's value. */
+  readonly level: number;
+  readonly levelError: number;
+  readonly drive: readonly { readonly channel: string; readonly amplitude: Pair }[];
+  /** Power out of every channel for unit power in. */
+  readonly out: readonly number[];
+  readonly reflected: number;
+  readonly absorbed: number;
+  readonly balance: number;
+  /** The same on the mesh of the search. */
+  readonly sameMesh: { readonly reflected: number; readonly absorbed: number; readonly balance: number };
+}
+
 /** A mode on the real axis: a lasing threshold (pump) or a coherent absorption point (loss). */
 export interface CrossingAnswer {
   readonly k: number;

@@ -1,0 +1,103 @@
+// Which eigenvalues of a family that is nonlinear in k lie in an ellipse?
+
+import { add, type Complex, complex, type ComplexArray, multiply, scale } from '../numerics/complex.ts';
+import { eigenGeneral } from '../numerics/eigenvalues.ts';
+import { randomStream } from '../numerics/random.ts';
+import { singularForm } from '../numerics/singular-values.ts';
+import { transposeProduct } from './columns.ts';
+import type { Inverse } from './problem.ts';
+
+export interface ContourProblem {
+  readonly size: number;
+  factorize(k: Complex): Inverse;
+}
+
+export interface ContourRequest {
+  readonly center: Complex;
+  /** Half axes along Re k and Im k. */
+  readonly halfWidth: number;
+  readonly halfHeight: number;
+  readonly points: number;
+  /** Random columns; more than the eigenvalues expected. */
+  readonly columns: number;
+  readonly seed: number;
+}
+
+export interface ContourAnswer {
+  readonly ks: readonly Complex[];
+  /** False when as many showed as the columns can tell: the ellipse must be cut. */
+  readonly told: boolean;
+}
+
+/** Singular values below this share of the largest are noise of the trapezoid rule. */
+const RANK = 1e-9;
+
+/**
+ * Moments VᵀA(k)⁻¹V and V ᵀ(k − center)A⁻¹V over the ellipse by the trapezoid rule, whose error falls geometrically with
+ * the points; eigenvalues of their pencil on the numerical range. Candidates outside the ellipse by up to a fifth are kept:
+ * they are to be polished and judged by the caller.
+ * Source: W.-J. Beyn, Linear Algebra Appl. 436, 3839 (2012), with one random block on both sides.
+ */
+export function searchContour(problem: ContourProblem, request: ContourRequest): ContourAnswer {
+  const { center, halfWidth, halfHeight, points, columns, seed } = request;
+  const n = problem.size;
+  const random = randomStream(seed);
+  const V = new Float64Array(2 * n * columns);
+  for (let i = 0; i < V.length; i += 2) V[i] = random.normal();
+  const moments = [0, 1].map(() => new Float64Array(2 * columns * columns));
+  const x = new Float64Array(V.length);
+  for (let q = 0; q < points; q++) {
+    const t = (2 * Math.PI * (q + 0.5)) / points;
+    const offset = complex(halfWidth * Math.cos(t), halfHeight * Math.sin(t));
+    // dk/dt / (i points): weights of (1/2πi)∮
+    const weight = scale(complex(halfHeight * Math.cos(t), halfWidth * Math.sin(t)), 1 / points);
+    const inverse = problem.factorize(add(center, offset));
+    inverse.solveInto(x, V, columns);
+    inverse.release();
+    const small = transposeProduct(V, columns, x, columns, n);
+    const unit = multiply(weight, scale(offset, 1 / halfWidth));
+    [weight, unit].forEach((w, m) => addScaled(moments[m], small, w));
+  }
+  const { values, left, right } = singularForm(moments[0], columns, columns);
+  let rank = 0;
+  while (rank < columns && values[rank] > RANK * values[0] && values[0] > 0) rank++;
+  if (rank === 0) return { ks: [], told: true };
+  // B = Uᴴ M₁ W diag(1/σ)
+  const B = new Float64Array(2 * rank * rank);
+  for (let j = 0; j < rank; j++) {
+    const w = new Float64Array(2 * columns);
+    for (let l = 0; l < columns; l++) {
+      const [re, im] = [right[2 * (l + j * columns)], right[2 * (l + j * columns) + 1]];
+      for (let i = 0; i < columns; i++) {
+        const at = 2 * (i + l * columns);
+        w[2 * i] += moments[1][at] * re - moments[1][at + 1] * im;
+        w[2 * i + 1] += moments[1][at] * im + moments[1][at + 1] * re;
+      }
+    }
+    for (let i = 0; i < rank; i++) {
+      let re = 0;
+      let im = 0;
+      for (let l = 0; l < columns; l++) {
+        const [a, b] = [left[2 * (l + i * columns)], -left[2 * (l + i * columns) + 1]];
+        re += a * w[2 * l] - b * w[2 * l + 1];
+        im += a * w[2 * l + 1] + b * w[2 * l];
+      }
+      B[2 * (i + j * rank)] = re / values[j];
+      B[2 * (i + j * rank) + 1] = im / values[j];
+    }
+  }
+  const { values: roots } = eigenGeneral(B, rank);
+  const ks: Complex[] = [];
+  for (let i = 0; i < rank; i++) {
+    const offset = complex(roots[2 * i] * halfWidth, roots[2 * i + 1] * halfWidth);
+    if ((offset.re / halfWidth) ** 2 + (offset.im / halfHeight) ** 2 <= 1.44) ks.push(add(center, offset));
+  }
+  return { ks, told: rank < columns };
+}
+
+function addScaled(out: ComplexArray, a: ComplexArray, w: Complex): void {
+  for (let i = 0; i < a.length; i += 2) {
+    out[i] += w.re * a[i] - w.im * a[i + 1];
+    out[i + 1] += w.re * a[i + 1] + w.im * a[i];
+  }
+}
