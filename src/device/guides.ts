@@ -1,9 +1,10 @@
 // Which guides does the file describe?
 
 import type { Shape } from '../geometry/curves.ts';
+import { containsPoint } from '../geometry/inside.ts';
 import { polygon } from '../geometry/shapes.ts';
 import { METRES } from '../materials/spectral-units.ts';
-import { listNames, nearestName } from './findings.ts';
+import { listNames, nearestName, showNumber } from './findings.ts';
 import type { Path } from './findings.ts';
 import type { Material } from './materials.ts';
 import type { Device, Guide } from './model.ts';
@@ -121,6 +122,53 @@ function readWidth(
   // millimetres to metres to units of the file, rounded to the digits of the table
   return Number(((standard.width * 1e-3) / metres).toPrecision(12));
 }
+
+/**
+ * Refuses guides whose end does not stand free: what lies beyond the port line must be nothing, and what lies before it
+ * the background alone, for there the guide is closed by its own modes.
+ */
+export function checkPorts(device: Pick<Device, 'guides' | 'enclosure' | 'bodies'>, log: Log): void {
+  const guides = device.guides ?? [];
+  guides.forEach((guide, i) => {
+    const [dx, dy] = guideDirection(guide);
+    const at = (s: number, t: number): [number, number] => [
+      guide.from[0] + s * dx - t * dy,
+      guide.from[1] + s * dy + t * dx,
+    ];
+    const across = Array.from({ length: PORT_SAMPLES }, (_, j) => ((j + 0.5) / PORT_SAMPLES - 0.5) * guide.width);
+    const step = 1e-6 * guide.width;
+    const spaces = [
+      ...(device.enclosure?.spaces ?? []).map((shape) => ({ name: 'the enclosure', shape })),
+      ...guides
+        .filter((other) => other !== guide)
+        .map((other) => ({ name: `guide ${other.name}`, shape: guideStretch(other, 0, other.length) })),
+    ];
+    const beyond = spaces.find(({ shape }) => across.some((t) => containsPoint(shape, at(guide.length + step, t))));
+    const length = `length ${showNumber(guide.length)}`;
+    if (beyond)
+      log.report(
+        ['guides', i],
+        `guide ${guide.name} with ${length}, whose end lies inside ${beyond.name}`,
+        'an end that stands free, for from there the guide runs to infinity',
+        'make the guide longer, or turn it away',
+      );
+    const body = device.bodies.find(({ shape }) =>
+      across.some(
+        (t) => containsPoint(shape, at(guide.length - step, t)) || containsPoint(shape, at(guide.length + step, t)),
+      ),
+    );
+    if (body)
+      log.report(
+        ['guides', i],
+        `guide ${guide.name} with ${length}, at whose end lies the body ${body.name}`,
+        'the background alone at the end, for there the guide is closed by its own modes',
+        'make the guide longer, or the body shorter',
+      );
+  });
+}
+
+/** Points across a port line at which its surroundings are looked at. */
+const PORT_SAMPLES = 24;
 
 /** The stretch of a guide between two distances from its beginning, as a shape. */
 export function guideStretch(guide: Pick<Guide, 'from' | 'angle' | 'width'>, start: number, end: number): Shape {

@@ -10,7 +10,7 @@ import type { Material } from './materials.ts';
 import type { Device } from './model.ts';
 import { numberReader, openLog } from './numbers.ts';
 import type { Log } from './numbers.ts';
-import { readGuides } from './guides.ts';
+import { checkPorts, readGuides } from './guides.ts';
 import { weighBodies } from './pump.ts';
 import { checkSanity } from './sanity.ts';
 import type { DeviceInput } from './schema.ts';
@@ -69,6 +69,7 @@ export function readDevice(text: string, fileName: string, options: ReadOptions 
     ...walls,
     ...(guides.length > 0 ? { guides } : {}),
   };
+  checkPorts(device, log);
   checkSanity(device, placed, log);
   log.throwIfAny();
   return device;

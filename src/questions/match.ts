@@ -148,8 +148,10 @@ const SEARCH_ORDER = 5;
 const OWN_MESH = 0.8;
 const SEED = 4711;
 /** Points and columns of one contour; columns bound the modes that one contour can tell. */
-const POINTS = 24;
+const POINTS = 28;
 const COLUMNS = 16;
+/** Smallest aspect of an ellipse, either way. */
+const FLATTEST = 0.5;
 /** Most modes expected in one contour. */
 const PER_CONTOUR = 5;
 
@@ -188,14 +190,16 @@ function searchBand(
       return;
     }
     const middle = (low + high) / 2;
-    const halfWidth = ((high - low) / 2) * 1.15;
+    // flat or slim ellipses would need points by the hundred: their trapezoid error is exp(−points × atanh(aspect))
+    const half = ((high - low) / 2) * 1.15;
+    const halfHeight = Math.max(1.3 * slope * high, FLATTEST * half);
+    const halfWidth = Math.max(half, FLATTEST * halfHeight);
     const answer = searchContour(
       { size, factorize: (k) => closed.factorize(k, 0, assignment) },
       {
         center: complex(middle),
         halfWidth,
-        // a flat ellipse would need points by the hundred
-        halfHeight: Math.max(1.3 * slope * high, 0.35 * halfWidth),
+        halfHeight,
         points: POINTS,
         columns: Math.min(COLUMNS, size),
         seed: SEED,
