@@ -606,8 +606,12 @@ function falsePosition<T extends { readonly k: Complex }>(
     else a = { ...a, weight: a.weight / 2 };
     b = here;
   }
-  return { value: best.value, solved: best.solved };
+  // two modes on either side of the bracket leave a jump, not a root
+  return Math.abs(best.solved.k.im) <= ROOT * best.solved.k.re ? { value: best.value, solved: best.solved } : null;
 }
+
+/** A root of Im k is one when |Im k| falls below this share of Re k. */
+const ROOT = 1e-10;
 
 function nearest(list: readonly Complex[], k: Complex): Complex | null {
   return list.reduce<Complex | null>(
