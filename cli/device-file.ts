@@ -33,7 +33,7 @@ export function refuseWalls({ path, device }: DeviceFile): void {
     path,
     device.symmetry ? 'a device with symmetry lines' : 'a device with walls around it',
     'open space all around: this command works with the waves of the rim',
-    'ask "wavewell modes" (with --zeros for incoming waves) or "wavewell spectrum"',
+    'ask "wavewell match" (--in none --pump: thresholds; --in with all guides: coherent absorption), "modes" or "spectrum"',
   );
 }
 

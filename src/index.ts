@@ -44,14 +44,8 @@ export {
 export { defaultLevelMax, type CrossingsRequest } from './questions/crossings.ts';
 export type { AxisMode } from './questions/polish-crossing.ts';
 export { prepare, type Prepared, type Scope } from './questions/prepare.ts';
-export {
-  findKnobMatches,
-  findMatches,
-  inputsOf,
-  type MatchAnswer,
-  type MatchRequest,
-  type RealMatch,
-} from './questions/match.ts';
+export { findMatches, inputsOf, type MatchAnswer, type MatchRequest, type RealMatch } from './questions/match.ts';
+export { findKnobMatches } from './questions/knob-match.ts';
 export { knobMatchRecord, matchRecord } from './questions/match-record.ts';
 export { findScattering, type ScatterAnswer, type ScatterPoint, type ScatterRequest } from './questions/scatter.ts';
 export { spectrumRecord } from './questions/scatter-record.ts';

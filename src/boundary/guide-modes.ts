@@ -22,13 +22,15 @@ export function transverseFunction(ends: GuideEnds, width: number, j: number, t:
 }
 
 /**
- * β = √(κ² − q²), κ = n_b k: positive above cutoff, +i|β| below it (decaying), continued from the real axis with
- * the branch cut from the cutoff downward, √(κ − q) = e^{iπ/4} √(−i(κ − q)).
+ * β = √(κ² − q²), κ = n_b k: positive above cutoff, +i|β| below it (decaying), continued analytically from the real κ
+ * `from`: √(κ − q)√(κ + q) from above the cutoff, i√(q − κ)√(q + κ) from below. With `from` = Re κ the branch cut runs
+ * from the cutoff downward.
  */
-export function propagation(kappa: Complex, q: number): Complex {
-  const turned = principalRoot({ re: kappa.im, im: -(kappa.re - q) });
-  const down = multiply(turned, complex(Math.SQRT1_2, Math.SQRT1_2));
-  return multiply(down, principalRoot({ re: kappa.re + q, im: kappa.im }));
+export function propagation(kappa: Complex, q: number, from = kappa.re): Complex {
+  const sum = principalRoot({ re: kappa.re + q, im: kappa.im });
+  if (from > q) return multiply(principalRoot({ re: kappa.re - q, im: kappa.im }), sum);
+  const below = principalRoot({ re: q - kappa.re, im: -kappa.im });
+  return multiply(complex(-below.im, below.re), sum);
 }
 
 function principalRoot(a: Complex): Complex {

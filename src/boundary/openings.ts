@@ -32,8 +32,13 @@ export interface Opening {
   channelName(j: number): string;
   /** Whether the wave of function j carries power at real k. */
   propagates(j: number, k: number): boolean;
-  /** Logarithmic derivatives α⁺′/α⁺ (outgoing) or α⁻′/α⁻, outward, of functions 0 … count − 1. */
-  slopes(k: Complex, count: number, direction: 'outgoing' | 'incoming'): ComplexArray;
+  /** Real k at which the wave of function j begins to carry power: a branch point of its slope. 0 where it always does. */
+  cutoff(j: number): number;
+  /**
+   * Logarithmic derivatives α⁺′/α⁺ (outgoing) or α⁻′/α⁻, outward, of functions 0 … count − 1, continued from the real
+   * k `from` (Re k if absent). What does not carry power there decays outward in either direction.
+   */
+  slopes(k: Complex, count: number, direction: 'outgoing' | 'incoming', from?: number): ComplexArray;
   /** α⁺_j and α⁻_j on the opening. */
   waves(k: Complex, count: number): { readonly outgoing: ComplexArray; readonly incoming: ComplexArray };
 }
@@ -59,8 +64,9 @@ export function guideOpening(input: GuideOpeningInput): Opening {
   const { name, tag, from, direction, width, ends, length, reference, index, parity } = input;
   const modeOf = (j: number): number => (parity === null ? j : parity === 'even' ? 2 * j : 2 * j + 1);
   const share = parity === null ? 1 : Math.SQRT2;
-  const beta = (j: number, k: Complex): Complex =>
-    propagation(scale(k, index), transverseWavenumber(ends, width, modeOf(j)));
+  const propagates = (j: number, k: number): boolean => index * k > transverseWavenumber(ends, width, modeOf(j));
+  const beta = (j: number, k: Complex, from = k.re): Complex =>
+    propagation(scale(k, index), transverseWavenumber(ends, width, modeOf(j)), index * from);
   return {
     name,
     tag,
@@ -72,13 +78,13 @@ export function guideOpening(input: GuideOpeningInput): Opening {
     functionsFor: (unknowns) => Math.min(MOST_FUNCTIONS, unknowns + 2),
     variation: (j) => transverseWavenumber(ends, width, modeOf(j)),
     channelName: (j) => `${name}.${modeOf(j)}`,
-    propagates: (j, k) => index * k > transverseWavenumber(ends, width, modeOf(j)),
-    slopes(k, count, way) {
+    propagates,
+    cutoff: (j) => transverseWavenumber(ends, width, modeOf(j)) / index,
+    slopes(k, count, way, from = k.re) {
       const out = new Float64Array(2 * count);
       for (let j = 0; j < count; j++) {
-        const b = beta(j, k);
-        // modes below cutoff keep the decaying sign in every assignment
-        const sign = way === 'incoming' && Math.abs(b.re) > Math.abs(b.im) ? -1 : 1;
+        const b = beta(j, k, from);
+        const sign = way === 'incoming' && propagates(j, from) ? -1 : 1;
         out[2 * j] = -sign * b.im;
         out[2 * j + 1] = sign * b.re;
       }
@@ -139,6 +145,7 @@ export function rimOpening({ tag, center, radius, index, parity }: RimOpeningInp
     variation: (j) => kept[j].m / radius,
     channelName: (j) => `open.${kept[j].sine ? 'sin' : 'cos'}${kept[j].m}`,
     propagates: () => true,
+    cutoff: () => 0,
     slopes(k, count, way) {
       const kappa = scale(k, index);
       const most = kept[count - 1]?.m ?? 0;

@@ -1,6 +1,6 @@
 // Which eigenvalues of a family that is nonlinear in k lie in an ellipse?
 
-import { add, type Complex, complex, type ComplexArray, multiply, scale } from '../numerics/complex.ts';
+import { add, type Complex, complex, type ComplexArray, modulus, multiply, scale } from '../numerics/complex.ts';
 import { eigenGeneral } from '../numerics/eigenvalues.ts';
 import { randomStream } from '../numerics/random.ts';
 import { singularForm } from '../numerics/singular-values.ts';
@@ -31,6 +31,8 @@ export interface ContourAnswer {
 
 /** Singular values below this share of the largest are noise of the trapezoid rule. */
 const RANK = 1e-9;
+/** So are those below this share of what was added up: an ellipse that holds nothing leaves only that. */
+const CANCELLED = 1e-10;
 
 /**
  * Moments VᵀA(k)⁻¹V and V ᵀ(k − center)A⁻¹V over the ellipse by the trapezoid rule, whose error falls geometrically with
@@ -46,6 +48,7 @@ export function searchContour(problem: ContourProblem, request: ContourRequest):
   for (let i = 0; i < V.length; i += 2) V[i] = random.normal();
   const moments = [0, 1].map(() => new Float64Array(2 * columns * columns));
   const x = new Float64Array(V.length);
+  let added = 0;
   for (let q = 0; q < points; q++) {
     const t = (2 * Math.PI * (q + 0.5)) / points;
     const offset = complex(halfWidth * Math.cos(t), halfHeight * Math.sin(t));
@@ -55,12 +58,14 @@ export function searchContour(problem: ContourProblem, request: ContourRequest):
     inverse.solveInto(x, V, columns);
     inverse.release();
     const small = transposeProduct(V, columns, x, columns, n);
+    added += modulus(weight) * Math.sqrt(small.reduce((sum, v) => sum + v * v, 0));
     const unit = multiply(weight, scale(offset, 1 / halfWidth));
     [weight, unit].forEach((w, m) => addScaled(moments[m], small, w));
   }
   const { values, left, right } = singularForm(moments[0], columns, columns);
   let rank = 0;
-  while (rank < columns && values[rank] > RANK * values[0] && values[0] > 0) rank++;
+  const least = Math.max(RANK * values[0], CANCELLED * added);
+  while (rank < columns && values[rank] > least) rank++;
   if (rank === 0) return { ks: [], told: true };
   // B = Uᴴ M₁ W diag(1/σ)
   const B = new Float64Array(2 * rank * rank);

@@ -34,7 +34,8 @@ export interface ClosedOpenings {
   readonly family: DeviceFamily;
   readonly functionals: readonly OpeningFunctionals[];
   readonly channels: readonly ChannelPlace[];
-  factorize(k: Complex, level: number, assignment?: Assignment): Factorization;
+  /** Waves are continued from the real k `from`, Re k if absent. */
+  factorize(k: Complex, level: number, assignment?: Assignment, from?: number): Factorization;
   /** out = A x, or ∂A/∂k x (of the waves by a central difference of their slopes). */
   multiplyInto(
     out: ComplexArray,
@@ -63,22 +64,27 @@ export function closeOpenings(
   const p = 1 / (device.polarization === 'Ez' ? device.background.permeability : device.background.permittivity);
   const analysis = analyse(patternOf(family, functionals));
   const outgoing: Assignment = () => 'outgoing';
-  const slopesOf = (o: number, k: Complex, assignment: Assignment): ComplexArray => {
+  const slopesOf = (o: number, k: Complex, assignment: Assignment, from = k.re): ComplexArray => {
     const { opening, count } = functionals[o];
-    const out = opening.slopes(k, count, 'outgoing');
+    const out = opening.slopes(k, count, 'outgoing', from);
     let back: ComplexArray | null = null;
     for (let j = 0; j < count; j++) {
       if (assignment(o, j) === 'outgoing') continue;
-      back ??= opening.slopes(k, count, 'incoming');
+      back ??= opening.slopes(k, count, 'incoming', from);
       out.set(back.subarray(2 * j, 2 * j + 2), 2 * j);
     }
     return out;
   };
-  const factorize = (k: Complex, level: number, assignment: Assignment = outgoing): Factorization => {
+  const factorize = (
+    k: Complex,
+    level: number,
+    assignment: Assignment = outgoing,
+    from: number = k.re,
+  ): Factorization => {
     const weights = family.weights(k, level, 'value');
     return analysis.factorize((e, into) => {
       if (e >= triangles) {
-        fillOpening(into, functionals[e - triangles], slopesOf(e - triangles, k, assignment), -p);
+        fillOpening(into, functionals[e - triangles], slopesOf(e - triangles, k, assignment, from), -p);
         return;
       }
       fillElement(into, e, space.mesh.regions[e], operator.elements, 'outgoing', weights);
@@ -111,7 +117,7 @@ export function closeOpenings(
       if (part === 'byLevel') return out;
       functionals.forEach(({ unknowns, count, values }, o) => {
         const slopes =
-          part === 'value' ? slopesOf(o, k, assignment) : slopeRates(k, (at) => slopesOf(o, at, assignment));
+          part === 'value' ? slopesOf(o, k, assignment) : slopeRates(k, (at) => slopesOf(o, at, assignment, k.re));
         const load = new Float64Array(2 * count);
         for (let j = 0; j < count; j++) {
           const u = project(o, j, x);

@@ -5,7 +5,8 @@ import { fromWavenumber } from '../materials/spectral-units.ts';
 import { cautionsFor } from '../results/cautions.ts';
 import type { MatchAnswerRow, Pair } from '../results/format.ts';
 import { significant } from '../results/number-text.ts';
-import { drivenField, type MatchAnswer, type RealMatch } from './match.ts';
+import { drivenField } from './driven.ts';
+import type { MatchAnswer, RealMatch } from './match.ts';
 import { openBook, type RunContext, type RunParts } from './record.ts';
 
 /** The run of `match` by level: the complex spectrum as marks, each real match with its driven field and its proof. */

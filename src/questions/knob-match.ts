@@ -1,0 +1,144 @@
+// At which value of a knob do chosen channels send nothing back at a real k?
+
+import { DEFAULT_DIGITS, HIGHEST_ORDER, resolutionFor } from '../accuracy/resolution.ts';
+import type { Device } from '../device/model.ts';
+import { add, type Complex, modulus, scale, subtract } from '../numerics/complex.ts';
+import { refineClosed } from './closed-newton.ts';
+import { driveOf, drivenPowers } from './driven.ts';
+import {
+  assignmentOf,
+  inputsOf,
+  type MatchRequest,
+  OWN_MESH,
+  type RealMatch,
+  SEARCH_ORDER,
+  searchBand,
+} from './match.ts';
+import { prepareOpenings } from './prepare-openings.ts';
+
+export interface MatchKnobRequest extends MatchRequest {
+  /** Values of the knob to search between. */
+  readonly range: readonly [number, number];
+}
+
+/** Values of the knob at which all modes are searched before any is polished. */
+const SAMPLES = 7;
+
+/**
+ * Reflectionless modes at real k with a number of the device file as parameter: sampled over the range, joined by nearest
+ * k, each change of sign of Im k brought to zero by regula falsi (Illinois) on meshes of its own.
+ */
+export function findKnobMatches(deviceAt: (value: number) => Device, request: MatchKnobRequest): readonly RealMatch[] {
+  const digits = request.digits ?? DEFAULT_DIGITS;
+  const { range, progress } = request;
+  const sense = request.sense ?? 'loss';
+  const slope = 1 / (2 * (request.qMin ?? 10));
+  const resolution = resolutionFor(digits);
+  const order = resolution.order + 1;
+  const at = (value: number, refine = 1) => {
+    const device = deviceAt(value);
+    const { kMin, kMax } = device.band;
+    const openings = prepareOpenings(device, { kMin, kMax, slope }, resolution, refine);
+    const inputs = inputsOf(openings, request.inputs);
+    return { device, openings, inputs, assignment: assignmentOf(openings, inputs), kMin, kMax };
+  };
+  const values = Array.from({ length: SAMPLES }, (_, i) => range[0] + ((range[1] - range[0]) * i) / (SAMPLES - 1));
+  const samples = values.map((value, i) => {
+    progress?.('sampling the knob', i / SAMPLES);
+    const here = at(value);
+    const closed = here.openings.closed(SEARCH_ORDER, sense);
+    const { ks } = searchBand(here.openings, closed, here.assignment, {
+      kMin: here.kMin,
+      kMax: here.kMax,
+      slope: 1.5 * slope,
+    });
+    return ks.flatMap((near) => refineClosed(closed, 0, here.assignment, near, null)?.k ?? []);
+  });
+  const solve = (value: number, near: Complex, p: number) => {
+    const here = at(value);
+    const closed = here.openings.closed(p, sense);
+    const found = refineClosed(closed, 0, here.assignment, near, null);
+    return found && { ...here, ...found, closed };
+  };
+  const matches: RealMatch[] = [];
+  for (let i = 0; i + 1 < SAMPLES; i++)
+    for (const a of samples[i]) {
+      const b = nearest(samples[i + 1], a);
+      if (!b || a.im * b.im > 0 || modulus(subtract(a, b)) > 0.1 * modulus(a)) continue;
+      progress?.('polishing', i / SAMPLES);
+      const roots: { value: number; solved: NonNullable<ReturnType<typeof solve>> }[] = [];
+      for (const p of [order - 1, order]) {
+        const root = falsePosition((value, near) => solve(value, near, p), [values[i], values[i + 1]], [a, b]);
+        if (root) roots.push(root);
+      }
+      const last = roots.at(-1);
+      if (roots.length < 2 || !last) continue;
+      const { value, solved } = last;
+      const real = { k: solved.k.re, level: 0, vector: solved.vector };
+      if (real.k < solved.kMin || real.k > solved.kMax) continue;
+      if (
+        matches.some(
+          (m) => Math.abs(m.k - real.k) < 1e-7 * real.k && Math.abs(m.level - value) < 1e-6 * (range[1] - range[0]),
+        )
+      )
+        continue;
+      const drive = driveOf(solved.closed, real, solved.inputs);
+      const own = at(value, OWN_MESH).openings.closed(Math.min(order + 1, HIGHEST_ORDER), sense);
+      matches.push({
+        k: real.k,
+        kError: Math.abs(roots[1].solved.k.re - roots[0].solved.k.re) + 1e-13 * real.k,
+        level: value,
+        levelError: Math.abs(roots[1].value - roots[0].value) + 1e-13 * Math.abs(value),
+        drive,
+        forward: {
+          sameMesh: drivenPowers(solved.closed, real, drive, solved.inputs),
+          ownMesh: drivenPowers(own, real, drive, solved.inputs),
+        },
+        vector: solved.vector,
+        openings: solved.openings,
+        order,
+      });
+    }
+  return matches.sort((a, b) => a.k - b.k);
+}
+
+/** Illinois steps until Im k is rounding; the nearest k of the last step guides the next search. */
+function falsePosition<T extends { readonly k: Complex }>(
+  solve: (value: number, near: Complex) => T | null,
+  bracket: readonly [number, number],
+  ks: readonly [Complex, Complex],
+): { value: number; solved: T } | null {
+  const ends = bracket.map((value, i) => {
+    const solved = solve(value, ks[i]);
+    return solved && { value, solved, weight: solved.k.im };
+  });
+  if (!ends[0] || !ends[1] || ends[0].weight * ends[1].weight > 0) return null;
+  let a = ends[0];
+  let b = ends[1];
+  let best = Math.abs(a.weight) < Math.abs(b.weight) ? a : b;
+  for (let step = 0; step < 30; step++) {
+    const value = (a.value * b.weight - b.value * a.weight) / (b.weight - a.weight);
+    const t = (value - a.value) / (b.value - a.value);
+    const near = add(scale(a.solved.k, 1 - t), scale(b.solved.k, t));
+    const solved = solve(value, near);
+    if (!solved) return null;
+    const here = { value, solved, weight: solved.k.im };
+    if (Math.abs(solved.k.im) <= Math.abs(best.solved.k.im)) best = here;
+    if (Math.abs(solved.k.im) <= 1e-13 * solved.k.re || Math.abs(a.value - b.value) <= 1e-12 * Math.abs(value)) break;
+    if (here.weight * b.weight < 0) a = b;
+    else a = { ...a, weight: a.weight / 2 };
+    b = here;
+  }
+  // two modes on either side of the bracket leave a jump, not a root
+  return Math.abs(best.solved.k.im) <= ROOT * best.solved.k.re ? { value: best.value, solved: best.solved } : null;
+}
+
+/** A root of Im k is one when |Im k| falls below this share of Re k. */
+const ROOT = 1e-10;
+
+function nearest(list: readonly Complex[], k: Complex): Complex | null {
+  return list.reduce<Complex | null>(
+    (best, other) => (!best || modulus(subtract(other, k)) < modulus(subtract(best, k)) ? other : best),
+    null,
+  );
+}
