@@ -291,7 +291,7 @@ function printCrossings(record: RunRecord, crossings: readonly AxisAnswer[]): vo
 }
 
 /** The forward check of the first absorption point, on both meshes, and the strongest channels of its drive. */
-function printProof({ forward, drive, drives, outgoingExpected }: AxisAnswer): void {
+function printProof({ forward, drive, drives, outgoingExpected, driveError }: AxisAnswer): void {
   if (!forward) return;
   say();
   say(`Forward check: ${powers(forward)}`);
@@ -306,7 +306,8 @@ function printProof({ forward, drive, drives, outgoingExpected }: AxisAnswer): v
     ({ m, amplitude }) => `m = ${String(m)}: ${size(amplitude).toFixed(3)} ∠ ${degrees(amplitude).toFixed(1)}°`,
   );
   const more = terms.length > strong.length ? ` and ${String(terms.length - strong.length)} weaker` : '';
-  say(`Drive: ${list.join(', ')}${more}; total power 1.`);
+  const off = driveError === undefined ? '' : `, amplitudes within ${errorText(driveError)}`;
+  say(`Drive: ${list.join(', ')}${more}; total power 1${off}.`);
   if ((drives ?? []).length > 1)
     say(ink.dim(`  first of ${String(drives!.length)} orthonormal drives: any mixture of them is absorbed as well`));
 }

@@ -76,7 +76,7 @@ export function findScattering(device: Device, ks: readonly Complex[], request: 
   const points = ks.map((k, i) => {
     progress?.('scattering', i / ks.length);
     const point = scatterAt(openings, order + 1, sense, k, level);
-    return { ...point, error: rest * point.error };
+    return { ...point, error: rest * point.error + ROUNDING };
   });
   return {
     channels: openings.channels,
@@ -101,13 +101,19 @@ function changesAt(
 }
 
 /**
- * Error left after the last change, in units of it: r/(1 − r) for changes that shrink by r, where that is above 1. At metal
- * edges r is near 0.7 (windows in a guide: true error 2 to 3 times the last change); smooth fields have r below 0.1.
+ * Error left after the last change, in units of it: r/(1 − r) for changes that shrink by r. At metal edges r is near 0.7
+ * (windows in a guide: true error 2 to 3 times the last change); smooth fields have r of 0.1 and less, and no two steps are
+ * trusted to tell less than `LEAST_RATIO`.
  */
 function whatRemains(before: number, last: number): number {
-  const r = Math.min(0.9, last / Math.max(before, 1e-300));
-  return Math.max(1, r / (1 - r));
+  const r = Math.min(0.9, Math.max(last / Math.max(before, 1e-300), LEAST_RATIO));
+  return r / (1 - r);
 }
+
+const LEAST_RATIO = 0.03;
+
+/** Of an entry of S, absolute: measured 1e-15 to 5e-15. */
+const ROUNDING = 1e-14;
 
 /** One point at an order, its error by the order below. */
 export function scatterAt(

@@ -16,6 +16,8 @@ import {
   thresholdRows,
 } from './rows.ts';
 
+import { walledCases } from './walled-cases.ts';
+
 export { driveRows };
 
 /** A question with an exact answer. */
@@ -118,6 +120,7 @@ export function allCases(): Case[] {
     ...clusterCrossings(),
     ...growth(),
     ...polygons(),
+    ...walledCases(),
   ];
 }
 
