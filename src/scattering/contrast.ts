@@ -1,7 +1,7 @@
 // How do the bodies of a device couple to regular waves: loads, amplitudes, absorbed power?
 
 import type { Device } from '../device/model.ts';
-import { tabulateBasis } from '../elements/basis.ts';
+import { functionCount, tabulateBasis } from '../elements/basis.ts';
 import { MAP_STRIDE, mapInto, tabulateMap } from '../elements/curved-map.ts';
 import type { Space } from '../elements/space.ts';
 import { BACKGROUND } from '../mesh/mesh.ts';
@@ -163,11 +163,7 @@ interface ContrastPoint {
 function visitPoints(problem: ContrastProblem, visit: (point: ContrastPoint, waves: RegularWaves) => void): void {
   const { device, space, k, level, sense, order } = problem;
   const { mesh, starts, functions, signs } = space;
-  const rule = triangleRule(2 * space.order + EXTRA_DEGREE);
-  const basis = tabulateBasis(space.order, rule.points);
-  const nb = basis.values.length / rule.weights.length;
-  const table = tabulateMap(rule.points, mesh.curveOrder);
-  const map = new Float64Array(MAP_STRIDE * rule.weights.length);
+  const tables = new Map<number, PointTable>();
   const outside = regionMaterial(device, BACKGROUND, 0, sense);
   const waves = regularWaves(order, k * Math.sqrt(device.background.permittivity * device.background.permeability));
   const zero = { re: 0, im: 0 };
@@ -176,7 +172,7 @@ function visitPoints(problem: ContrastProblem, visit: (point: ContrastPoint, wav
     weight: 0,
     start: 0,
     count: 0,
-    basis: new Float64Array(3 * nb),
+    basis: new Float64Array(3 * functionCount(space.order)),
     dp: zero,
     dq: zero,
   };
@@ -187,7 +183,11 @@ function visitPoints(problem: ContrastProblem, visit: (point: ContrastPoint, wav
     point.dp = subtract(inside.p, outside.p);
     point.dq = scale(subtract(inside.q, outside.q), -k * k);
     if (point.dp.re === 0 && point.dp.im === 0 && point.dq.re === 0 && point.dq.im === 0) continue;
-    mapInto(map, mesh, t, table);
+    const degree = localDegree(space, t);
+    let table = tables.get(degree);
+    if (!table) tables.set(degree, (table = tableFor(degree, mesh.curveOrder)));
+    const { rule, basis, map, functions: nb } = table;
+    mapInto(map, mesh, t, table.table);
     point.region = region;
     point.start = starts[t]!;
     point.count = starts[t + 1] - starts[t];
@@ -212,6 +212,37 @@ function visitPoints(problem: ContrastProblem, visit: (point: ContrastPoint, wav
       visit(point, waves);
     }
   }
+}
+
+/** What the triangles of one degree share. */
+interface PointTable {
+  readonly rule: ReturnType<typeof triangleRule>;
+  readonly basis: ReturnType<typeof tabulateBasis>;
+  readonly functions: number;
+  readonly table: ReturnType<typeof tabulateMap>;
+  readonly map: Float64Array;
+}
+
+function tableFor(degree: number, curveOrder: number): PointTable {
+  const rule = triangleRule(2 * degree + EXTRA_DEGREE);
+  return {
+    rule,
+    basis: tabulateBasis(degree, rule.points),
+    functions: functionCount(degree),
+    table: tabulateMap(rule.points, curveOrder),
+    map: new Float64Array(MAP_STRIDE * rule.weights.length),
+  };
+}
+
+/** Highest degree of a shape function on triangle t: edges have the order of their higher neighbour. */
+function localDegree({ mesh, orders }: Space, t: number): number {
+  let degree = orders[t];
+  for (let i = 3 * t; i < 3 * t + 3; i++) {
+    const e = mesh.triangleEdges[i];
+    for (const side of [mesh.edgeTriangles[2 * e], mesh.edgeTriangles[2 * e + 1]])
+      if (side >= 0) degree = Math.max(degree, orders[side]);
+  }
+  return degree;
 }
 
 /** Value and gradient of a finite-element field at the point. */
