@@ -81,7 +81,7 @@ export function findCrossings(device: Device, sense: LevelSense, request: Crossi
     digits,
     direction,
     sense,
-    wanted: (g) => isSharp(g, digits) || mayCross(g, levelMax, sense),
+    wanted: (g) => isSharp(g, digits) || mayCross(g, levelMax, sense, LARGEST_COARSE_ERROR * modulus(g.k)),
     ...(request.limits ? { limits: request.limits } : {}),
     ...(request.progress ? { progress: request.progress } : {}),
   });
@@ -226,9 +226,15 @@ const sharpOrders = (x: number): number => x + 4 * Math.cbrt(x);
 /** What a mode at level 0 lacks to the axis; negative beyond it. */
 const toAxis = (k: Complex, sense: LevelSense): number => (sense === 'gain' ? -k.im : k.im);
 
-/** A mode whose tangent needs much more than the largest level is not followed; twice leaves room for curvature. */
-function mayCross(group: EigenGroup, levelMax: number, sense: LevelSense): boolean {
+/** What the search at low order may be off by, relative (measured: 1e-3): so near the axis nothing is decided yet. */
+const LARGEST_COARSE_ERROR = 2e-3;
+
+/**
+ * A mode whose tangent needs much more than the largest level is not followed; twice leaves room for curvature, `slack`
+ * for what k may be off by.
+ */
+function mayCross(group: EigenGroup, levelMax: number, sense: LevelSense, slack = 0): boolean {
   const toward = sense === 'gain' ? group.slope.im : -group.slope.im;
   const distance = toAxis(group.k, sense);
-  return distance > 0 && toward > 0 && distance / toward < 2 * levelMax;
+  return distance > -slack && toward > 0 && distance < 2 * levelMax * toward + slack;
 }
