@@ -9,6 +9,7 @@ describe('against exact values', () => {
   test.each([
     'disk n=2 Ez m=10 k=6.542 threshold',
     'disk n=3.3 Hz m=1 k=1.110 threshold',
+    'disk n=3.3 Ez m=10 k=4.024 threshold',
     'disk in background 1.444 Hz m=4 threshold',
     'layered core_shell Ez m=3 pumped 0 threshold',
     'layered metal_core Hz m=3 pumped 1 threshold',
