@@ -7,9 +7,40 @@ import { singularForm } from '../numerics/singular-values.ts';
 import { transposeProduct } from './columns.ts';
 import type { Inverse } from './problem.ts';
 
+/** One family, or several over the same contour, seen through the same random columns V. */
 export interface ContourProblem {
-  readonly size: number;
-  factorize(k: Complex): Inverse;
+  /** Random columns; more than the eigenvalues expected. */
+  readonly columns: number;
+  /** VᵀA(k)⁻¹V of each family, columns × columns. */
+  sample(k: Complex): readonly ComplexArray[];
+}
+
+/** One family by its factorizations. */
+export function sampledInverse(
+  size: number,
+  columns: number,
+  seed: number,
+  factorize: (k: Complex) => Inverse,
+): ContourProblem {
+  const V = randomBlock(size, columns, seed);
+  const x = new Float64Array(V.length);
+  return {
+    columns,
+    sample(k) {
+      const inverse = factorize(k);
+      inverse.solveInto(x, V, columns);
+      inverse.release();
+      return [transposeProduct(V, columns, x, columns, size)];
+    },
+  };
+}
+
+/** Real normal numbers, as complex columns. */
+export function randomBlock(size: number, columns: number, seed: number): ComplexArray {
+  const random = randomStream(seed);
+  const V = new Float64Array(2 * size * columns);
+  for (let i = 0; i < V.length; i += 2) V[i] = random.normal();
+  return V;
 }
 
 export interface ContourRequest {
@@ -18,9 +49,6 @@ export interface ContourRequest {
   readonly halfWidth: number;
   readonly halfHeight: number;
   readonly points: number;
-  /** Random columns; more than the eigenvalues expected. */
-  readonly columns: number;
-  readonly seed: number;
 }
 
 export interface ContourAnswer {
@@ -40,29 +68,43 @@ const CANCELLED = 1e-10;
  * they are to be polished and judged by the caller.
  * Source: W.-J. Beyn, Linear Algebra Appl. 436, 3839 (2012), with one random block on both sides.
  */
-export function searchContour(problem: ContourProblem, request: ContourRequest): ContourAnswer {
-  const { center, halfWidth, halfHeight, points, columns, seed } = request;
-  const n = problem.size;
-  const random = randomStream(seed);
-  const V = new Float64Array(2 * n * columns);
-  for (let i = 0; i < V.length; i += 2) V[i] = random.normal();
-  const moments = [0, 1].map(() => new Float64Array(2 * columns * columns));
-  const x = new Float64Array(V.length);
-  let added = 0;
+export function searchContour(problem: ContourProblem, request: ContourRequest): readonly ContourAnswer[] {
+  const { center, halfWidth, halfHeight, points } = request;
+  const { columns } = problem;
+  let sums: Sums[] = [];
   for (let q = 0; q < points; q++) {
     const t = (2 * Math.PI * (q + 0.5)) / points;
     const offset = complex(halfWidth * Math.cos(t), halfHeight * Math.sin(t));
     // dk/dt / (i points): weights of (1/2πi)∮
     const weight = scale(complex(halfHeight * Math.cos(t), halfWidth * Math.sin(t)), 1 / points);
-    const inverse = problem.factorize(add(center, offset));
-    inverse.solveInto(x, V, columns);
-    inverse.release();
-    const small = transposeProduct(V, columns, x, columns, n);
-    added += modulus(weight) * Math.sqrt(small.reduce((sum, v) => sum + v * v, 0));
+    const samples = problem.sample(add(center, offset));
+    if (q === 0) sums = samples.map(({ length }) => emptySums(length));
     const unit = multiply(weight, scale(offset, 1 / halfWidth));
-    [weight, unit].forEach((w, m) => addScaled(moments[m], small, w));
+    samples.forEach((small, f) => {
+      sums[f].added += modulus(weight) * Math.sqrt(small.reduce((sum, v) => sum + v * v, 0));
+      addScaled(sums[f].zeroth, small, weight);
+      addScaled(sums[f].first, small, unit);
+    });
   }
-  const { values, left, right } = singularForm(moments[0], columns, columns);
+  return sums.map((sum) => tell(sum, columns, request));
+}
+
+/** Moments of one family, and what was added up to make the zeroth. */
+interface Sums {
+  readonly zeroth: ComplexArray;
+  readonly first: ComplexArray;
+  added: number;
+}
+
+const emptySums = (length: number): Sums => ({
+  zeroth: new Float64Array(length),
+  first: new Float64Array(length),
+  added: 0,
+});
+
+function tell({ zeroth, first, added }: Sums, columns: number, request: ContourRequest): ContourAnswer {
+  const { center, halfWidth, halfHeight } = request;
+  const { values, left, right } = singularForm(zeroth, columns, columns);
   let rank = 0;
   const least = Math.max(RANK * values[0], CANCELLED * added);
   while (rank < columns && values[rank] > least) rank++;
@@ -75,8 +117,8 @@ export function searchContour(problem: ContourProblem, request: ContourRequest):
       const [re, im] = [right[2 * (l + j * columns)], right[2 * (l + j * columns) + 1]];
       for (let i = 0; i < columns; i++) {
         const at = 2 * (i + l * columns);
-        w[2 * i] += moments[1][at] * re - moments[1][at + 1] * im;
-        w[2 * i + 1] += moments[1][at] * im + moments[1][at + 1] * re;
+        w[2 * i] += first[at] * re - first[at + 1] * im;
+        w[2 * i + 1] += first[at] * im + first[at + 1] * re;
       }
     }
     for (let i = 0; i < rank; i++) {

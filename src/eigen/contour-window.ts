@@ -1,7 +1,7 @@
 // Which eigenvalues of a family that is nonlinear in k, with branch points on the real axis, lie in a wedge about it?
 
 import { type Complex, complex, modulus, subtract } from '../numerics/complex.ts';
-import { searchContour } from './contour-search.ts';
+import { type ContourProblem, sampledInverse, searchContour } from './contour-search.ts';
 import type { Inverse } from './problem.ts';
 
 export interface BranchedProblem {
@@ -9,6 +9,9 @@ export interface BranchedProblem {
   /** A(k) on the sheet that is analytic around the real k `from`, as far as the next branch points to either side. */
   factorize(k: Complex, from: number): Inverse;
 }
+
+/** Several families with the same branch points: what a contour needs of them on the sheet around the real k `from`. */
+export type BranchedFamilies = (from: number) => ContourProblem;
 
 export interface ContourWindowRequest {
   readonly kMin: number;
@@ -25,6 +28,8 @@ export interface ContourWindowRequest {
 
 export interface ContourWindowAnswer {
   readonly ks: readonly Complex[];
+  /** Of each family. */
+  readonly families: readonly (readonly Complex[])[];
   /** False when some part could not be told: too many eigenvalues in too little room, or a branch point within. */
   readonly covered: boolean;
   readonly contours: number;
@@ -40,7 +45,7 @@ interface Box {
 
 /** Points and columns of one contour; columns bound the eigenvalues that one contour can tell. */
 const POINTS = 28;
-const COLUMNS = 16;
+export const COLUMNS = 16;
 /** Most eigenvalues expected in one box. */
 const PER_BOX = 5;
 /** Slimmest box, either way: the trapezoid error of an ellipse is exp(−points × atanh(aspect)). */
@@ -56,18 +61,27 @@ const OVERLAP = 0.02;
 /** Candidates nearer than this share of k are one. */
 const SAME = 1e-6;
 
+/** The eigenvalues of one family; see `searchWedges`. */
+export const searchWedge = (problem: BranchedProblem, request: ContourWindowRequest): ContourWindowAnswer => {
+  const columns = Math.min(COLUMNS, problem.size);
+  return searchWedges(
+    (from) => sampledInverse(problem.size, columns, request.seed, (k) => problem.factorize(k, from)),
+    request,
+  );
+};
+
 /**
  * The wedge is cut at the branch points, each part into boxes until their ellipses tell all they hold: cut boxes get
  * smaller in both directions, so that the search ends. Candidates are to be polished by the caller.
  */
-export function searchWedge(problem: BranchedProblem, request: ContourWindowRequest): ContourWindowAnswer {
-  const { kMin, kMax, slope, expected, seed, progress } = request;
+export function searchWedges(problem: BranchedFamilies, request: ContourWindowRequest): ContourWindowAnswer {
+  const { kMin, kMax, slope, expected, progress } = request;
   const branches = [...new Set(request.branchPoints)].sort((a, b) => a - b);
   const inside = branches.filter((c) => c > kMin && c < kMax);
-  const ks: Complex[] = [];
+  const families: Complex[][] = [];
   let covered = true;
   let contours = 0;
-  const visit = (box: Box, from: number): void => {
+  const visit = (box: Box, sampled: ContourProblem): void => {
     const { left, right, low, high } = box;
     const width = right - left;
     const height = high - low;
@@ -78,13 +92,13 @@ export function searchWedge(problem: BranchedProblem, request: ContourWindowRequ
           { low, high: y },
           { low: y, high },
         ])
-          visit({ ...box, ...part }, from);
+          visit({ ...box, ...part }, sampled);
       else
         for (const part of [
           { left, right: x },
           { left: x, right },
         ])
-          visit({ ...box, ...part }, from);
+          visit({ ...box, ...part }, sampled);
     };
     if (Math.min(width, height) < SLIMMEST * Math.max(width, height)) return cut();
     const small = Math.max(width, height) < SMALLEST * right;
@@ -97,23 +111,25 @@ export function searchWedge(problem: BranchedProblem, request: ContourWindowRequ
     }
     if (branched) return cut();
     contours++;
-    const answer = searchContour(
-      { size: problem.size, factorize: (k) => problem.factorize(k, from) },
-      { ...ellipse, points: POINTS, columns: Math.min(COLUMNS, problem.size), seed },
-    );
-    if (!answer.told) {
+    const answers = searchContour(sampled, { ...ellipse, points: POINTS });
+    if (answers.some(({ told }) => !told)) {
       if (!small) return cut();
       covered = false;
     }
-    for (const k of answer.ks) if (isIn(box, k) && !ks.some((other) => near(other, k))) ks.push(k);
+    answers.forEach((answer, f) => {
+      const ks = (families[f] ??= []);
+      for (const k of answer.ks) if (isIn(box, k) && !ks.some((other) => near(other, k))) ks.push(k);
+    });
     progress?.((left - kMin) / (kMax - kMin));
   };
   const ends = [kMin, ...inside, kMax];
   for (let i = 0; i + 1 < ends.length; i++) {
     const [left, right] = [ends[i], ends[i + 1]];
-    if (right > left) visit({ left, right, low: -slope * right, high: slope * right }, (left + right) / 2);
+    if (!(right > left)) continue;
+    const from = (left + right) / 2;
+    visit({ left, right, low: -slope * right, high: slope * right }, problem(from));
   }
-  return { ks, covered, contours };
+  return { ks: families[0] ?? [], families, covered, contours };
 }
 
 interface Ellipse {

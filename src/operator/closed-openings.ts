@@ -34,6 +34,10 @@ export interface ClosedOpenings {
   readonly family: DeviceFamily;
   readonly functionals: readonly OpeningFunctionals[];
   readonly channels: readonly ChannelPlace[];
+  /** 1/μ (`Ez`) or 1/ε (`Hz`) of the background, which carries the openings. */
+  readonly p: number;
+  /** Real k at which a wave of an opening begins to carry power. */
+  readonly branchPoints: readonly number[];
   /** Waves are continued from the real k `from`, Re k if absent. */
   factorize(k: Complex, level: number, assignment?: Assignment, from?: number): Factorization;
   /** out = A x, or ∂A/∂k x (of the waves by a central difference of their slopes). */
@@ -111,6 +115,10 @@ export function closeOpenings(
     family,
     functionals,
     channels,
+    p,
+    branchPoints: functionals.flatMap(({ opening, count }) =>
+      Array.from({ length: count }, (_, j) => opening.cutoff(j)).filter((c) => c > 0),
+    ),
     factorize,
     multiplyInto(out, k, level, part, x, assignment = outgoing) {
       family.multiplyInto(out, k, level, part, x, 1);

@@ -3,17 +3,12 @@
 import { DEFAULT_DIGITS, HIGHEST_ORDER, resolutionFor } from '../accuracy/resolution.ts';
 import type { Device } from '../device/model.ts';
 import { add, type Complex, modulus, scale, subtract } from '../numerics/complex.ts';
+import type { LevelSense } from '../operator/device-family.ts';
 import { refineClosed } from './closed-newton.ts';
 import { driveOf, drivenPowers } from './driven.ts';
-import {
-  assignmentOf,
-  inputsOf,
-  type MatchRequest,
-  OWN_MESH,
-  type RealMatch,
-  SEARCH_ORDER,
-  searchBand,
-} from './match.ts';
+import { drivenModel, searchModel } from './driven-model.ts';
+import { assignmentOf, inputsOf, type MatchRequest, OWN_MESH, type RealMatch } from './match.ts';
+import { expectedModes } from './mode-count.ts';
 import { prepareOpenings } from './prepare-openings.ts';
 
 export interface MatchKnobRequest extends MatchRequest {
@@ -42,20 +37,23 @@ export function findKnobMatches(deviceAt: (value: number) => Device, request: Ma
     const inputs = inputsOf(openings, request.inputs);
     return { device, openings, inputs, assignment: assignmentOf(openings, inputs), kMin, kMax };
   };
-  const values = Array.from({ length: SAMPLES }, (_, i) => range[0] + ((range[1] - range[0]) * i) / (SAMPLES - 1));
+  const made = new Map<number, ReturnType<typeof at>>();
+  const known = (value: number): ReturnType<typeof at> => {
+    let here = made.get(value);
+    if (!here) {
+      if (made.size > 3) made.delete(made.keys().next().value!);
+      made.set(value, (here = at(value)));
+    }
+    return here;
+  };
+  const step = (range[1] - range[0]) / (SAMPLES - 1);
+  const values = Array.from({ length: SAMPLES }, (_, i) => range[0] + step * i);
   const samples = values.map((value, i) => {
     progress?.('sampling the knob', i / SAMPLES);
-    const here = at(value);
-    const closed = here.openings.closed(SEARCH_ORDER, sense);
-    const { ks } = searchBand(here.openings, closed, here.assignment, {
-      kMin: here.kMin,
-      kMax: here.kMax,
-      slope: 1.5 * slope,
-    });
-    return ks.flatMap((near) => refineClosed(closed, 0, here.assignment, near, null)?.k ?? []);
+    return candidates(deviceAt(value), request.inputs, sense, 1.5 * slope);
   });
   const solve = (value: number, near: Complex, p: number) => {
-    const here = at(value);
+    const here = known(value);
     const closed = here.openings.closed(p, sense);
     const found = refineClosed(closed, 0, here.assignment, near, null);
     return found && { ...here, ...found, closed };
@@ -65,11 +63,23 @@ export function findKnobMatches(deviceAt: (value: number) => Device, request: Ma
     for (const a of samples[i]) {
       const b = nearest(samples[i + 1], a);
       if (!b || a.im * b.im > 0 || modulus(subtract(a, b)) > 0.1 * modulus(a)) continue;
-      progress?.('polishing', i / SAMPLES);
       const roots: { value: number; solved: NonNullable<ReturnType<typeof solve>> }[] = [];
       for (const p of [order - 1, order]) {
-        const root = falsePosition((value, near) => solve(value, near, p), [values[i], values[i + 1]], [a, b]);
-        if (root) roots.push(root);
+        progress?.(`order ${p}`, i / SAMPLES);
+        const at = (value: number, near: Complex) => solve(value, near, p);
+        // the next order's root is near the last; the search's sign may be wrong beside an end of its interval
+        const before = roots.at(-1);
+        const brackets: Bracket[] = before
+          ? [{ ends: around(before.value, 0.02 * step), ks: [before.solved.k, before.solved.k] }]
+          : [];
+        brackets.push({ ends: [values[i], values[i + 1]], ks: [a, b] });
+        brackets.push({ ends: [values[i] - step / 2, values[i + 1] + step / 2], ks: [a, b] });
+        for (const { ends, ks } of brackets) {
+          const root = falsePosition(at, ends, ks, 0.1 * 10 ** -digits);
+          if (!root) continue;
+          roots.push(root);
+          break;
+        }
       }
       const last = roots.at(-1);
       if (roots.length < 2 || !last) continue;
@@ -102,11 +112,25 @@ export function findKnobMatches(deviceAt: (value: number) => Device, request: Ma
   return matches.sort((a, b) => a.k - b.k);
 }
 
+/** k of the modes that the inputs drive, to a few digits. */
+function candidates(device: Device, names: readonly string[], sense: LevelSense, slope: number): readonly Complex[] {
+  const resolution = resolutionFor(SAMPLE_DIGITS);
+  const { kMin, kMax } = device.band;
+  const openings = prepareOpenings(device, { kMin, kMax, slope }, resolution);
+  const closed = openings.closed(resolution.order, sense);
+  const model = drivenModel(closed, 0, kMin, kMax);
+  return searchModel(model, closed, [inputsOf(openings, names)], { kMin, kMax, slope }, expectedModes(device))
+    .families[0];
+}
+
+const SAMPLE_DIGITS = 3;
+
 /** Illinois steps until Im k is rounding; the nearest k of the last step guides the next search. */
 function falsePosition<T extends { readonly k: Complex }>(
   solve: (value: number, near: Complex) => T | null,
   bracket: readonly [number, number],
   ks: readonly [Complex, Complex],
+  rounding: number,
 ): { value: number; solved: T } | null {
   const ends = bracket.map((value, i) => {
     const solved = solve(value, ks[i]);
@@ -129,12 +153,24 @@ function falsePosition<T extends { readonly k: Complex }>(
     else a = { ...a, weight: a.weight / 2 };
     b = here;
   }
-  // two modes on either side of the bracket leave a jump, not a root
-  return Math.abs(best.solved.k.im) <= ROOT * best.solved.k.re ? { value: best.value, solved: best.solved } : null;
+  // two modes on either side of the bracket leave a jump, not a root; a new mesh leaves one below the digits
+  const jump = modulus(subtract(a.solved.k, b.solved.k));
+  const isRoot =
+    Math.abs(best.solved.k.im) <= ROOT * best.solved.k.re ||
+    (Math.abs(a.value - b.value) <= 1e-9 * Math.abs(a.value) && jump <= rounding * best.solved.k.re);
+  return isRoot ? { value: best.value, solved: best.solved } : null;
 }
 
 /** A root of Im k is one when |Im k| falls below this share of Re k. */
 const ROOT = 1e-10;
+
+/** Where a root lies: values of the knob and what k is near there. */
+interface Bracket {
+  readonly ends: readonly [number, number];
+  readonly ks: readonly [Complex, Complex];
+}
+
+const around = (value: number, by: number): [number, number] => [value - by, value + by];
 
 function nearest(list: readonly Complex[], k: Complex): Complex | null {
   return list.reduce<Complex | null>(

@@ -86,8 +86,7 @@ export function findMatches(device: Device, request: MatchRequest): MatchAnswer 
   const inputs = inputsOf(openings, request.inputs);
   const assignment = assignmentOf(openings, inputs);
   const order = resolution.order + 1;
-  const search = openings.closed(Math.min(order, SEARCH_ORDER), sense);
-  const { ks, covered } = searchBand(openings, search, assignment, scope, progress);
+  const { ks, covered } = searchBand(device, request.inputs, sense, scope, progress);
   const modes: ReflectionlessMode[] = [];
   for (const [i, near] of ks.entries()) {
     progress?.('polishing', i / ks.length);
@@ -123,8 +122,12 @@ export function findMatches(device: Device, request: MatchRequest): MatchAnswer 
   };
 }
 
-/** The search works at a low order: candidates are polished in the order wanted. */
-export const SEARCH_ORDER = 5;
+/**
+ * The search works on a mesh for so few digits and at so low an order: k to about 1e-4, corners included, for a tenth of
+ * the time. Candidates are polished on the mesh wanted.
+ */
+const SEARCH_DIGITS = 2;
+const SEARCH_ORDER = 5;
 /** Triangles of the independent mesh, as a share of the rule. */
 export const OWN_MESH = 0.8;
 const SEED = 4711;
@@ -144,24 +147,23 @@ export function assignmentOf({ channels }: PreparedOpenings, inputs: readonly bo
 }
 
 /** Candidates in the scope; windows end where a wave of an opening begins to carry power. */
-export function searchBand(
-  { prepared: { device }, openings }: PreparedOpenings,
-  closed: ClosedOpenings,
-  assignment: Assignment,
+function searchBand(
+  device: Device,
+  names: readonly string[],
+  sense: LevelSense,
   { kMin, kMax, slope }: Scope,
   progress?: Progress,
 ): { readonly ks: readonly Complex[]; readonly covered: boolean } {
-  const branchPoints = openings.flatMap((opening, o) => {
-    const { count } = closed.functionals[o];
-    return Array.from({ length: count }, (_, j) => opening.cutoff(j)).filter((c) => c > 0);
-  });
+  const prepared = prepareOpenings(device, { kMin, kMax, slope }, resolutionFor(SEARCH_DIGITS));
+  const assignment = assignmentOf(prepared, inputsOf(prepared, names));
+  const closed = prepared.closed(SEARCH_ORDER, sense);
   return searchWedge(
     { size: closed.family.size, factorize: (k, from) => closed.factorize(k, 0, assignment, from) },
     {
       kMin,
       kMax,
       slope,
-      branchPoints,
+      branchPoints: closed.branchPoints,
       expected: expectedModes(device),
       seed: SEED,
       progress: (done) => progress?.('searching', done),
