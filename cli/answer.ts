@@ -7,6 +7,7 @@ import {
   errorText,
   FREQUENCY_UNITS,
   fromWavenumber,
+  type ChoiceAnswerRow,
   type MatchAnswerRow,
   type ModeAnswer,
   type PowerCheck,
@@ -28,6 +29,8 @@ type AxisAnswer = Omit<CrossingAnswer, 'bodies'> & {
 
 /** Rows of a table before the rest is only counted: the file and `--json` hold all. */
 const MOST_ROWS = 40;
+/** Choices of six channels are all shown. */
+const MOST_CHOICES = 62;
 
 /** Prints the run as people or scripts want it, and returns the exit code. */
 export function printAnswer(asked: Asked | null, json: boolean): number {
@@ -63,6 +66,8 @@ export function printStory({ run, folder, reused }: Asked): void {
   if (points) printSpectrum(record, points);
   const matches = record.answer['matches'] as readonly MatchAnswerRow[] | undefined;
   if (matches) printMatches(record, matches);
+  const choices = record.answer['choices'] as readonly ChoiceAnswerRow[] | undefined;
+  if (choices) printChoices(record, choices);
   printDoubts(record);
   say();
   sayFacts([['run ', reused ? `${folder}  (read back: same file, same options; --again computes anew)` : folder]]);
@@ -74,7 +79,8 @@ export function answerCode({ answer }: RunRecord): number {
   const crossings = answer['crossings'] as readonly CrossingAnswer[] | undefined;
   const points = answer['points'] as readonly unknown[] | undefined;
   const matches = answer['matches'] as readonly unknown[] | undefined;
-  const found = (matches ?? modes ?? crossings ?? points ?? []).length > 0;
+  const choices = (answer['choices'] as readonly ChoiceAnswerRow[] | undefined)?.filter((c) => c.k !== null);
+  const found = (matches ?? choices ?? modes ?? crossings ?? points ?? []).length > 0;
   const reached = answer['reached'] !== false && (crossings ?? []).every((c) => c.reached !== false);
   return found && reached && isWhole(answer) ? DONE : NOT_FOUND;
 }
@@ -211,6 +217,37 @@ function printMatches(record: RunRecord, matches: readonly MatchAnswerRow[]): vo
   );
 }
 
+/** Im k above 0 waits for loss, below 0 for gain; other dimensions may do instead. */
+function printChoices(record: RunRecord, choices: readonly ChoiceAnswerRow[]): void {
+  const band = bandColumn(record);
+  say();
+  sayTable(
+    [
+      { head: 'in' },
+      { head: band.head, align: 'right' },
+      { head: 'Re k', align: 'right' },
+      { head: 'Im k', align: 'right' },
+      { head: '±', align: 'right' },
+      { head: 'Q', align: 'right' },
+    ],
+    choices
+      .slice(0, MOST_CHOICES)
+      .map(({ inputs, k, kError, q }) => [
+        inputs.join(', '),
+        ...(k && kError !== null && q !== null
+          ? [
+              band.write(k[0], kError),
+              toError(k[0], kError),
+              toError(k[1], kError),
+              errorText(kError),
+              significant(q, 3),
+            ]
+          : ['', '', 'none in the window', '', '']),
+      ]),
+  );
+  printMore(choices.length - MOST_CHOICES);
+}
+
 /** Entries in decibels for up to this many channels: beyond, the reflections only. */
 const MOST_ENTRIES = 3;
 
@@ -321,7 +358,11 @@ const size = ([re, im]: readonly [number, number]): number => Math.hypot(re, im)
 const degrees = ([re, im]: readonly [number, number]): number => (Math.atan2(im, re) * 180) / Math.PI;
 
 function printRest(count: number): void {
-  if (count > MOST_ROWS) say(ink.dim(`  … and ${String(count - MOST_ROWS)} more: --json and export list all`));
+  printMore(count - MOST_ROWS);
+}
+
+function printMore(count: number): void {
+  if (count > 0) say(ink.dim(`  … and ${String(count)} more: --json and export list all`));
 }
 
 /** The file's own quantity; wavelength where that is k, which has a column already. */

@@ -5,14 +5,15 @@ import { readdirSync } from 'node:fs';
 import { basename, join } from 'node:path';
 import { DEFAULT_Q_MIN, deviceFigure, nearestName } from '../src/index.ts';
 import { answerCode, printStory, quoted } from './answer.ts';
-import { ask, type Asked, shown } from './ask.ts';
-import { openDevice } from './device-file.ts';
+import { ask, type Asked, type Place, shown } from './ask.ts';
+import { type DeviceFile, openDevice } from './device-file.ts';
 import { NOT_FOUND } from './exit-codes.ts';
 import { exportFiles, readFirstFile } from './export.ts';
 import { InputError } from './faults.ts';
 import { ink, say, sayCautions, sayFacts } from './paper.ts';
 import { pictureFiles } from './pictures.ts';
-import { commonSettings } from './settings.ts';
+import { alongSettings, commonSettings } from './settings.ts';
+import type { Settings } from './tasks.ts';
 import { packageFolder } from './version.ts';
 import { writeFiles } from './write-files.ts';
 
@@ -54,6 +55,20 @@ async function runDemo(name: string, options: { out?: string; again?: true }): P
     code = Math.max(code, answerCode(asked.run.record));
     say();
   };
+  const story = { name, file, place, settings, tell };
+  await (name in JUNCTIONS ? junctionStory(story) : laserStory(story));
+  process.exitCode = code === 0 ? 0 : NOT_FOUND;
+}
+
+interface Story {
+  readonly name: string;
+  readonly file: DeviceFile;
+  readonly place: Place & { readonly base: string };
+  readonly settings: Settings;
+  readonly tell: (title: string, asked: Asked) => void;
+}
+
+async function laserStory({ name, file, place, settings, tell }: Story): Promise<void> {
   const modes = (await ask('modes', file, { ...settings, assignment: 'poles', qMin: DEFAULT_Q_MIN }, place))!;
   tell('1. Where does it resonate?', modes);
   // On two cores these two take the time of one.
@@ -85,5 +100,34 @@ async function runDemo(name: string, options: { out?: string; again?: true }): P
   const cautions = [...new Set([threshold, absorb].flatMap(({ run }) => run.record.cautions))];
   // One that another holds within it needs no line of its own.
   sayCautions(cautions.filter((c) => !cautions.some((other) => other !== c && other.includes(c))));
-  process.exitCode = code === 0 ? 0 : NOT_FOUND;
+}
+
+/** Devices with guides: what comes in, and the knob that is trimmed. */
+const JUNCTIONS: Readonly<Record<string, { readonly inputs: readonly string[]; readonly knob: string }>> = {
+  'six-guide-star': { inputs: ['a', 'd', 'f'], knob: 'trim' },
+};
+
+async function junctionStory({ name, file, place, settings, tell }: Story): Promise<void> {
+  const { inputs, knob } = JUNCTIONS[name];
+  const qMin = DEFAULT_Q_MIN;
+  const every = (await ask('match', file, { ...settings, qMin, everyChoice: true }, place))!;
+  tell('1. Which inputs could be freed of reflection?', every);
+  const along = alongSettings({ knob, range: null }, file);
+  const match = await ask('match', file, { ...settings, inputs, sense: 'loss', qMin, levelMax: null, along }, place);
+  if (!match) throw new Error(`no value of ${knob} frees ${inputs.join(', ')} of reflection`);
+  tell(`2. Which ${knob} does it for ${inputs.join(', ')}, and where does the power go?`, match);
+  const out = join(place.base, name, 'story');
+  const [field] = match.run.record.fields;
+  const files = {
+    ...pictureFiles(out, 'device', deviceFigure(file.device)),
+    ...exportFiles(match.run, join(out, 'match'), { field: field.id, nodes: true, picture: true }),
+    ...readFirstFile(match.run, join(out, 'match')),
+  };
+  writeFiles(files);
+  say(ink.dim('── 3. Take it away'));
+  say(ink.bold(`Pictures (SVG, PNG) and the field (CSV) are in ${shown(out)}.`));
+  for (const path of Object.keys(files).filter((f) => /\.(csv|png)$/.test(f))) say(`  ${shown(path)}`);
+  say();
+  sayFacts([['see the waves', `npx wavewell view ${quoted(match.folder)}`]]);
+  sayCautions(match.run.record.cautions);
 }

@@ -17,7 +17,8 @@ import {
 import { alongSettings, commonSettings } from './settings.ts';
 
 interface MatchOptions extends SolveOptions {
-  readonly in: string;
+  readonly in?: string;
+  readonly everyChoice?: true;
   readonly pump?: true;
   readonly levelMax?: number;
   readonly qMin?: number;
@@ -29,10 +30,8 @@ export function addMatch(program: Command): void {
     .command('match')
     .description('reflectionless modes: chosen channels take waves in and send none back')
     .argument('<FILE>', 'device file')
-    .requiredOption(
-      '--in <NAMES>',
-      'guides or channels that waves come in through, with commas between; "none" for lasing',
-    )
+    .option('--in <NAMES>', 'guides or channels that waves come in through, with commas between; "none" for lasing')
+    .option('--every-choice', 'all choices of inputs, by their distance from the real axis; up to 8 channels')
     .option('--pump', 'the level is gain instead of loss')
     .option('--level-max <D>', 'largest loss (or pump) looked at', (text: string) => readAboveZero(text, '--level-max'))
     .option('--along <KNOB[=A,B]>', 'a knob as the parameter, over its range in the file or A to B', readAlong)
@@ -44,6 +43,15 @@ export function addMatch(program: Command): void {
     const { device } = file;
     if (isWalled(device) && !device.guides)
       throw new InputError(path, 'a closed device', 'guides, or open space around it', 'add a guide');
+    const qMin = options.qMin ?? DEFAULT_Q_MIN;
+    if (options.everyChoice) {
+      refuseBeside(options);
+      const settings = { ...commonSettings(options), qMin, everyChoice: true as const };
+      process.exitCode = printAnswer(await ask('match', file, settings, options), options.json === true);
+      return;
+    }
+    if (options.in === undefined)
+      throw new InputError('wavewell match', 'nothing that says what comes in', '--in NAMES, or --every-choice', 'write --in with guides or channels'); // prettier-ignore
     const names = options.in.split(',').map((name) => name.trim());
     const inputs = names.length === 1 && names[0] === 'none' ? [] : names;
     const guides = (device.guides ?? []).map((g) => g.name);
@@ -54,10 +62,16 @@ export function addMatch(program: Command): void {
       ...commonSettings(options),
       inputs,
       sense: options.pump ? ('gain' as const) : ('loss' as const),
-      qMin: options.qMin ?? DEFAULT_Q_MIN,
+      qMin,
       levelMax: options.levelMax ?? null,
       along: alongSettings(options.along, file),
     };
     process.exitCode = printAnswer(await ask('match', file, settings, options), options.json === true);
   });
+}
+
+function refuseBeside(options: MatchOptions): void {
+  const other = options.in !== undefined ? '--in' : options.along ? '--along' : options.pump ? '--pump' : null;
+  if (other !== null)
+    throw new InputError('option --every-choice', `--every-choice with ${other}`, 'one of them', 'leave one out');
 }

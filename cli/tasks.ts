@@ -36,6 +36,8 @@ export interface Settings {
   /** `match`: channels or guides that take waves in. */
   readonly inputs?: readonly string[];
   readonly sense?: 'gain' | 'loss';
+  /** `match`: all choices of inputs instead of one. */
+  readonly everyChoice?: true;
   /** `spectrum`: points over the band. */
   readonly points?: number;
   /** `threshold` and `absorb`; null: the default of the device. */

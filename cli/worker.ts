@@ -4,10 +4,12 @@ import { availableParallelism, totalmem } from 'node:os';
 import { parentPort, workerData } from 'node:worker_threads';
 import {
   absorbRecord,
+  choicesRecord,
   DEFAULT_Q_MIN,
   type Device,
   deviceSize,
   findAbsorption,
+  findChoices,
   findKnobCrossings,
   findKnobMatches,
   findMatches,
@@ -80,6 +82,8 @@ function computeRun(input: RunInput): RunOutput {
   }
   if (command === 'match') {
     const { inputs = [], sense = 'loss' } = input.settings;
+    if (input.settings.everyChoice)
+      return choicesRecord(device, findChoices(device, { digits, qMin: qMin!, progress }), context);
     const request = { inputs, sense, digits, qMin: qMin!, progress };
     if (!along) {
       const most = levelMax === null || levelMax === undefined ? {} : { levelMax };

@@ -46,7 +46,8 @@ export type { AxisMode } from './questions/polish-crossing.ts';
 export { prepare, type Prepared, type Scope } from './questions/prepare.ts';
 export { findMatches, inputsOf, type MatchAnswer, type MatchRequest, type RealMatch } from './questions/match.ts';
 export { findKnobMatches } from './questions/knob-match.ts';
-export { knobMatchRecord, matchRecord } from './questions/match-record.ts';
+export { findChoices, MOST_CHOICE_CHANNELS, type Choice, type ChoicesAnswer } from './questions/choices.ts';
+export { choicesRecord, knobMatchRecord, matchRecord } from './questions/match-record.ts';
 export { findScattering, type ScatterAnswer, type ScatterPoint, type ScatterRequest } from './questions/scatter.ts';
 export { spectrumRecord } from './questions/scatter-record.ts';
 export { prepareOpenings, type DeviceChannel, type PreparedOpenings } from './questions/prepare-openings.ts';
@@ -83,6 +84,7 @@ export type {
   RunField,
   RunMark,
   RunRecord,
+  ChoiceAnswerRow,
   MatchAnswerRow,
   ScatterAnswerPoint,
 } from './results/format.ts';

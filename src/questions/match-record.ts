@@ -3,7 +3,8 @@
 import type { Device } from '../device/model.ts';
 import { fromWavenumber } from '../materials/spectral-units.ts';
 import { cautionsFor } from '../results/cautions.ts';
-import type { MatchAnswerRow, Pair } from '../results/format.ts';
+import type { ChoiceAnswerRow, MatchAnswerRow, Pair } from '../results/format.ts';
+import type { ChoicesAnswer } from './choices.ts';
 import { significant } from '../results/number-text.ts';
 import { drivenField } from './driven.ts';
 import type { MatchAnswer, RealMatch } from './match.ts';
@@ -67,6 +68,52 @@ export function knobMatchRecord(
     knob,
     modes: [],
     notes: first.openings.prepared.notes,
+    cautions,
+  });
+}
+
+/** The run of `match` with every choice of inputs: a table and the complex plane, no fields. */
+export function choicesRecord(device: Device, answer: ChoicesAnswer, context: RunContext): RunParts {
+  const { channels } = answer;
+  const book = openBook(device, answer.openings.prepared, answer.order, context);
+  const cautions = cautionsFor('modes', device);
+  const rows = answer.choices.map(({ inputs, modes }): ChoiceAnswerRow => {
+    const [first, ...others] = modes.map((m) => [m.k.re, m.k.im] as const);
+    return {
+      inputs: channels.filter((_, i) => inputs[i]),
+      k: first ?? null,
+      kError: modes[0]?.kError ?? null,
+      q: first ? first[0] / (2 * Math.max(Math.abs(first[1]), modes[0].kError)) : null,
+      others,
+    };
+  });
+  rows.forEach((row, i) => {
+    if (!row.k) return;
+    book.marks.push({
+      id: `mark-${i + 1}`,
+      kind: 'zero',
+      k: [row.k[0], row.k[1]],
+      kError: row.kError!,
+      q: row.q!,
+      multiplicity: 1,
+      label: `in: ${row.inputs.join(', ')}`,
+      field: null,
+      path: null,
+      crossing: null,
+    });
+  });
+  const [first] = rows;
+  const sentence = first?.k
+    ? `Of ${rows.length} choices of inputs ${first.inputs.join(', ')} is nearest to no reflection at real k: ` +
+      `Im k = ${significant(first.k[1], 4)} at ${placeText(device, first.k[0])}.`
+    : `None of the ${rows.length} choices of inputs has a reflectionless mode in the band.`;
+  return book.close('match', sentence, cautions, {
+    channels,
+    choices: rows,
+    modes: [],
+    covered: answer.covered,
+    order: answer.order,
+    notes: answer.openings.prepared.notes,
     cautions,
   });
 }

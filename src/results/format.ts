@@ -116,6 +116,16 @@ export interface MatchAnswerRow {
   readonly sameMesh: { readonly reflected: number; readonly absorbed: number; readonly balance: number };
 }
 
+/** A choice of input channels with its reflectionless mode nearest to the real axis; null where the window has none. */
+export interface ChoiceAnswerRow {
+  readonly inputs: readonly string[];
+  readonly k: Readonly<Pair> | null;
+  readonly kError: number | null;
+  readonly q: number | null;
+  /** Complex k of its other modes in the window. */
+  readonly others: readonly Readonly<Pair>[];
+}
+
 /** A mode on the real axis: a lasing threshold (pump) or a coherent absorption point (loss). */
 export interface CrossingAnswer {
   readonly k: number;
