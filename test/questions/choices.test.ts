@@ -4,7 +4,6 @@ import { describe, expect, test } from 'vitest';
 import { readDevice } from '../../src/device/read.ts';
 import { modulus, subtract } from '../../src/numerics/complex.ts';
 import { findChoices } from '../../src/questions/choices.ts';
-import { findKnobMatches } from '../../src/questions/knob-match.ts';
 import { findMatches } from '../../src/questions/match.ts';
 
 /** Four guides about a round hall with two rods; `loss` is Im ε of one. */
