@@ -20,6 +20,8 @@ import { type GuideEnds, propagation, transverseFunction, transverseWavenumber }
  */
 export interface Opening {
   readonly name: string;
+  /** What it was made from: `makeOpening` makes it again. */
+  readonly spec: OpeningSpec;
   /** Tag of its edges in `Mesh.edgeFree`. */
   readonly tag: number;
   /** Values of functions 0 … count − 1 at a point of the opening. */
@@ -42,6 +44,14 @@ export interface Opening {
   /** α⁺_j and α⁻_j on the opening. */
   waves(k: Complex, count: number): { readonly outgoing: ComplexArray; readonly incoming: ComplexArray };
 }
+
+/** Numbers and words only, so that it can be stored. */
+export type OpeningSpec =
+  | ({ readonly kind: 'guide' } & GuideOpeningInput)
+  | ({ readonly kind: 'rim' } & RimOpeningInput);
+
+export const makeOpening = (spec: OpeningSpec): Opening =>
+  spec.kind === 'guide' ? guideOpening(spec) : rimOpening(spec);
 
 export interface GuideOpeningInput {
   readonly name: string;
@@ -70,6 +80,7 @@ export function guideOpening(input: GuideOpeningInput): Opening {
   return {
     name,
     tag,
+    spec: { ...input, kind: 'guide' },
     functionsInto(out, x, y, count) {
       const t = (y - from[1]) * direction[0] - (x - from[0]) * direction[1];
       for (let j = 0; j < count; j++) out[j] = share * transverseFunction(ends, width, modeOf(j), t);
@@ -132,6 +143,7 @@ export function rimOpening({ tag, center, radius, index, parity }: RimOpeningInp
   return {
     name: 'open',
     tag,
+    spec: { kind: 'rim', tag, center, radius, index, parity },
     functionsInto(out, x, y, count) {
       const phi = Math.atan2(y - center[1], x - center[0]);
       for (let j = 0; j < count; j++) {
