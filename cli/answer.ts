@@ -14,6 +14,8 @@ import {
   type RunRecord,
   type ScatterAnswerPoint,
   significant,
+  spectrumView,
+  type SpectrumView,
   toError,
   withError,
 } from '../src/index.ts';
@@ -54,7 +56,8 @@ export function printAnswer(asked: Asked | null, json: boolean): number {
 }
 
 /** Sentence, table, proof, and where the run is; the cautions are left to the caller. */
-export function printStory({ run, folder, reused }: Asked): void {
+export function printStory(asked: Asked): void {
+  const { run, folder, reused } = asked;
   const { record } = run;
   say(ink.bold(record.sentence));
   for (const note of (record.answer['notes'] ?? []) as readonly string[]) say(ink.dim(`Note: ${note}`));
@@ -63,7 +66,7 @@ export function printStory({ run, folder, reused }: Asked): void {
   if (modes && modes.length > 0) printModes(record, modes);
   if (crossings && crossings.length > 0) printCrossings(record, crossings);
   const points = record.answer['points'] as readonly ScatterAnswerPoint[] | undefined;
-  if (points) printSpectrum(record, points);
+  if (points) printSpectrum(record, spectrumView(asked.run));
   const matches = record.answer['matches'] as readonly MatchAnswerRow[] | undefined;
   if (matches) printMatches(record, matches);
   const choices = record.answer['choices'] as readonly ChoiceAnswerRow[] | undefined;
@@ -251,11 +254,11 @@ function printChoices(record: RunRecord, choices: readonly ChoiceAnswerRow[]): v
 /** Entries in decibels for up to this many channels: beyond, the reflections only. */
 const MOST_ENTRIES = 3;
 
-function printSpectrum(record: RunRecord, points: readonly ScatterAnswerPoint[]): void {
-  const names = record.answer['channels'] as readonly string[];
+function printSpectrum(record: RunRecord, { channels: names, points, matrix }: SpectrumView): void {
+  const n = names.length;
   const band = bandColumn(record);
   const pairs = names.flatMap((out, i) =>
-    names.flatMap((into, j) => (j > i || (names.length > MOST_ENTRIES && i !== j) ? [] : [{ i, j, out, into }])),
+    names.flatMap((into, j) => (j > i || (n > MOST_ENTRIES && i !== j) ? [] : [{ i, j, out, into }])),
   );
   const shownPairs = pairs.slice(0, 2 * MOST_ENTRIES);
   say();
@@ -263,21 +266,48 @@ function printSpectrum(record: RunRecord, points: readonly ScatterAnswerPoint[])
     [
       { head: band.head, align: 'right' },
       ...shownPairs.map(({ out, into }) => ({ head: `${into} → ${out} [dB]`, align: 'right' as const })),
+      { head: 'best absorbed', align: 'right' },
+      { head: 'delay × c', align: 'right' },
+      { head: 'least σ', align: 'right' },
       { head: '± |S|', align: 'right' },
       { head: 'balance', align: 'right' },
     ],
-    points
-      .slice(0, MOST_ROWS)
-      .map((p) => [
+    evenly(points.length).map((at) => {
+      const p = points[at];
+      const S = matrix(at);
+      const decibels = (i: number): string => (20 * Math.log10(Math.hypot(S[2 * i], S[2 * i + 1]))).toFixed(3);
+      return [
         band.write(p.k[0], 1e-6 * p.k[0]).replace(/ ±.*$/, ''),
-        ...shownPairs.map(({ i, j }) =>
-          p.propagates[i] && p.propagates[j] ? (20 * Math.log10(Math.hypot(...p.S[i][j]))).toFixed(3) : '',
-        ),
+        ...shownPairs.map(({ i, j }) => (p.propagates[i] && p.propagates[j] ? decibels(i + j * n) : '')),
+        p.best === undefined ? '' : significant(Math.max(0, p.best), 4),
+        p.delay === undefined ? '' : significant(p.delay, 4),
+        p.smallest === undefined || p.smallest === null ? '' : significant(p.smallest, 4),
         errorText(p.error),
-        p.balance.toExponential(0),
-      ]),
+        p.balance === null ? '' : p.balance.toExponential(0),
+      ];
+    }),
   );
   printRest(points.length);
+  printResonances(record);
+}
+
+/** All numbers below n, or MOST_ROWS of them from end to end. */
+const evenly = (n: number): number[] =>
+  Array.from({ length: Math.min(n, MOST_ROWS) }, (_, i) =>
+    n <= MOST_ROWS ? i : Math.round((i * (n - 1)) / (MOST_ROWS - 1)),
+  );
+
+interface Resonance {
+  readonly k: readonly [number, number];
+  readonly q: number;
+}
+
+function printResonances(record: RunRecord): void {
+  const list = (record.answer['resonances'] ?? []) as readonly Resonance[];
+  if (list.length === 0) return;
+  const text = list.slice(0, 8).map(({ k, q }) => `k = ${significant(k[0], 9)} (Q = ${significant(q, 3)})`);
+  const more = list.length > 8 ? ` and ${String(list.length - 8)} more` : '';
+  say(`Sharp resonances: ${text.join(', ')}${more}`);
 }
 
 function printCrossings(record: RunRecord, crossings: readonly AxisAnswer[]): void {

@@ -37,6 +37,7 @@ interface ExportOptions {
   readonly line?: readonly [number, number, number, number];
   readonly points?: number;
   readonly spectrum?: true;
+  readonly channels?: readonly string[];
   readonly modes?: true;
   readonly crossings?: true;
   readonly drive?: true;
@@ -53,6 +54,9 @@ export function addExport(program: Command): void {
     .argument('<RUN>', 'run folder')
     .option('--modes', 'the modes')
     .option('--spectrum', 'the S-parameters')
+    .option('--channels <A,B,…>', 'only these channels of the S-parameters', (text: string) =>
+      text.split(',').map((name) => name.trim()),
+    )
     .option('--crossings', 'the thresholds or absorption points')
     .option('--drive', 'the drives: amplitude and phase of every channel')
     .option('--path', 'the paths of poles or zeros')
@@ -127,7 +131,7 @@ export function exportFiles(run: LoadedRun, out: string, options: ExportOptions)
     return holds[table] && (all || options[table] === true);
   };
   if (wants('modes')) add('modes', modeTableCsv(run));
-  if (wants('spectrum')) add('spectrum', spectrumTableCsv(run));
+  if (wants('spectrum')) add('spectrum', spectrumTableCsv(run, channelsIn(run, options.channels)));
   if (wants('crossings')) add('crossings', crossingTableCsv(run));
   if (wants('drive')) {
     const chosen =
@@ -185,6 +189,20 @@ function fieldIn({ record }: LoadedRun, id: string | undefined) {
     'option --field',
     id,
     `one of ${ids.slice(0, 12).join(', ')}${ids.length > 12 ? ' …' : ''}`,
+    near === undefined ? 'choose one of them' : `write ${near}`,
+  );
+}
+
+/** Names that the run knows, or a fault that says which it knows. */
+function channelsIn({ record }: LoadedRun, names: readonly string[] | undefined): readonly string[] | undefined {
+  const known = record.answer['channels'] as readonly string[];
+  const unknown = names?.find((name) => !known.includes(name));
+  if (unknown === undefined) return names;
+  const near = nearestName(unknown, known);
+  throw new InputError(
+    'option --channels',
+    unknown,
+    `one of ${known.slice(0, 12).join(', ')}${known.length > 12 ? ' …' : ''}`,
     near === undefined ? 'choose one of them' : `write ${near}`,
   );
 }

@@ -33,13 +33,15 @@ export interface Settings {
   /** `modes`. */
   readonly assignment?: Assignment;
   readonly qMin?: number;
-  /** `match`: channels or guides that take waves in. */
+  /** `match`: channels or guides that take waves in; `spectrum`: channels whose part of S is judged. */
   readonly inputs?: readonly string[];
   readonly sense?: 'gain' | 'loss';
   /** `match`: all choices of inputs instead of one. */
   readonly everyChoice?: true;
   /** `spectrum`: points over the band. */
   readonly points?: number;
+  readonly full?: true;
+  readonly multipoles?: number;
   /** `threshold` and `absorb`; null: the default of the device. */
   readonly levelMax?: number | null;
   /** A knob as the parameter instead of pump or loss. */

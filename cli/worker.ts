@@ -18,6 +18,8 @@ import {
   matchRecord,
   findModes,
   findScattering,
+  findSpectrum,
+  modelledRecord,
   spectrumRecord,
   findThresholds,
   knobRecord,
@@ -60,6 +62,9 @@ function limitsOf({ mostMemory, mostTime = Infinity }: Settings): Limits {
   };
 }
 
+/** Up to so many points a spectrum is solved in full at each; beyond, by a projected model. */
+const MOST_FULL = 24;
+
 function computeRun(input: RunInput): RunOutput {
   const { command, text, context, read } = input;
   const device = readDevice(text, context.deviceFile, read);
@@ -73,12 +78,15 @@ function computeRun(input: RunInput): RunOutput {
     );
   if (command === 'spectrum') {
     const { kMin, kMax } = device.band;
-    const n = input.settings.points!;
-    const ks = Array.from({ length: n }, (_, i) => ({
-      re: n === 1 ? kMin : kMin + ((kMax - kMin) * i) / (n - 1),
-      im: 0,
-    }));
-    return spectrumRecord(device, findScattering(device, ks, { digits, progress }), context);
+    const { points, full, multipoles, inputs } = input.settings;
+    const n = points!;
+    const ks = Array.from({ length: n }, (_, i) => (n === 1 ? kMin : kMin + ((kMax - kMin) * i) / (n - 1)));
+    const request = { digits, progress, ...(multipoles === undefined ? {} : { multipoles }) };
+    if (full || n <= MOST_FULL) {
+      const each = ks.map((re) => ({ re, im: 0 }));
+      return spectrumRecord(device, findScattering(device, each, request), context);
+    }
+    return modelledRecord(device, findSpectrum(device, ks, { ...request, ...(inputs ? { inputs } : {}) }), context);
   }
   if (command === 'match') {
     const { inputs = [], sense = 'loss' } = input.settings;

@@ -47,8 +47,7 @@ export interface Opening {
 
 /** Numbers and words only, so that it can be stored. */
 export type OpeningSpec =
-  | ({ readonly kind: 'guide' } & GuideOpeningInput)
-  | ({ readonly kind: 'rim' } & RimOpeningInput);
+  ({ readonly kind: 'guide' } & GuideOpeningInput) | ({ readonly kind: 'rim' } & RimOpeningInput);
 
 export const makeOpening = (spec: OpeningSpec): Opening =>
   spec.kind === 'guide' ? guideOpening(spec) : rimOpening(spec);

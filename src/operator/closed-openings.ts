@@ -49,8 +49,15 @@ export interface ClosedOpenings {
     x: ComplexArray,
     assignment?: Assignment,
   ): ComplexArray;
-  /** S between the channels, n × n column-major (S_ij at i + j n), and the fields that each unit input drives. */
-  scatter(k: Complex, level: number): { readonly matrix: ComplexArray; readonly fields: ComplexArray };
+  /**
+   * S between the channels, n × n column-major (S_ij at i + j n), and the fields that each unit input drives. Further loads
+   * (columns) are replaced by their solutions with the same factorization.
+   */
+  scatter(
+    k: Complex,
+    level: number,
+    loads?: ComplexArray,
+  ): { readonly matrix: ComplexArray; readonly fields: ComplexArray };
   /** Amplitudes of all channels in a field closed by the assignment: coefficient of φ_j over its own wave. */
   amplitudes(k: Complex, x: ComplexArray, side: (channel: number) => 'outgoing' | 'incoming'): ComplexArray;
 }
@@ -142,7 +149,7 @@ export function closeOpenings(
       });
       return out;
     },
-    scatter(k, level) {
+    scatter(k, level, loads) {
       const n = channels.length;
       const N = space.unknowns;
       const own = waves(k);
@@ -158,6 +165,7 @@ export function closeOpenings(
       });
       const factor = factorize(k, level);
       factor.solveInto(fields, fields, n);
+      if (loads) factor.solveInto(loads, loads, loads.length / (2 * N));
       factor.release();
       const matrix = new Float64Array(2 * n * n);
       for (let c = 0; c < n; c++)

@@ -41,7 +41,12 @@ export function termRate({ coefficient, exponent }: { coefficient: Complex; expo
 }
 
 /** A(k) of the basis, or ∂A/∂k, r × r column-major interleaved. */
-export function modelMatrix(model: ScatteringModel, k: Complex, slopes: ComplexArray, part: 'value' | 'byK'): ComplexArray {
+export function modelMatrix(
+  model: ScatteringModel,
+  k: Complex,
+  slopes: ComplexArray,
+  part: 'value' | 'byK',
+): ComplexArray {
   const { size: r, terms, coupling, p } = model;
   const A = new Float64Array(2 * r * r);
   for (const term of terms) {
@@ -76,14 +81,18 @@ export function modelMatrix(model: ScatteringModel, k: Complex, slopes: ComplexA
 }
 
 /** One dense solve of r unknowns; any terms. */
-export function solveDense(model: ScatteringModel, k: Complex, wanted: Wanted = {}, source = waveSource(model)): ModelPoint {
+export function solveDense(
+  model: ScatteringModel,
+  k: Complex,
+  wanted: Wanted = {},
+  source = waveSource(model),
+): ModelPoint {
   const { size: r, channels, p } = model;
   const n = channels.length;
   const waves = source.at(k);
   const lu = luFactor(modelMatrix(model, k, waves.slopes, 'value'), r);
   const Z = new Float64Array(2 * r * n);
-  for (let c = 0; c < n; c++)
-    for (let i = 0; i < r; i++) Z[2 * (i + c * r)] = model.coupling[source.places[c] * r + i];
+  for (let c = 0; c < n; c++) for (let i = 0; i < r; i++) Z[2 * (i + c * r)] = model.coupling[source.places[c] * r + i];
   luSolveInto(Z, lu, Z, n);
   const W = new Float64Array(2 * n * n);
   for (let c = 0; c < n; c++) for (let i = 0; i < n; i++) put(W, i + c * n, coupled(model, source.places[i], Z, c));

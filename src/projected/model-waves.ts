@@ -150,4 +150,3 @@ export function loadWeights({ outgoing }: ModelWaves, p: number): Float64Array {
 }
 
 const entry = (a: ComplexArray, i: number): Complex => complex(a[2 * i], a[2 * i + 1]);
-

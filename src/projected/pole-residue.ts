@@ -417,8 +417,7 @@ function realPoles(b: Float64Array, inverse: ComplexArray, r: number, h: number)
     }
   }
   const out = new Float64Array(2 * h * h);
-  for (let a = 0; a < h; a++)
-    for (let e = 0; e <= a; e++) out[2 * (a * h + e)] = out[2 * (e * h + a)] = sum[a * h + e];
+  for (let a = 0; a < h; a++) for (let e = 0; e <= a; e++) out[2 * (a * h + e)] = out[2 * (e * h + a)] = sum[a * h + e];
   return out;
 }
 

@@ -34,6 +34,8 @@ export interface ScatteringModel {
   readonly snapshots: Float64Array;
   /** Largest ratio of true error to estimate seen where a full solve was compared with the model before it joined; 1 or more. */
   readonly ratio: number;
+  /** Sharp resonances: k, and estimated |δk| against the full device. */
+  readonly poles: readonly Pick<ModelPole, 'k' | 'error'>[];
 }
 
 export interface ModelOpening {
@@ -63,6 +65,8 @@ export interface ModelPole {
   readonly k: Complex;
   /** Its field in the basis, scaled to uᵀ(∂A/∂k)u = 1, interleaved. */
   readonly vector: Float64Array;
-  /** Relative to the full device: estimated |δk|. */
+  /** Estimated |δk| against the full device. */
   readonly error: number;
+  /** Height of its peak in S: |residue|/|Im k|, 2 where all that leaks goes into the channels, 0 for a dark mode. */
+  readonly height: number;
 }

@@ -29,16 +29,22 @@ export interface PreparedOpenings {
 
 /**
  * Meshes the device up to its openings. Channels: of a guide the modes it names, or all that propagate at the top of the
- * scope; of open space the multipoles that the bodies see there.
+ * scope; of open space the multipoles |m| ≤ `multipoles`, or those that the bodies see there.
  *
  * @throws RangeError for a device without openings.
  */
-export function prepareOpenings(device: Device, scope: Scope, resolution: Resolution, refine = 1): PreparedOpenings {
+export function prepareOpenings(
+  device: Device,
+  scope: Scope,
+  resolution: Resolution,
+  refine = 1,
+  multipoles?: number,
+): PreparedOpenings {
   const openings = openingsOf(device);
   if (openings.length === 0) throw new RangeError('the device is closed: expected guides, or open space around it');
   const prepared = prepare(device, scope, resolution, refine, undefined, 'openings');
   const channels = openings.flatMap((opening, o): DeviceChannel[] => {
-    const count = channelCount(device, opening, o, prepared, scope);
+    const count = channelCount(device, opening, o, prepared, scope, multipoles);
     return Array.from({ length: count }, (_, index) => ({ name: opening.channelName(index), opening: o, index }));
   });
   const made = new Map<string, ClosedOpenings>();
@@ -105,9 +111,16 @@ function axisParity(device: Device, guide: Guide): 'even' | 'odd' | null {
   return null;
 }
 
-function channelCount(device: Device, opening: Opening, o: number, prepared: Prepared, scope: Scope): number {
+function channelCount(
+  device: Device,
+  opening: Opening,
+  o: number,
+  prepared: Prepared,
+  scope: Scope,
+  multipoles?: number,
+): number {
   if (!isWalled(device)) {
-    const M = multipoleOrder(device, prepared.bodyRadius, scope.kMax);
+    const M = multipoles ?? multipoleOrder(device, prepared.bodyRadius, scope.kMax);
     const last = `${M}`;
     let count = 0;
     while (Number(/\d+$/.exec(opening.channelName(count))![0]) <= Number(last)) count++;

@@ -13,6 +13,8 @@ export interface ScatterRequest {
   /** Loss or gain level of the pumped bodies; 0 if absent. */
   readonly level?: number;
   readonly sense?: LevelSense;
+  /** Channels of open space: |m| up to this; absent: those that the bodies see. */
+  readonly multipoles?: number;
   readonly progress?: Progress;
 }
 
@@ -53,7 +55,7 @@ export interface ScatterAnswer {
  */
 export function findScattering(device: Device, ks: readonly Complex[], request: ScatterRequest = {}): ScatterAnswer {
   const digits = request.digits ?? DEFAULT_DIGITS;
-  const { level = 0, sense = 'loss', progress } = request;
+  const { level = 0, sense = 'loss', multipoles, progress } = request;
   for (const k of ks)
     if (!(k.re > 0 && Number.isFinite(k.im))) throw new RangeError(`k came as ${k.re}, ${k.im}; expected Re k > 0`);
   if (ks.length === 0) throw new RangeError('no k came; expected one or more');
@@ -61,7 +63,7 @@ export function findScattering(device: Device, ks: readonly Complex[], request: 
   progress?.('meshing', 0);
   const kMin = Math.min(...ks.map((k) => k.re));
   const kMax = Math.max(...ks.map((k) => k.re));
-  const openings = prepareOpenings(device, { kMin, kMax, slope: 0.05 }, resolution);
+  const openings = prepareOpenings(device, { kMin, kMax, slope: 0.05 }, resolution, 1, multipoles);
   const goal = 10 ** -digits;
   let order = resolution.order;
   let rest = 1;
@@ -105,7 +107,7 @@ function changesAt(
  * (windows in a guide: true error 2 to 3 times the last change); smooth fields have r of 0.1 and less, and no two steps are
  * trusted to tell less than `LEAST_RATIO`.
  */
-function whatRemains(before: number, last: number): number {
+export function whatRemains(before: number, last: number): number {
   const r = Math.min(0.9, Math.max(last / Math.max(before, 1e-300), LEAST_RATIO));
   return r / (1 - r);
 }

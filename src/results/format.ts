@@ -87,16 +87,29 @@ export interface ScatterAnswerPoint {
   readonly wavelength: number;
   /** THz, or null. */
   readonly frequency: number | null;
-  readonly S: readonly (readonly Pair[])[];
+  /** Absent where the run holds S as an array: `spectrumView` reads both. */
+  readonly S?: readonly (readonly Pair[])[];
   /** Of every entry. */
   readonly error: number;
   /** Channels that carry power at this k. */
   readonly propagates: readonly boolean[];
   /** Share of unit power into each channel that the device absorbs. */
   readonly absorbed: readonly number[];
-  readonly balance: number;
+  /** Null where it was not counted: points of a projected model. */
+  readonly balance: number | null;
   readonly unitarity: number | null;
   readonly reciprocity: number;
+  /** Points of a projected model: its certified error against the full solve on the same mesh. */
+  readonly modelError?: number;
+  /** Largest and smallest share that any drive can lose to the device. */
+  readonly best?: number;
+  readonly worst?: number;
+  /** Sum of the delays of all eigenchannels times c, in length units. */
+  readonly delay?: number;
+  /** Smallest singular value of S between the inputs asked for. */
+  readonly smallest?: number | null;
+  /** Put in to resolve a sharp resonance. */
+  readonly added?: boolean;
 }
 
 /** A reflectionless mode at real k, with the driven solve of an independent mesh that proves it. */

@@ -23,6 +23,10 @@ export interface ScatteringProjection {
   readonly size: number;
   /** Takes in the fields of unit drives at k (unknowns × channels); returns how many directions were new. */
   add(fields: ComplexArray, k: number): number;
+  /** A field of the basis (interleaved coefficients) as a field of the device. */
+  field(vector: ComplexArray): ComplexArray;
+  /** Takes in one field, whatever its size. */
+  addField(field: ComplexArray): number;
   /** A full solve that the model had estimated: true error over estimate. */
   compare(ratio: number): void;
   /** The model as it stands. */
@@ -55,7 +59,8 @@ export function projectScattering(closed: ClosedOpenings, request: ProjectionReq
   const energy = energyWeights(closed, k0);
   const p = family.weights(complex(1), 0, 'value').stiffness[2];
   const limit = 8 * p * request.tolerance;
-  const functions = functionals.flatMap(({ unknowns, count, values }) =>
+  const functions = functionals.flatMap(
+    ({ unknowns, count, values }) =>
     Array.from({ length: count }, (_, j) => ({ unknowns, values: Float64Array.from(unknowns, (__, i) => values[j + i * count]) })), // prettier-ignore
   );
   const n = functions.length;
@@ -73,8 +78,8 @@ export function projectScattering(closed: ClosedOpenings, request: ProjectionReq
 
   let r = 0;
   let V = new Float64Array(0);
-  let matrices = parts.map(() => new Float64Array(0));
-  let witness = parts.map(() => new Float64Array(0));
+  const matrices = parts.map(() => new Float64Array(0));
+  const witness = parts.map(() => new Float64Array(0));
   let coupling = new Float64Array(0);
   const reach = new Float64Array(n);
   const snapshots: number[] = [];
@@ -119,6 +124,27 @@ export function projectScattering(closed: ClosedOpenings, request: ProjectionReq
     r = size;
   };
 
+  const takeIn = (F: Float64Array, q: number): number => {
+    projectOut(F, q);
+    projectOut(F, q);
+    const { columns, kept } = strongest(F, q, transposeTimes(F, q, apply(energy, F, q), q, N), limit, N);
+    if (kept === 0) return 0;
+    projectOut(columns, kept);
+    const L = choleskyFactor(transposeTimes(columns, kept, apply(energy, columns, kept), kept, N), kept);
+    if (L) divideByTranspose(columns, kept, L, N);
+    join(columns, kept);
+    return kept;
+  };
+  const field = (vector: ComplexArray): ComplexArray => {
+    const out = new Float64Array(2 * N);
+    for (let c = 0; c < r; c++)
+      for (let g = 0; g < N; g++) {
+        out[2 * g] += V[g + c * N] * vector[2 * c];
+        out[2 * g + 1] += V[g + c * N] * vector[2 * c + 1];
+      }
+    return out;
+  };
+
   return {
     get size() {
       return r;
@@ -138,16 +164,17 @@ export function projectScattering(closed: ClosedOpenings, request: ProjectionReq
           if (square > reach[j]) reach[j] = square;
         }
       });
-      const F = realColumns(fields, q, N);
-      projectOut(F, q);
-      projectOut(F, q);
-      const { columns, kept } = strongest(F, q, transposeTimes(F, q, apply(energy, F, q), q, N), limit, N);
-      if (kept === 0) return 0;
-      projectOut(columns, kept);
-      const L = choleskyFactor(transposeTimes(columns, kept, apply(energy, columns, kept), kept, N), kept);
-      if (L) divideByTranspose(columns, kept, L, N);
-      join(columns, kept);
-      return kept;
+      return takeIn(realColumns(fields, q, N), q);
+    },
+    field,
+    addField(given) {
+      const F = realColumns(given, 2, N);
+      const scale = transposeTimes(F, 2, apply(energy, F, 2), 2, N);
+      const size = Math.sqrt(scale[0] + scale[3]);
+      return takeIn(
+        F.map((v) => v / size),
+        2,
+      );
     },
     compare(seen) {
       if (Number.isFinite(seen)) ratio = Math.max(ratio, seen);
@@ -171,17 +198,12 @@ export function projectScattering(closed: ClosedOpenings, request: ProjectionReq
       witnessCoupling,
       snapshots: Float64Array.from(snapshots).sort(),
       ratio,
+      poles: [],
     }),
     orderShift(vector, k) {
       const highest = highestDegree(space);
-      const d = new Float64Array(2 * N);
-      for (let g = 0; g < N; g++) {
-        if (!highest[g]) continue;
-        for (let c = 0; c < r; c++) {
-          d[2 * g] += V[g + c * N] * vector[2 * c];
-          d[2 * g + 1] += V[g + c * N] * vector[2 * c + 1];
-        }
-      }
+      const d = field(vector);
+      for (let g = 0; g < N; g++) if (!highest[g]) d.fill(0, 2 * g, 2 * g + 2);
       const Ad = family.multiplyInto(new Float64Array(2 * N), k, 0, 'value', d, 1);
       let re = 0;
       let im = 0;
@@ -207,7 +229,13 @@ function realTerms({ family }: ClosedOpenings): RealTerm[] {
   const metals = family.terms - 2;
   const blank = (): RegionWeights => zeroWeights(regions - 2, metals);
   const out: RealTerm[] = [];
-  const take = (which: 'stiffness' | 'mass', part: 0 | 1, sign: number, coefficient: Complex, exponent: number): void => {
+  const take = (
+    which: 'stiffness' | 'mass',
+    part: 0 | 1,
+    sign: number,
+    coefficient: Complex,
+    exponent: number,
+  ): void => {
     const weights = blank();
     let any = false;
     for (let i = 0; i < regions; i++) {
@@ -333,8 +361,7 @@ function witnesses({ family }: ClosedOpenings, energy: RegionWeights, N: number)
   }
   const pairs = l / 2;
   const x = new Float64Array(2 * N * pairs);
-  for (let c = 0; c < l; c++)
-    for (let u = 0, at = 2 * N * (c >> 1) + (c & 1); u < N; u++) x[at + 2 * u] = Z[u + c * N];
+  for (let c = 0; c < l; c++) for (let u = 0, at = 2 * N * (c >> 1) + (c & 1); u < N; u++) x[at + 2 * u] = Z[u + c * N];
   const factor = operator.factorize(energy);
   factor.solveInto(x, x, pairs);
   factor.release();
