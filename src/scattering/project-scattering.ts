@@ -137,7 +137,8 @@ export function projectScattering(closed: ClosedOpenings, request: ProjectionReq
   };
   const field = (vector: ComplexArray): ComplexArray => {
     const out = new Float64Array(2 * N);
-    for (let c = 0; c < r; c++)
+    // vectors from before the basis grew keep their meaning
+    for (let c = 0; c < vector.length / 2; c++)
       for (let g = 0; g < N; g++) {
         out[2 * g] += V[g + c * N] * vector[2 * c];
         out[2 * g + 1] += V[g + c * N] * vector[2 * c + 1];
