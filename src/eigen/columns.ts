@@ -33,6 +33,8 @@ function commonMemory(x: ComplexArray, y: ComplexArray): TallMemory | undefined 
 }
 
 function product(x: ComplexArray, p: number, y: ComplexArray, q: number, n: number, sign: 1 | -1): ComplexArray {
+  const strip = worthCopying(p, q, n) ? stripMemory() : undefined;
+  if (strip) return productByStrips(strip, x, p, y, q, n, sign);
   const out = new Float64Array(2 * p * q);
   for (let j = 0; j < q; j++) {
     const yj = y.subarray(2 * j * n, 2 * (j + 1) * n);
@@ -57,6 +59,60 @@ function product(x: ComplexArray, p: number, y: ComplexArray, q: number, n: numb
     }
   }
   return out;
+}
+
+/** Numbers of the memory through which strips of rows pass. */
+const STRIP_NUMBERS = 2 ** 17;
+
+/** Made once; null where nothing is compiled. */
+let scratch: TallMemory | null | undefined;
+function stripMemory(): TallMemory | undefined {
+  scratch ??= makeTallMemory(STRIP_NUMBERS) ?? null;
+  return scratch ?? undefined;
+}
+
+/** A number copied in should take part in a few products. */
+const worthCopying = (p: number, q: number, n: number): boolean =>
+  Math.min(p, q) >= 4 && 2 * (p + q) * 16 <= STRIP_NUMBERS && p * q <= 4096 && n >= 256;
+
+/** Rows of a strip in which p + q columns find room. */
+const stripRows = (p: number, q: number): number => 2 * Math.floor(STRIP_NUMBERS / 4 / (p + q));
+
+/** Strip after strip into the memory, the left side conjugated there where the product does not conjugate it. */
+function productByStrips(
+  strip: TallMemory,
+  x: ComplexArray,
+  p: number,
+  y: ComplexArray,
+  q: number,
+  n: number,
+  sign: 1 | -1,
+): ComplexArray {
+  const m = strip.numbers;
+  const out = new Float64Array(2 * p * q);
+  const most = stripRows(p, q);
+  for (let row = 0; row < n; row += most) {
+    const rows = Math.min(most, n - row);
+    const right = strip.base + 2 * rows * p;
+    copyStrip(m, strip.base, x, p, n, row, rows);
+    if (sign === 1) for (let s = strip.base + 1; s < right; s += 2) m[s] = -m[s];
+    copyStrip(m, right, y, q, n, row, rows);
+    const part = strip.adjointProduct(strip.base, p, right, q, rows)!;
+    for (let s = 0; s < out.length; s++) out[s] = out[s] + part[s];
+  }
+  return out;
+}
+
+function copyStrip(
+  to: Float64Array,
+  at: number,
+  x: ComplexArray,
+  columns: number,
+  n: number,
+  row: number,
+  rows: number,
+): void {
+  for (let j = 0; j < columns; j++) to.set(x.subarray(2 * (j * n + row), 2 * (j * n + row + rows)), at + 2 * rows * j);
 }
 
 /** Rows that pass at a time: those of a few columns then stay in the first-level cache. */

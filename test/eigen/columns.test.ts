@@ -1,7 +1,7 @@
 // Do products of tall matrices come out the same wherever the matrices lie?
 
 import { describe, expect, it } from 'vitest';
-import { addProduct, adjointProduct, orthonormalise, tallMatrices } from '../../src/eigen/columns.ts';
+import { addProduct, adjointProduct, orthonormalise, tallMatrices, transposeProduct } from '../../src/eigen/columns.ts';
 import { randomStream } from '../../src/numerics/random.ts';
 
 const random = randomStream(4);
@@ -36,6 +36,29 @@ describe('products of tall matrices', () => {
       }
     });
   }
+
+  // wide enough to pass through the compiled loops in strips, the last one shorter
+  it('are the plain sums, conjugated or not', () => {
+    const [n, p, q] = [5001, 9, 7];
+    const [x, y] = [numbers(2 * n * p), numbers(2 * n * q)];
+    for (const [product, sign] of [
+      [transposeProduct, 1],
+      [adjointProduct, -1],
+    ] as const) {
+      const sums = new Float64Array(2 * p * q);
+      for (let j = 0; j < q; j++) {
+        for (let i = 0; i < p; i++) {
+          for (let s = 0; s < n; s++) {
+            const [a, b] = [x[2 * (i * n + s)], sign * x[2 * (i * n + s) + 1]];
+            const [c, d] = [y[2 * (j * n + s)], y[2 * (j * n + s) + 1]];
+            sums[2 * (i + j * p)] += a * c - b * d;
+            sums[2 * (i + j * p) + 1] += a * d + b * c;
+          }
+        }
+      }
+      expect(farthest(product(x, p, y, q, n), sums)).toBeLessThan(1e-14 * n);
+    }
+  });
 
   it('make columns orthonormal in either memory', () => {
     const [n, p, q] = [700, 10, 3];
