@@ -63,12 +63,15 @@ export function fieldFigure(run: RunView, fieldId: string, options: FieldFigureO
         return paintField({ points: inPixels, triangles, values, limit, rim }, show, phase, theme, across, down);
       },
     },
-    ...(record.mesh.arrays.edgeFree === undefined
-      ? [
+    ...(record.display.enclosed
+      ? []
+      : [
           stroke([circleRing(view.toX(center[0]), view.toY(center[1]), rimRadius * view.scale)], palette.faint, 1, {
             closed: true,
           }),
-        ]
+        ]),
+    ...(record.mesh.arrays.edgeFree === undefined
+      ? []
       : [
           stroke(
             wallsOfMesh(meshOfRun(run), view.scale).map((l) => view.line(l)),

@@ -3,7 +3,7 @@
 import { walledSpaces } from '../device/guides.ts';
 import type { Device } from '../device/model.ts';
 import { sheetPieces } from '../device/reach.ts';
-import { LAYER, type Mesh } from '../mesh/mesh.ts';
+import { FIRST_OPENING, LAYER, type Mesh } from '../mesh/mesh.ts';
 import { polyline } from './bodies.ts';
 import { edgeLines } from './mesh.ts';
 
@@ -24,10 +24,14 @@ export function wallsOfDevice(device: Pick<Device, 'enclosure' | 'guides' | 'she
   };
 }
 
-/** Outer edges of the mesh that end a field: none for an open device, whose outer edge is the layer's end. */
+/** Outer edges of the mesh that end a field: none for an open device, whose outer edge is the layer's end or its rim. */
 export function wallsOfMesh(mesh: Mesh, pixelsPerLength: number): Float64Array[] {
-  if (!mesh.edgeFree) return [];
+  const { edgeFree } = mesh;
+  if (!edgeFree) return [];
   return edgeLines(mesh, pixelsPerLength).filter(
-    (_, e) => mesh.edgeTriangles[2 * e + 1] < 0 && mesh.regions[mesh.edgeTriangles[2 * e]] !== LAYER,
+    (_, e) =>
+      mesh.edgeTriangles[2 * e + 1] < 0 &&
+      mesh.regions[mesh.edgeTriangles[2 * e]] !== LAYER &&
+      edgeFree[e] < FIRST_OPENING,
   );
 }

@@ -99,6 +99,9 @@ export interface MeshPlan {
   readonly wishes?: readonly SizeWish[];
 }
 
+/** From this tag on outer edges end no field: waves pass through them. */
+export const FIRST_OPENING = 1000;
+
 /** A triangle side wanted at a point, length units. */
 export interface SizeWish {
   readonly x: number;

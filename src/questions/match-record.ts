@@ -34,6 +34,7 @@ export function matchRecord(
     });
   });
   addFields(book, answer.matches, sense);
+  addMarks(book, answer.matches, answer.inputs.includes(true), answer.matches.length);
   const cautions = cautionsFor('drive', device);
   return book.close('match', matchSentence(device, answer.matches, answer.channels, answer.inputs, sense), cautions, {
     ...common(answer.channels, answer.inputs, answer.matches),
@@ -58,6 +59,7 @@ export function knobMatchRecord(
   const channels = first.openings.channels.map((c) => c.name);
   const book = openBook(first.openings.prepared.device, first.openings.prepared, first.order, context);
   addFields(book, [first], 'loss');
+  addMarks(book, matches, inputs.includes(true), 1);
   const cautions = cautionsFor('drive', device);
   const place = placeText(device, first.k);
   const sentence =
@@ -119,6 +121,24 @@ export function choicesRecord(device: Device, answer: ChoicesAnswer, context: Ru
 }
 
 type Book = ReturnType<typeof openBook>;
+
+/** Where the modes lie once they are brought to the axis; the first so many have fields. */
+function addMarks(book: Book, matches: readonly RealMatch[], isZero: boolean, fields: number): void {
+  matches.forEach(({ k, kError }, i) =>
+    book.marks.push({
+      id: `match-mark-${i + 1}`,
+      kind: isZero ? 'zero' : 'pole',
+      k: [k, 0],
+      kError,
+      q: k / (2 * kError),
+      multiplicity: 1,
+      label: 'on the axis',
+      field: i < fields ? `match-${i + 1}` : null,
+      path: null,
+      crossing: null,
+    }),
+  );
+}
 
 function addFields(book: Book, matches: readonly RealMatch[], sense: 'gain' | 'loss'): void {
   matches.forEach((match, i) => {

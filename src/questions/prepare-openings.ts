@@ -6,11 +6,11 @@ import { guideOpening, type Opening, rimOpening } from '../boundary/openings.ts'
 import { guideDirection } from '../device/guides.ts';
 import { type Device, type Guide, isWalled } from '../device/model.ts';
 import { type ChannelPlace, type ClosedOpenings, closeOpenings } from '../operator/closed-openings.ts';
+import { FIRST_OPENING } from '../mesh/mesh.ts';
 import { deviceFamily, type LevelSense } from '../operator/device-family.ts';
 import { openingFunctionals } from '../operator/opening-functionals.ts';
 import { multipoleOrder } from '../scattering/contrast.ts';
 import { prepare, type Prepared, type Scope } from './prepare.ts';
-import { FIRST_OPENING } from './space-plan.ts';
 
 /** A channel of a device: one wave of one opening. */
 export interface DeviceChannel extends ChannelPlace {

@@ -1,6 +1,7 @@
 // How does an answer become a stored run?
 
-import type { Device } from '../device/model.ts';
+import { type Device, isWalled } from '../device/model.ts';
+import { wallsOfMesh } from '../figures/walls.ts';
 import { pointAt } from '../geometry/curves.ts';
 import { gainReport } from '../materials/gain.ts';
 import { type Complex, type ComplexArray, modulus } from '../numerics/complex.ts';
@@ -387,6 +388,8 @@ export function openBook(device: Device, prepared: Prepared, order: number, cont
   if (prepared.shifts) arrays['mesh-shifts'] = prepared.shifts;
   for (const [key, name] of Object.entries(meshArrays)) arrays[name] = mesh[key as keyof typeof meshArrays];
   if (mesh.edgeFree) arrays['mesh-edge-free'] = mesh.edgeFree;
+  const walls = wallsOfMesh(mesh, PIXELS_ACROSS / mesh.rimRadius).flatMap(pieces);
+  if (walls.length > 0) arrays['display-walls'] = Float64Array.from(walls);
   const bodies = device.bodies.map((body, i) => ({
     name: body.name,
     group: body.group,
@@ -461,6 +464,8 @@ export function openBook(device: Device, prepared: Prepared, order: number, cont
           triangles: 'display-triangles',
           regions: 'display-regions',
           tolerance: display.tolerance,
+          ...(walls.length > 0 ? { walls: 'display-walls' } : {}),
+          ...(isWalled(device) ? { enclosed: true as const } : {}),
         },
         mesh: {
           order,
@@ -475,6 +480,16 @@ export function openBook(device: Device, prepared: Prepared, order: number, cont
       arrays,
     }),
   };
+}
+
+/** Curved walls are cut for pictures of about this size. */
+const PIXELS_ACROSS = 600;
+
+/** [x0,y0,x1,y1] of each piece of a line of points. */
+function pieces(line: Float64Array): number[] {
+  const out: number[] = [];
+  for (let i = 0; i + 3 < line.length; i += 2) out.push(line[i], line[i + 1], line[i + 2], line[i + 3]);
+  return out;
 }
 
 function addCrossings(

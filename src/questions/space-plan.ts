@@ -11,13 +11,12 @@ import { deviceCircle, sheetPieces } from '../device/reach.ts';
 import { boundingCircle } from '../geometry/bounding-circle.ts';
 import type { Point, Shape } from '../geometry/curves.ts';
 import { polygon } from '../geometry/shapes.ts';
-import type { EdgeCause, WallPlan } from '../mesh/mesh.ts';
+import { type EdgeCause, FIRST_OPENING, type WallPlan } from '../mesh/mesh.ts';
 import type { Polarization } from '../numerics/conventions.ts';
 
 /** Tags of outer edges: left free as they are; from here on metals in the order of `metals`; from `FIRST_OPENING` openings. */
 export const FREE = 0;
 export const FIRST_METAL = 1;
-export const FIRST_OPENING = 1000;
 
 export interface SpacePlan {
   readonly center: Point;

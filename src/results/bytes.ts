@@ -185,6 +185,9 @@ function checkDisplay(value: unknown, arrays: Entries): number {
   const points = arrayNamed(arrays, display['points'], 'display.points', ['f64'], { multiple: 2 }) / 2;
   const triangles = arrayNamed(arrays, display['triangles'], 'display.triangles', ['u32'], { multiple: 3 }) / 3;
   arrayNamed(arrays, display['regions'], 'display.regions', ['i32'], { exact: triangles });
+  if (display['walls'] !== undefined) arrayNamed(arrays, display['walls'], 'display.walls', ['f64'], { multiple: 4 });
+  if (display['enclosed'] !== undefined && display['enclosed'] !== true)
+    fail('display.enclosed', JSON.stringify(display['enclosed']), 'true, or nothing');
   return points;
 }
 

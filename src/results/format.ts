@@ -266,6 +266,10 @@ export interface RunRecord {
     /** i32, one a triangle: index into device.bodies, or -1 for the background. */
     readonly regions: string;
     readonly tolerance: number;
+    /** f64 [x0,y0,x1,y1, …]: straight pieces of walls, open ends of guides left out; absent: none. */
+    readonly walls?: string;
+    /** Walls all around: the rim is only a circle about them. */
+    readonly enclosed?: true;
   };
   /** The finite-element mesh (fields of src/mesh/mesh.ts by name) and the highest order of its space. */
   readonly mesh: {

@@ -18,12 +18,24 @@ import { launchBrowser } from './browser.ts';
 
 const ROOT = fileURLToPath(new URL('../..', import.meta.url));
 const COMMANDS = ['modes', 'threshold', 'absorb'] as const;
-type Command = (typeof COMMANDS)[number];
+type Command = (typeof COMMANDS)[number] | 'walled';
 
 let base: string;
 let browser: Browser;
 const servers = new Map<Command, RunServer>();
-const runs = new Map(COMMANDS.map((command) => [command, withPair(syntheticRun(command, { rings: 24, sectors: 72 }))]));
+const runs = new Map(
+  [...COMMANDS, 'walled' as const].map((command): [Command, ReturnType<typeof syntheticRun>] => {
+    const run = syntheticRun(command === 'walled' ? 'modes' : command, { rings: 24, sectors: 72 });
+    return [command, command === 'walled' ? withWalls(run) : withPair(run)];
+  }),
+);
+
+/** Walls all around, two straight pieces of them drawn. */
+function withWalls<R extends ReturnType<typeof syntheticRun>>(run: R): R {
+  const display = { ...run.record.display, walls: 'display-walls', enclosed: true as const };
+  const arrays = { ...run.arrays, 'display-walls': Float64Array.of(-1, 0.5, 1, 0.5, -1, -0.5, 1, -0.5) };
+  return { ...run, record: { ...run.record, display }, arrays };
+}
 
 /** The first field twice: the two modes of a degenerate pair. */
 function withPair<R extends ReturnType<typeof syntheticRun>>(run: R): R {
@@ -323,6 +335,14 @@ describe('moving about', () => {
         expect(a === b || apart, `${a.id} and ${b.id}`).toBe(true);
       }
     }
+  });
+
+  test('a device with walls all around has no rim', async () => {
+    await open('modes', { still: true });
+    expect(await page.locator('#overlay .rim').count()).toBe(1);
+    await page.context().close();
+    await open('walled', { still: true });
+    expect(await page.locator('#overlay .rim').count()).toBe(0);
   });
 
   test('dark and light are one word apart', async () => {

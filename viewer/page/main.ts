@@ -44,6 +44,7 @@ async function start(): Promise<void> {
   canvas.setAttribute('aria-label', 'The field: drag to move, plus and minus to zoom, 0 for all of it');
   const { display, device } = record;
   const outlineNames = device.bodies.flatMap(({ outlines }) => outlines);
+  const [walls = new Float64Array()] = display.walls === undefined ? [] : await run.arrays([display.walls]);
   const [points, triangles, regions, ...outlines] = await run.arrays([
     display.points,
     display.triangles,
@@ -56,6 +57,7 @@ async function start(): Promise<void> {
     triangles: triangles as Uint32Array,
     regions: regions as Int32Array,
     outlines: outlines as Float64Array[],
+    walls: walls as Float64Array,
   });
 
   const markOf = (id: string | null): RunMark | undefined => record.marks.find((one) => one.id === id);
@@ -232,7 +234,7 @@ function drawOverlay(
   const { center, rimRadius } = record.mesh;
   const [cx, cy] = picture.toPixel(...center);
   const r = rimRadius * picture.scale();
-  const parts: SVGElement[] = [svg('circle', { class: 'rim', cx, cy, r })];
+  const parts: SVGElement[] = record.display.enclosed ? [] : [svg('circle', { class: 'rim', cx, cy, r })];
   const top = byId('water').getBoundingClientRect().top;
   if (mark) parts.push(...thread(mark, [cx, cy], r, top));
   if (pinned) {

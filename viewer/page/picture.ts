@@ -46,6 +46,8 @@ export interface PictureData {
   readonly regions: Int32Array;
   /** Closed polylines. */
   readonly outlines: readonly Float64Array[];
+  /** [x0,y0,x1,y1] of each piece. */
+  readonly walls: Float64Array;
 }
 
 const VIEW_NUMBER: Readonly<Record<View, number>> = { wave: 0, intensity: 1, phase: 2 };
@@ -64,6 +66,7 @@ export function createPicture(canvas: HTMLCanvasElement, data: PictureData): Pic
     size: { value: new three.Vector2(1, 1) },
     quiet: { value: new three.Vector4() },
     ratio: { value: 1 },
+    round: { value: data.record.display.enclosed ? 0 : 1 },
     origin: { value: new three.Vector2() },
     ground: { value: new three.Vector3() },
     ink: { value: new three.Vector3() },
@@ -235,7 +238,7 @@ function activeTriangles({ record, triangles, regions }: PictureData): Uint32Arr
 }
 
 function outlineGeometry(
-  { outlines }: PictureData,
+  { outlines, walls }: PictureData,
   center: readonly [number, number],
   radius: number,
 ): LineSegmentsGeometry {
@@ -247,6 +250,8 @@ function outlineGeometry(
       for (const v of [i, j]) ends.push((line[2 * v] - center[0]) / radius, (line[2 * v + 1] - center[1]) / radius, 0);
     }
   }
+  for (let i = 0; i < walls.length; i += 2)
+    ends.push((walls[i] - center[0]) / radius, (walls[i + 1] - center[1]) / radius, 0);
   const geometry = new LineSegmentsGeometry();
   // An empty instanced geometry is an error in three.js: a segment of no length draws nothing.
   geometry.setPositions(ends.length > 0 ? ends : [0, 0, 0, 0, 0, 0]);

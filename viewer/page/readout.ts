@@ -57,7 +57,7 @@ export function createReadout(host: HTMLElement, record: RunRecord, store: Store
           ['phase', `${fullFigure((probe.phase * 180) / Math.PI)}°`],
           ['body', probe.name],
         ]
-      : [['', 'beyond the rim']];
+      : [['', record.display.enclosed ? 'beyond the walls' : 'beyond the rim']];
     host.replaceChildren(
       html('h2', {}, pinned ? 'Pinned' : 'Under the cursor'),
       rows([...place, ...values]),

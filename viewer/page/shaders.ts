@@ -22,6 +22,7 @@ precision highp float;
 uniform vec2 size;
 uniform vec4 quiet; // left, top, right, bottom margins that hold text, CSS pixels
 uniform float ratio;
+uniform float round; // 1: fades at the rim; 0: walls all around
 uniform vec2 origin;
 uniform vec3 ground;
 uniform vec3 ink;
@@ -35,7 +36,7 @@ float presence() {
   vec2 p = gl_FragCoord.xy / ratio;
   float open = beyond(p.x, quiet.x, 26.0) * beyond(size.x - p.x, quiet.z, 26.0)
     * beyond(p.y, quiet.w, 2.0) * beyond(size.y - p.y, quiet.y, 2.0);
-  float rim = 1.0 - smoothstep(0.93, 1.0, length(place));
+  float rim = 1.0 - round * smoothstep(0.93, 1.0, length(place));
   return mix(0.1, 1.0, open) * rim;
 }
 `;
