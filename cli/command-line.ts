@@ -12,6 +12,7 @@ import { addMesh } from './mesh.ts';
 import { addModes } from './modes.ts';
 import { WellCommand } from './options.ts';
 import { errorInk } from './paper.ts';
+import { addNetwork } from './network.ts';
 import { clearProgress } from './progress.ts';
 import { addSchema } from './schema.ts';
 import { addSpectrum } from './spectrum.ts';
@@ -49,6 +50,7 @@ function commands(): WellCommand {
   addAbsorb(program);
   addMatch(program);
   addSpectrum(program);
+  addNetwork(program);
   addView(program);
   addExport(program);
   addDemo(program);

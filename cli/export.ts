@@ -20,7 +20,9 @@ import {
   READ_FIRST_NAME,
   readFirstText,
   readRun,
+  runTouchstone,
   spectrumTableCsv,
+  type TouchstoneFormat,
 } from '../src/index.ts';
 import { shown } from './ask.ts';
 import { InputError } from './faults.ts';
@@ -38,6 +40,8 @@ interface ExportOptions {
   readonly points?: number;
   readonly spectrum?: true;
   readonly channels?: readonly string[];
+  readonly touchstone?: '1.1' | '2.0';
+  readonly pairs?: TouchstoneFormat;
   readonly modes?: true;
   readonly crossings?: true;
   readonly drive?: true;
@@ -56,6 +60,12 @@ export function addExport(program: Command): void {
     .option('--spectrum', 'the S-parameters')
     .option('--channels <A,B,…>', 'only these channels of the S-parameters', (text: string) =>
       text.split(',').map((name) => name.trim()),
+    )
+    .option('--touchstone <VERSION>', 'the S-parameters as a Touchstone file, 1.1 or 2.0, under exp(+jωt)', (text) =>
+      readWord(text, '--touchstone', ['1.1', '2.0']),
+    )
+    .option('--pairs <FORM>', 'of a Touchstone file: RI (if absent), MA or DB', (text) =>
+      readWord(text.toUpperCase(), '--pairs', ['RI', 'MA', 'DB']),
     )
     .option('--crossings', 'the thresholds or absorption points')
     .option('--drive', 'the drives: amplitude and phase of every channel')
@@ -103,6 +113,7 @@ export function exportFiles(run: LoadedRun, out: string, options: ExportOptions)
     wantsField ||
     options.modes ||
     options.spectrum ||
+    options.touchstone ||
     options.crossings ||
     options.drive ||
     options.path ||
@@ -132,6 +143,24 @@ export function exportFiles(run: LoadedRun, out: string, options: ExportOptions)
   };
   if (wants('modes')) add('modes', modeTableCsv(run));
   if (wants('spectrum')) add('spectrum', spectrumTableCsv(run, channelsIn(run, options.channels)));
+  if (options.touchstone) {
+    if (!holds.spectrum)
+      throw new InputError(
+        'option --touchstone',
+        `a run of "${record.command}"`,
+        'one of "spectrum"',
+        'choose such a run',
+      );
+    if (record.device.metres === null)
+      throw new InputError('option --touchstone', 'a device without a length unit', 'frequencies in Hz', 'add "length: mm" or what is true'); // prettier-ignore
+    const channels = channelsIn(run, options.channels);
+    const { text, ports } = runTouchstone(run, {
+      version: options.touchstone === '2.0' ? 2 : 1,
+      ...(options.pairs ? { format: options.pairs } : {}),
+      ...(channels ? { channels } : {}),
+    });
+    files[join(out, options.touchstone === '2.0' ? 'spectrum.ts' : `spectrum.s${String(ports)}p`)] = text;
+  }
   if (wants('crossings')) add('crossings', crossingTableCsv(run));
   if (wants('drive')) {
     const chosen =
@@ -212,6 +241,8 @@ function checkChoice(options: ExportOptions): void {
   const needs = (option: string, other: string): never => {
     throw new InputError(`option --${option}`, `--${option} alone`, `--${option} beside --${other}`, `add --${other}`);
   };
+  if (options.pairs && !options.touchstone) needs('pairs', 'touchstone 1.1');
+  if (options.channels && !options.spectrum && !options.touchstone) needs('channels', 'spectrum');
   if (options.box && !options.grid) needs('box', 'grid');
   if (options.points !== undefined && !options.line) needs('points', 'line');
   const { grid, box } = options;
@@ -224,6 +255,17 @@ function checkChoice(options: ExportOptions): void {
     );
   if (box && !(box[0] <= box[2] && box[1] <= box[3]))
     throw new InputError('option --box', box.join(','), 'x0 <= x1 and y0 <= y1', 'order the corners');
+}
+
+function readWord<W extends string>(text: string, option: string, words: readonly W[]): W {
+  const word = words.find((w) => w === text);
+  if (word !== undefined) return word;
+  throw new InputError(
+    `option ${option}`,
+    JSON.stringify(text),
+    `one of ${words.join(', ')}`,
+    `write ${option} ${words[0]}`,
+  );
 }
 
 function readGrid(text: string): readonly [number, number] {

@@ -99,6 +99,24 @@ export { READ_FIRST_NAME, readFirstText } from './results/read-first.ts';
 export { loadModel } from './results/model-store.ts';
 export { spectrumView, type SpectrumView } from './results/spectrum-view.ts';
 export { spectrumTableCsv } from './results/export-spectrum-csv.ts';
+export { runTouchstone, touchstoneNetwork, type TouchstoneRequest } from './results/export-touchstone.ts';
+export { readTouchstone } from './results/touchstone-read.ts';
+export { touchstoneText } from './results/touchstone-write.ts';
+export {
+  type MeasuredScattering,
+  scatteringOfNetwork,
+  TouchstoneError,
+  type TouchstoneFormat,
+  type TouchstoneNetwork,
+} from './results/touchstone.ts';
+export {
+  analyseMeasured,
+  type MeasuredAnswer,
+  type MeasuredPoint,
+  type MeasuredRequest,
+  type MeasuredRoot,
+} from './questions/measured.ts';
+export { csvText } from './results/csv.ts';
 export { standardGuide, STANDARD_GUIDES, type StandardGuide } from './device/standard-guides.ts';
 export { guideEnds, transverseWavenumber } from './boundary/guide-modes.ts';
 export { crossingTableCsv, driveTableCsv, modeTableCsv, polePathCsv } from './results/export-csv.ts';

@@ -149,7 +149,7 @@ export function findSpectrum(device: Device, ks: readonly number[], request: Spe
     points,
     order,
     digits,
-    reached: points.every((point) => point.error <= 10 ** -digits && point.modelError <= goal),
+    reached: points.every((point) => point.error <= 10 ** -digits),
     openings,
     model,
     poles: shifted,
