@@ -209,6 +209,7 @@ function printMatches(record: RunRecord, matches: readonly MatchAnswerRow[]): vo
       ]),
   );
   const [first] = matches;
+  if (first.drive.length === 0) return;
   say();
   sayTable(
     [{ head: 'drive of 1' }, { head: 'amplitude', align: 'right' }, { head: 'phase [deg]', align: 'right' }],

@@ -26,15 +26,20 @@ export function openDevice(path: string, options: DeviceOptions): DeviceFile {
   return { path, text, device };
 }
 
-/** Thresholds and absorption points are told by the waves of the whole rim. */
-export function refuseWalls({ path, device }: DeviceFile): void {
-  if (!isWalled(device) && !device.symmetry) return;
-  throw new InputError(
-    path,
-    device.symmetry ? 'a device with symmetry lines' : 'a device with walls around it',
-    'open space all around: this command works with the waves of the rim',
-    'ask "wavewell match" (--in none --pump: thresholds; --in with all guides: coherent absorption), "modes" or "spectrum"',
-  );
+/**
+ * The openings of a device with guides or symmetry lines, whose thresholds and absorption points are those of `match`; null
+ * for open space all around. A closed device has neither.
+ */
+export function waysOut({ path, device }: DeviceFile): readonly string[] | null {
+  if (device.guides) return device.guides.map((guide) => guide.name);
+  if (isWalled(device))
+    throw new InputError(
+      path,
+      'a device with walls all around it',
+      'guides, or open space around it',
+      'add a guide, or ask "wavewell modes"',
+    );
+  return device.symmetry ? ['open'] : null;
 }
 
 /** A threshold and an absorption point need a body that gains or absorbs. */

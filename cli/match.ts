@@ -35,8 +35,10 @@ export function addMatch(program: Command): void {
     .option('--pump', 'the level is gain instead of loss')
     .option('--level-max <D>', 'largest loss (or pump) looked at', (text: string) => readAboveZero(text, '--level-max'))
     .option('--along <KNOB[=A,B]>', 'a knob as the parameter, over its range in the file or A to B', readAlong)
-    .option('--q-min <Q>', `lowest Q of the complex spectrum (${String(DEFAULT_Q_MIN)} if absent)`, (text: string) =>
-      readNumber(text, '--q-min', (v) => Number.isFinite(v) && v >= 0.5, 'a number from 0.5 up'),
+    .option(
+      '--q-min <Q>',
+      `lowest Q of the complex spectrum (${String(DEFAULT_Q_MIN)} if absent, or what the level can reach)`,
+      (text: string) => readNumber(text, '--q-min', (v) => Number.isFinite(v) && v >= 0.5, 'a number from 0.5 up'),
     );
   withSolveOptions(command).action(async (path: string, options: MatchOptions) => {
     const file = openDevice(path, options);
@@ -62,7 +64,7 @@ export function addMatch(program: Command): void {
       ...commonSettings(options),
       inputs,
       sense: options.pump ? ('gain' as const) : ('loss' as const),
-      qMin,
+      ...(options.qMin === undefined ? {} : { qMin: options.qMin }),
       levelMax: options.levelMax ?? null,
       along: alongSettings(options.along, file),
     };

@@ -3,7 +3,7 @@
 import type { Command } from 'commander';
 import { ask } from './ask.ts';
 import { printAnswer } from './answer.ts';
-import { openDevice, refusePassive, refuseWalls } from './device-file.ts';
+import { openDevice, refusePassive, waysOut } from './device-file.ts';
 import { InputError } from './faults.ts';
 import { type AlongOption, readAboveZero, readAlong, type SolveOptions, withSolveOptions } from './options.ts';
 import { alongSettings, commonSettings } from './settings.ts';
@@ -30,12 +30,17 @@ export function addThreshold(program: Command): void {
     );
   withSolveOptions(command).action(async (path: string, options: CrossingOptions) => {
     const file = openDevice(path, options);
-    refuseWalls(file);
     if (options.pumpMax !== undefined && options.along)
       throw new InputError('option --along', '--along with --pump-max', 'one of them', 'leave one out');
     if (!options.along) refusePassive(file);
     const along = alongSettings(options.along, file);
     const settings = { ...commonSettings(options), levelMax: options.pumpMax ?? null, along };
+    const ways = waysOut(file);
+    if (ways) {
+      const none = { ...settings, inputs: [], sense: 'gain' as const };
+      process.exitCode = printAnswer(await ask('match', file, none, options), options.json === true);
+      return;
+    }
     process.exitCode = printAnswer(await ask('threshold', file, settings, options), options.json === true);
   });
 }

@@ -92,7 +92,7 @@ function computeRun(input: RunInput): RunOutput {
     const { inputs = [], sense = 'loss' } = input.settings;
     if (input.settings.everyChoice)
       return choicesRecord(device, findChoices(device, { digits, qMin: qMin!, progress }), context);
-    const request = { inputs, sense, digits, qMin: qMin!, progress };
+    const request = { inputs, sense, digits, ...(qMin === undefined ? {} : { qMin }), progress };
     if (!along) {
       const most = levelMax === null || levelMax === undefined ? {} : { levelMax };
       return matchRecord(device, findMatches(device, { ...request, ...most }), sense, context);

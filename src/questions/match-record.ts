@@ -35,7 +35,7 @@ export function matchRecord(
   });
   addFields(book, answer.matches, sense);
   addMarks(book, answer.matches, answer.inputs.includes(true), answer.matches.length);
-  const cautions = cautionsFor('drive', device);
+  const cautions = cautionsFor(answer.inputs.includes(true) ? 'drive' : 'threshold', device);
   return book.close('match', matchSentence(device, answer.matches, answer.channels, answer.inputs, sense), cautions, {
     ...common(answer.channels, answer.inputs, answer.matches),
     modes: [],
@@ -60,11 +60,12 @@ export function knobMatchRecord(
   const book = openBook(first.openings.prepared.device, first.openings.prepared, first.order, context);
   addFields(book, [first], 'loss');
   addMarks(book, matches, inputs.includes(true), 1);
-  const cautions = cautionsFor('drive', device);
+  const cautions = cautionsFor(inputs.includes(true) ? 'drive' : 'threshold', device);
   const place = placeText(device, first.k);
-  const sentence =
-    `With ${knob} = ${significant(first.level, 7)} nothing comes back from ${inputNames(channels, inputs)} at ${place}: ` +
-    `${first.forward.ownMesh.reflected.toExponential(1)} of the power in the forward check.`;
+  const sentence = !inputs.includes(true)
+    ? `With ${knob} = ${significant(first.level, 7)} a pole lies on the real axis at ${place}.`
+    : `With ${knob} = ${significant(first.level, 7)} nothing comes back from ${inputNames(channels, inputs)} at ${place}: ` +
+      `${first.forward.ownMesh.reflected.toExponential(1)} of the power in the forward check.`;
   return book.close('match', sentence, cautions, {
     ...common(channels, inputs, matches),
     knob,

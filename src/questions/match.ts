@@ -22,7 +22,7 @@ export interface MatchRequest {
   readonly sense?: LevelSense;
   /** Largest level looked at; a quarter of the largest |ε| of the pumped bodies if absent. */
   readonly levelMax?: number;
-  /** Lowest Q = Re k / 2|Im k| of the complex spectrum; 10 if absent. */
+  /** Lowest Q = Re k / 2|Im k| of the complex spectrum; if absent what the largest level can bring to the axis, or 10. */
   readonly qMin?: number;
   readonly progress?: Progress;
 }
@@ -79,9 +79,10 @@ export function findMatches(device: Device, request: MatchRequest): MatchAnswer 
   const sense = request.sense ?? 'loss';
   const resolution = resolutionFor(digits);
   const { kMin, kMax } = device.band;
-  const slope = 1 / (2 * (request.qMin ?? 10));
+  const levelMax = request.levelMax ?? defaultMost(device);
+  const scope = scopeOf(device, levelMax, request.qMin);
+  const { slope } = scope;
   progress?.('meshing', 0);
-  const scope = { kMin, kMax, slope };
   const openings = prepareOpenings(device, scope, resolution);
   const inputs = inputsOf(openings, request.inputs);
   const assignment = assignmentOf(openings, inputs);
@@ -91,12 +92,12 @@ export function findMatches(device: Device, request: MatchRequest): MatchAnswer 
   for (const [i, near] of ks.entries()) {
     progress?.('polishing', i / ks.length);
     const mode = polishMode(openings, sense, assignment, inputs, near, order);
-    if (!mode || mode.k.re < kMin || mode.k.re > kMax || Math.abs(mode.k.im) > slope * mode.k.re) continue;
+    if (!mode || !(mode.k.re >= scope.kMin && mode.k.re <= scope.kMax)) continue;
+    if (Math.abs(mode.k.im) > slope * mode.k.re) continue;
     if (!modes.some((m) => modulus(subtract(m.k, mode.k)) <= 10 * (m.kError + mode.kError) + 1e-9 * kMax))
       modes.push(mode);
   }
   modes.sort((a, b) => a.k.re - b.k.re);
-  const levelMax = request.levelMax ?? defaultMost(device);
   const active = device.bodies.some((b) => b.pumpWeight > 0);
   const matches = modes.flatMap((mode, i): RealMatch[] => {
     if (mode.trapped) return [];
@@ -107,14 +108,14 @@ export function findMatches(device: Device, request: MatchRequest): MatchAnswer 
       return inputs.includes(true) ? [matchWithoutLevel(openings, own(), sense, inputs, mode, order)] : [];
     if (!active) return [];
     const found = matchByLevel(openings, own, sense, assignment, inputs, mode, order, levelMax);
-    return found && found.k >= kMin && found.k <= kMax ? [found] : [];
+    return found ? [found] : [];
   });
   matches.sort((a, b) => a.level - b.level);
   return {
     channels: openings.channels.map((c) => c.name),
     inputs,
-    modes,
-    matches,
+    modes: modes.filter(({ k }) => k.re >= kMin && k.re <= kMax),
+    matches: matches.filter(({ k }) => k >= kMin && k <= kMax),
     covered,
     order,
     digits,
@@ -131,6 +132,22 @@ const SEARCH_ORDER = 5;
 /** Triangles of the independent mesh, as a share of the rule. */
 export const OWN_MESH = 0.8;
 const SEED = 4711;
+
+/**
+ * The band and Q asked for. Where the level decides, all modes that it can bring to the axis, |δk|/k ≈ D w / 2|ε|, and a
+ * little beyond the ends of the band.
+ */
+function scopeOf(device: Device, levelMax: number, qMin: number | undefined): Scope {
+  const { kMin, kMax } = device.band;
+  const reach = Math.max(
+    0,
+    ...device.bodies.map((b) => (b.pumpWeight > 0 ? (levelMax * b.pumpWeight) / (2 * modulus(b.permittivity)) : 0)),
+  );
+  if (reach === 0 || qMin !== undefined) return { kMin, kMax, slope: 1 / (2 * (qMin ?? 10)) };
+  const slope = Math.min(1, 1.3 * reach + 0.01);
+  const margin = Math.min(0.3 * slope, 0.25);
+  return { kMin: kMin * (1 - margin), kMax: kMax * (1 + margin), slope };
+}
 
 /** Which channels are inputs. */
 export function inputsOf({ channels, openings }: PreparedOpenings, names: readonly string[]): readonly boolean[] {
