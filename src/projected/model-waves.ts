@@ -48,12 +48,17 @@ export function waveSource(model: Pick<ScatteringModel, 'openings' | 'channels'>
     });
     return { slopes, outgoing, incoming };
   };
+  const cutoffs = model.openings.flatMap(({ spec }, o) =>
+    spec.kind === 'guide' ? Array.from({ length: counts[o] }, (_, j) => openings[o].variation(j) / spec.index) : [],
+  );
   return {
     openings,
     places: Int32Array.from(channels, ({ opening, index }) => first[opening] + index),
     at,
     ratesAt(k) {
-      const h = 2e-4 * Math.hypot(k.re, k.im);
+      // a cutoff is a branch point: stay clear of it
+      const clear = cutoffs.reduce((d, c) => Math.min(d, Math.hypot(k.re - c, k.im)), Infinity);
+      const h = Math.min(2e-4 * Math.hypot(k.re, k.im), Math.max(0.02 * clear, 1e-9 * k.re));
       const [wide, narrow] = [h, h / 2].map((step) => {
         const [up, down] = [at({ re: k.re + step, im: k.im }), at({ re: k.re - step, im: k.im })];
         const difference = (a: ComplexArray, b: ComplexArray): ComplexArray => a.map((v, i) => (v - b[i]) / (2 * step));

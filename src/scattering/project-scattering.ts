@@ -124,16 +124,22 @@ export function projectScattering(closed: ClosedOpenings, request: ProjectionReq
     r = size;
   };
 
+  /** Strong directions first: what rounding leaves of them would hide the weak ones. */
   const takeIn = (F: Float64Array, q: number): number => {
-    projectOut(F, q);
-    projectOut(F, q);
-    const { columns, kept } = strongest(F, q, transposeTimes(F, q, apply(energy, F, q), q, N), limit, N);
-    if (kept === 0) return 0;
-    projectOut(columns, kept);
-    const L = choleskyFactor(transposeTimes(columns, kept, apply(energy, columns, kept), kept, N), kept);
-    if (L) divideByTranspose(columns, kept, L, N);
-    join(columns, kept);
-    return kept;
+    let taken = 0;
+    for (let round = 0; round < MOST_ROUNDS; round++) {
+      projectOut(F, q);
+      projectOut(F, q);
+      const { columns, kept } = strongest(F, q, transposeTimes(F, q, apply(energy, F, q), q, N), limit, N);
+      if (kept === 0) break;
+      projectOut(columns, kept);
+      const L = choleskyFactor(transposeTimes(columns, kept, apply(energy, columns, kept), kept, N), kept);
+      if (!L) break;
+      divideByTranspose(columns, kept, L, N);
+      join(columns, kept);
+      taken += kept;
+    }
+    return taken;
   };
   const field = (vector: ComplexArray): ComplexArray => {
     const out = new Float64Array(2 * N);
@@ -294,7 +300,11 @@ function realColumns(x: ComplexArray, columns: number, N: number): Float64Array 
   return F;
 }
 
-/** The combinations of q columns whose energy is above the limit, scaled to energy 1. */
+/** Energies that one Gram matrix can tell apart from rounding, relative. */
+const DYNAMIC = 1e-9;
+const MOST_ROUNDS = 4;
+
+/** The combinations of q columns whose energy is above the limit and not far below the largest, scaled to energy 1. */
 function strongest(
   F: Float64Array,
   q: number,
@@ -305,7 +315,8 @@ function strongest(
   const packed = new Float64Array(2 * q * q);
   for (let i = 0; i < q * q; i++) packed[2 * i] = gram[i];
   const { values, vectors } = hermitianEigen(packed, q);
-  const chosen = Array.from({ length: q }, (_, i) => q - 1 - i).filter((i) => values[i] > limit);
+  const bar = Math.max(limit, DYNAMIC * values[q - 1]);
+  const chosen = Array.from({ length: q }, (_, i) => q - 1 - i).filter((i) => values[i] > bar);
   const C = new Float64Array(q * chosen.length);
   chosen.forEach((from, to) => {
     for (let i = 0; i < q; i++) C[i + to * q] = vectors[2 * (i + from * q)] / Math.sqrt(values[from]);

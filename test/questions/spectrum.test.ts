@@ -164,6 +164,37 @@ bodies: [ { material: electric wall, disk: { center: [0, 2], radius: 1 } } ]`,
   }
 });
 
+test('a cutoff inside the band: certified on both sides, and its slope is that of differences', () => {
+  const device = readDevice(
+    `wavewell: 1
+length: mm
+polarization: Ez
+band: { frequency: [11, 15], unit: GHz }
+guides:
+  - { name: in, from: [0, 0], angle: 180, size: WR-90, modes: 2 }
+  - { name: out, from: [0, 0], angle: 0, size: WR-90, modes: 2 }
+bodies: [ { material: electric wall, disk: { center: [0, 2], radius: 1 } } ]`,
+    'test.yaml',
+  );
+  const { kMin, kMax } = device.band;
+  const cutoff = (2 * Math.PI) / 22.86;
+  const answer = findSpectrum(device, evenly(kMin, kMax, 41));
+  const near = [-1e-3, -1e-5, 1e-5, 1e-3].map((x) => cutoff * (1 + x));
+  const { worst, ratio } = against(answer, [...random(kMin, kMax, 6), ...near]);
+  expect(worst).toBeLessThan(1e-6);
+  expect(ratio).toBeLessThan(3);
+  const solver = modelSolver(answer.model);
+  const [k, h] = [near[3], 1e-6];
+  const slope = solver.at(k, { slope: true }).slope!;
+  const [up, down] = [solver.at(k + h).S, solver.at(k - h).S];
+  expect(
+    largest(
+      slope,
+      up.map((v, i) => (v - down[i]) / (2 * h)),
+    ),
+  ).toBeLessThan(1e-3);
+});
+
 test('metal of finite conductivity goes by dense solves, since its impedance is not affine in k²', () => {
   const device = readDevice(
     `wavewell: 1
