@@ -213,11 +213,11 @@ function cycleFaults(code: Code): string[] {
   return faults;
 }
 
-/** Breadth-first from every file of the page; the way there is part of the message. */
+/** Breadth-first from every file of the page and of what it may evaluate; the way there is part of the message. */
 function browserFaults(code: Code): string[] {
   const faults: string[] = [];
   const cameFrom = new Map<string, string | null>();
-  const queue = [...code.keys()].filter((path) => within(path, 'viewer/page'));
+  const queue = [...code.keys()].filter((path) => within(path, 'viewer/page') || within(path, 'src/projected'));
   for (const path of queue) cameFrom.set(path, null);
   for (let i = 0; i < queue.length; i++) {
     const path = queue[i];
