@@ -10,6 +10,9 @@ import {
   multiply,
   subtract,
 } from '../numerics/complex.ts';
+import { combine, normaliseColumns, orthonormalBasis, transposeProduct } from '../eigen/columns.ts';
+import { eigenGeneral } from '../numerics/eigenvalues.ts';
+import { luFactor, luSolveInto } from '../numerics/lu.ts';
 import { randomStream } from '../numerics/random.ts';
 import type { Assignment, ClosedOpenings } from '../operator/closed-openings.ts';
 import type { Part } from '../operator/device-family.ts';
@@ -44,6 +47,76 @@ export function refineClosed(
     if (step > 5 && modulus(moved) <= 1e-11 * modulus(k)) return { k, vector: u };
   }
   return null;
+}
+
+/** A mode with all others at the same k. */
+export interface ClosedGroup {
+  readonly k: Complex;
+  /** Largest distance of a member from the mean k. */
+  readonly spread: number;
+  readonly multiplicity: number;
+  /** size × multiplicity. */
+  readonly vectors: ComplexArray;
+}
+
+/** Columns of the block that looks for companions: groups of so many less one are told. */
+const BLOCK = 4;
+/** Members lie within this share of k. */
+const COMPANION = 1e-6;
+/** The block is factored at this distance from the mode, relative: at the mode itself its columns would all become one. */
+const BESIDE = 1e-5;
+const BLOCK_STEPS = 4;
+
+/** The mode near a start with its companions: modes that symmetry puts at the same k. Null where none is found. */
+export function refineClosedGroup(
+  closed: ClosedOpenings,
+  level: number,
+  assignment: Assignment,
+  near: Complex,
+  start: ComplexArray | null,
+): ClosedGroup | null {
+  const one = refineClosed(closed, level, assignment, near, start);
+  if (!one) return null;
+  const n = closed.family.size;
+  const columns = Math.min(BLOCK, n);
+  const shift = multiply(one.k, complex(1 + BESIDE));
+  const factor = closed.factorize(shift, level, assignment, one.k.re);
+  const random = randomStream(SEED);
+  let U: ComplexArray = Float64Array.from({ length: 2 * n * columns }, () => random.normal());
+  U.set(one.vector);
+  const times = (part: Part, k: Complex): ComplexArray => {
+    const out = new Float64Array(U.length);
+    for (let j = 0; j < columns; j++)
+      closed.multiplyInto(out.subarray(2 * n * j, 2 * n * (j + 1)), k, level, part, U.subarray(2 * n * j, 2 * n * (j + 1)), assignment); // prettier-ignore
+    return out;
+  };
+  for (let step = 0; step < BLOCK_STEPS; step++) {
+    const slope = times('byK', one.k);
+    factor.solveInto(slope, slope, columns);
+    U = orthonormalBasis(slope, columns, n);
+  }
+  factor.release();
+  const byK = transposeProduct(U, columns, times('byK', one.k), columns, n);
+  const value = transposeProduct(U, columns, times('value', one.k), columns, n);
+  const lu = luFactor(byK, columns);
+  luSolveInto(value, lu, value, columns);
+  const { values, vectors } = eigenGeneral(value, columns);
+  const members = Array.from({ length: columns }, (_, i) => complex(-values[2 * i], -values[2 * i + 1]))
+    .map((offset, i) => ({ offset, i }))
+    .filter(({ offset }) => modulus(offset) <= COMPANION * modulus(one.k));
+  if (members.length <= 1) return { k: one.k, spread: 0, multiplicity: 1, vectors: one.vector };
+  const y = new Float64Array(2 * columns * members.length);
+  members.forEach(({ i }, j) => y.set(vectors.subarray(2 * columns * i, 2 * columns * (i + 1)), 2 * columns * j));
+  const mean = divide(
+    members.reduce((sum, { offset }) => add(sum, offset), complex(0)),
+    complex(members.length),
+  );
+  return {
+    k: add(one.k, mean),
+    spread: Math.max(...members.map(({ offset }) => modulus(subtract(offset, mean)))),
+    multiplicity: members.length,
+    vectors: normaliseColumns(combine(U, columns, y, members.length, n), members.length, n),
+  };
 }
 
 /** uᵀAu, uᵀA_ku or uᵀA_Du, not conjugated. */

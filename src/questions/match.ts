@@ -163,8 +163,8 @@ export function assignmentOf({ channels }: PreparedOpenings, inputs: readonly bo
   return (opening, index) => (into.has(`${opening} ${index}`) ? 'incoming' : 'outgoing');
 }
 
-/** Candidates in the scope; windows end where a wave of an opening begins to carry power. */
-function searchBand(
+/** Candidates in the scope, found on a coarse mesh at low order; windows end where a wave of an opening begins to carry power. */
+export function searchBand(
   device: Device,
   names: readonly string[],
   sense: LevelSense,

@@ -14,6 +14,7 @@ import { farField } from '../scattering/amplitudes.ts';
 import { multipoleOrder, type Multipoles } from '../scattering/contrast.ts';
 import { rimMultipoles } from '../scattering/rim-waves.ts';
 import { modeLabel } from './label.ts';
+import { findGuideModes } from './guide-modes.ts';
 import { expectedModes } from './mode-count.ts';
 import { groundOf, type Prepared, prepare, spaceOf } from './prepare.ts';
 
@@ -75,7 +76,7 @@ export interface ModesAnswer {
 export const DEFAULT_Q_MIN = 10;
 
 /** Highest Q that is told from infinity: |Im k| below this share of Re k is rounding. */
-const HIGHEST_Q = 1e13;
+export const HIGHEST_Q = 1e13;
 
 /**
  * All poles (zeros) with real part in the device's band and Q ≥ qMin, each with its error.
@@ -90,6 +91,7 @@ export function findModes(device: Device, request: ModesRequest = {}): ModesAnsw
   const qMin = request.qMin ?? DEFAULT_Q_MIN;
   const assignment = request.assignment ?? 'poles';
   if (!(qMin >= 0.5)) throw new RangeError(`the lowest Q came as ${qMin}; expected 0.5 or more`);
+  if ((device.guides ?? []).length > 0) return findGuideModes(device, request);
   const resolution = startResolution(digits);
   const { kMin, kMax } = device.band;
   const wedge = wedgeFor(device, assignment, kMin, kMax, 1 / (2 * qMin), 10 ** -digits);
@@ -195,5 +197,5 @@ function outsideOf(
 }
 
 /** The parity that each symmetry line forces on every mode. */
-const parityLabels = (device: Device): string[] =>
+export const parityLabels = (device: Device): string[] =>
   (device.symmetry ?? []).map(({ across, parity }) => `${parity} in ${across}`);

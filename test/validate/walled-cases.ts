@@ -19,7 +19,7 @@ const zeros: Readonly<Record<'j' | 'jp', readonly (readonly [number, number])[]>
   readFileSync(new URL('../checks/cavity-modes.json', import.meta.url), 'utf8'),
 );
 
-export const walledCases = (): Case[] => [...cavities(), ...slabsInGuides()];
+export const walledCases = (): Case[] => [...cavities(), ...slabsInGuides(), ...slabModeCases()];
 
 function cavities(): Case[] {
   return (['Ez', 'Hz'] as const).flatMap((polarization) =>
@@ -61,35 +61,40 @@ function exactOf(shape: 'rectangle' | 'disk', polarization: Polarization): Exact
   return out.sort((x, y) => x.k.re - y.k.re);
 }
 
-/** A slab of ε = 6 (and one with loss) across a guide of width 1, between reference planes at its faces. */
+const SLAB = 0.8;
+
+/** A slab of ε = 6 + i loss across a guide of width 1; reference planes at its faces. */
+function slabDevice(polarization: Polarization, loss: number, band: readonly [number, number]) {
+  const file = {
+    wavewell: 1,
+    polarization,
+    band: { wavenumber: band },
+    materials: { glass: { permittivity: [6, loss] } },
+    guides: [
+      { name: 'in', from: [-SLAB / 2, 0], angle: 180, width: 1, length: 0.5, reference: 0 },
+      { name: 'out', from: [SLAB / 2, 0], angle: 0, width: 1, length: 0.5, reference: 0 },
+    ],
+    bodies: [{ material: 'glass', rectangle: { center: [0, 0], size: [SLAB, 1] } }],
+    enclosure: { spaces: [{ rectangle: { center: [0, 0], size: [SLAB, 1] } }] },
+  };
+  return readDevice(JSON.stringify(file), 'slab.json');
+}
+
 function slabsInGuides(): Case[] {
-  const length = 0.8;
   return (['Ez', 'Hz'] as const).flatMap((polarization) =>
     [0, 0.2].flatMap((loss) =>
       [5, 8].map((digits) => ({
         id: `slab in guide ${polarization} loss ${loss} digits ${digits}`,
         long: false,
         rows: (): Row[] => {
-          const file = {
-            wavewell: 1,
-            polarization,
-            band: { wavenumber: [3.3, 6] },
-            materials: { glass: { permittivity: [6, loss] } },
-            guides: [
-              { name: 'in', from: [-length / 2, 0], angle: 180, width: 1, length: 0.5, reference: 0 },
-              { name: 'out', from: [length / 2, 0], angle: 0, width: 1, length: 0.5, reference: 0 },
-            ],
-            bodies: [{ material: 'glass', rectangle: { center: [0, 0], size: [length, 1] } }],
-            enclosure: { spaces: [{ rectangle: { center: [0, 0], size: [length, 1] } }] },
-          };
           const ks = Array.from({ length: 9 }, (_, i) => complex(3.35 + 0.33 * i));
-          const answer = findScattering(readDevice(JSON.stringify(file), 'slab.json'), ks, { digits });
+          const answer = findScattering(slabDevice(polarization, loss, [3.3, 6]), ks, { digits });
           const place = (name: string): number => answer.channels.findIndex((c) => c.name === name);
           const first = polarization === 'Ez' ? 'in.0' : 'in.0';
           const [i, j] = [place(first), place(first.replace('in', 'out'))];
           const n = answer.channels.length;
           return answer.points.flatMap(({ k, matrix, error }) => {
-            const layers = [{ permittivity: complex(6, loss), length }];
+            const layers = [{ permittivity: complex(6, loss), length: SLAB }];
             const { r, t } = layersInGuide(polarization, layers, polarization === 'Ez' ? Math.PI : 0, k);
             const row = (what: string, at: number, exact: Complex): Row => ({
               what: `${what} at k = ${k.re.toFixed(2)}`,
@@ -104,5 +109,51 @@ function slabsInGuides(): Case[] {
         },
       })),
     ),
+  );
+}
+
+/**
+ * A slab of ε = 6, 0.8 long, across a guide of width 1: of each family n (q = nπ) the modes even and odd along the guide,
+ * pβ tan βL/2 = −ig and pβ cot βL/2 = ig, β² = εk² − q², g² = k² − q². Newton on these equations in double precision.
+ */
+const slabModes: Readonly<Record<'Ez' | 'Hz', readonly (readonly [number, number])[]>> = {
+  Ez: [
+    [4.045793609119674, 0],
+    [4.4787178445147005, 0],
+    [4.612753054503218, 0],
+    [4.962400448061444, -0.3367317346655851],
+    [5.297504852995538, 0],
+    [5.476549526203435, 0],
+    [5.6494408243268746, 0],
+    [5.781534145123429, 0],
+  ],
+  Hz: [
+    [3.681512306225179, -0.6077395994020246],
+    [3.9169542174485703, 0],
+    [4.139995360254593, 0],
+    [4.80956186310699, -0.44244659987095847],
+    [4.9096726709125935, 0],
+    [5.014080290522207, -0.5394582700002846],
+    [5.054901088093876, 0],
+    [5.358243591559495, 0],
+    [5.962551094677654, 0],
+    [5.989076190753847, 0],
+  ],
+};
+
+function slabModeCases(): Case[] {
+  return (['Ez', 'Hz'] as const).flatMap((polarization) =>
+    [5, 8].map((digits) => ({
+      id: `modes of a slab in a guide ${polarization} digits ${digits}`,
+      long: false,
+      rows: () =>
+        modeRows({
+          device: slabDevice(polarization, 0, [3.5, 6]),
+          exact: slabModes[polarization].map(([re, im]) => ({ k: { re, im }, multiplicity: 1, label: '' })),
+          digits,
+          qMin: 2,
+          complete: () => true,
+        }),
+    })),
   );
 }
