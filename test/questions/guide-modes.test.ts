@@ -13,7 +13,7 @@ const cross = (more: string) =>
   readDevice(
     `wavewell: 1
 polarization: Ez
-band: { wavenumber: [3.6, 5.4] }
+band: { wavenumber: [3.6, 4.8] }
 materials: { glass: { index: 2 } }
 guides:
   - { name: east, from: [1, 0], angle: 0, width: 0.9 }
@@ -29,16 +29,16 @@ ${more}`,
 test(
   'a cross with fourfold symmetry: pairs count twice, and each half finds one of them',
   () => {
-    const whole = findModes(cross(''), { digits: 6, qMin: 3 });
+    const whole = findModes(cross(''), { digits: 4, qMin: 3 });
     const pairs = whole.modes.filter((m) => m.multiplicity === 2);
     expect(pairs.length).toBeGreaterThan(0);
     expect(whole.covered).toBe(true);
     const halves = (['even', 'odd'] as const).map((field) =>
-      findModes(cross(`symmetry: [ { y: 0, field: ${field} } ]`), { digits: 6, qMin: 3 }),
+      findModes(cross(`symmetry: [ { y: 0, field: ${field} } ]`), { digits: 4, qMin: 3 }),
     );
     for (const pair of pairs) {
       for (const half of halves) {
-        const own = half.modes.find((m) => Math.hypot(m.k.re - pair.k.re, m.k.im - pair.k.im) < 1e-5)!;
+        const own = half.modes.find((m) => Math.hypot(m.k.re - pair.k.re, m.k.im - pair.k.im) < 1e-3)!;
         expect(own.multiplicity).toBe(1);
         expect(Math.hypot(own.k.re - pair.k.re, own.k.im - pair.k.im)).toBeLessThan(3 * (own.kError + pair.kError));
       }
@@ -63,8 +63,8 @@ test(
 test(
   'zeros of a lossless device are the conjugates of its poles',
   () => {
-    const poles = findModes(cross(''), { digits: 6, qMin: 3 });
-    const zeros = findModes(cross(''), { digits: 6, qMin: 3, assignment: 'zeros' });
+    const poles = findModes(cross(''), { digits: 4, qMin: 3 });
+    const zeros = findModes(cross(''), { digits: 4, qMin: 3, assignment: 'zeros' });
     expect(zeros.modes.length).toBe(poles.modes.length);
     poles.modes.forEach(({ k }) => {
       const off = Math.min(...zeros.modes.map((z) => Math.hypot(z.k.re - k.re, z.k.im + k.im)));
