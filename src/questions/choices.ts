@@ -5,7 +5,7 @@ import type { Device } from '../device/model.ts';
 import { type Complex, modulus, subtract } from '../numerics/complex.ts';
 import { drivenModel, searchModel } from './driven-model.ts';
 import { expectedModes } from './mode-count.ts';
-import type { Progress } from './modes.ts';
+import type { Progress } from './progress.ts';
 import { type PreparedOpenings, prepareOpenings } from './prepare-openings.ts';
 
 export interface ChoicesRequest {

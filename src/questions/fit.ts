@@ -8,7 +8,7 @@ import { type Complex, modulus } from '../numerics/complex.ts';
 import type { Direction } from '../numerics/conventions.ts';
 import type { LevelSense } from '../operator/device-family.ts';
 import { expectedModes } from './mode-count.ts';
-import type { Progress } from './modes.ts';
+import type { Progress } from './progress.ts';
 import { groundOf, type Prepared } from './prepare.ts';
 
 export interface FitRequest {

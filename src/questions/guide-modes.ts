@@ -8,7 +8,14 @@ import { type Complex, type ComplexArray, modulus, subtract } from '../numerics/
 import type { Assignment } from '../operator/closed-openings.ts';
 import { type ClosedGroup, refineClosedGroup } from './closed-newton.ts';
 import { assignmentOf, inputsOf, searchBand } from './match.ts';
-import { DEFAULT_Q_MIN, HIGHEST_Q, type Mode, type ModesAnswer, type ModesRequest, parityLabels } from './modes.ts';
+import {
+  DEFAULT_Q_MIN,
+  HIGHEST_Q,
+  type Mode,
+  type ModesAnswer,
+  type ModesRequest,
+  parityLabels,
+} from './mode-answer.ts';
 import { type PreparedOpenings, prepareOpenings } from './prepare-openings.ts';
 
 /**

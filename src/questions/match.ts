@@ -9,7 +9,7 @@ import type { Assignment, ClosedOpenings } from '../operator/closed-openings.ts'
 import type { LevelSense } from '../operator/device-family.ts';
 import { crossClosed, refineClosed } from './closed-newton.ts';
 import { driveOf, type DrivenPowers, drivenPowers, normaliseInputs } from './driven.ts';
-import type { Progress } from './modes.ts';
+import type { Progress } from './progress.ts';
 import { expectedModes } from './mode-count.ts';
 import type { Scope } from './prepare.ts';
 import { type PreparedOpenings, prepareOpenings } from './prepare-openings.ts';

@@ -1,10 +1,8 @@
 // Where does a device resonate? Poles, or zeros, in a window of complex k.
 
-import { type Completeness, countedSearch, isCountable } from '../accuracy/completeness.ts';
-import { type ErrorParts, climbModes, type FoundMode, groupWidth, totalError } from '../accuracy/mode-ladder.ts';
+import { countedSearch, isCountable } from '../accuracy/completeness.ts';
+import { climbModes, type FoundMode, groupWidth, totalError } from '../accuracy/mode-ladder.ts';
 import { returnedToMode } from '../accuracy/layer-return.ts';
-import type { Limits, Stop } from '../accuracy/memory.ts';
-import type { Strategy } from '../accuracy/refinement-plan.ts';
 import { DEFAULT_DIGITS, startResolution } from '../accuracy/resolution.ts';
 import { metals } from '../device/metals.ts';
 import { type Device, isWalled } from '../device/model.ts';
@@ -15,68 +13,21 @@ import { multipoleOrder, type Multipoles } from '../scattering/contrast.ts';
 import { rimMultipoles } from '../scattering/rim-waves.ts';
 import { modeLabel } from './label.ts';
 import { findGuideModes } from './guide-modes.ts';
+import {
+  type Assignment,
+  DEFAULT_Q_MIN,
+  HIGHEST_Q,
+  type Mode,
+  type ModesAnswer,
+  type ModesRequest,
+  parityLabels,
+} from './mode-answer.ts';
+import type { Progress } from './progress.ts';
 import { expectedModes } from './mode-count.ts';
 import { groundOf, type Prepared, prepare, spaceOf } from './prepare.ts';
 
-/** Called now and then with what is being done and the share that is done, 0 … 1. It may throw to stop the work. */
-export type Progress = (stage: string, done: number) => void;
-
-export type Assignment = 'poles' | 'zeros';
-
-export interface ModesRequest {
-  readonly digits?: number;
-  /** `poles`: all waves go out; `zeros`: all come in. */
-  readonly assignment?: Assignment;
-  /** Lowest Q = Re k / 2|Im k| asked for; default 10. */
-  readonly qMin?: number;
-  readonly limits?: Limits;
-  /** Where order ends and size begins; by default order leads except at corners. */
-  readonly strategy?: Strategy;
-  readonly progress?: Progress;
-}
-
-export interface Mode {
-  readonly k: Complex;
-  readonly error: ErrorParts;
-  readonly kError: number;
-  readonly q: number;
-  readonly qError: number;
-  readonly multiplicity: number;
-  /** "m = 5" where the rim shows one azimuthal order only, else "". */
-  readonly label: string;
-  readonly layerShare: number;
-  readonly layerSensitivity: number;
-  /** Coefficients in the space of `prepared` at `order`, one array a member. */
-  readonly vectors: readonly ComplexArray[];
-  /** Amplitudes of the first member outside: outgoing for poles, incoming for zeros; m = −M … M. */
-  readonly multipoles: Multipoles;
-  /** Far-field power density at 0 … 359°, mean 1 (of the first member); empty where the rim is not a full one. */
-  readonly farField: Float64Array;
-}
-
-export interface ModesAnswer {
-  readonly modes: readonly Mode[];
-  readonly assignment: Assignment;
-  readonly dropped: readonly { readonly k: Complex; readonly reason: string }[];
-  /** The search covered the whole window. */
-  readonly covered: boolean;
-  /** What the independent count says of the list. */
-  readonly complete: Completeness | null;
-  /** All modes have the digits. */
-  readonly reached: boolean;
-  /** What kept it from that. */
-  readonly stopped: Stop | null;
-  readonly digits: number;
-  readonly qMin: number;
-  /** Highest order among the triangles; `prepared` knows those of the others. */
-  readonly order: number;
-  readonly prepared: Prepared;
-}
-
-export const DEFAULT_Q_MIN = 10;
-
-/** Highest Q that is told from infinity: |Im k| below this share of Re k is rounding. */
-export const HIGHEST_Q = 1e13;
+export { DEFAULT_Q_MIN };
+export type { Assignment, Mode, ModesAnswer, ModesRequest, Progress };
 
 /**
  * All poles (zeros) with real part in the device's band and Q ≥ qMin, each with its error.
@@ -195,7 +146,3 @@ function outsideOf(
   const M = multipoleOrder(device, bodyRadius, Math.hypot(k.re, k.im));
   return rimMultipoles(device, spaceOf(prepared, order), k, assignment === 'poles' ? 1 : 2, M, members);
 }
-
-/** The parity that each symmetry line forces on every mode. */
-export const parityLabels = (device: Device): string[] =>
-  (device.symmetry ?? []).map(({ across, parity }) => `${parity} in ${across}`);

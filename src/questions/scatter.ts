@@ -5,7 +5,7 @@ import type { Device } from '../device/model.ts';
 import { type Complex, complex, type ComplexArray, modulus } from '../numerics/complex.ts';
 import type { ClosedOpenings } from '../operator/closed-openings.ts';
 import type { LevelSense } from '../operator/device-family.ts';
-import type { Progress } from './modes.ts';
+import type { Progress } from './progress.ts';
 import { type DeviceChannel, type PreparedOpenings, prepareOpenings } from './prepare-openings.ts';
 
 export interface ScatterRequest {

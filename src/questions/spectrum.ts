@@ -12,7 +12,7 @@ import { type ModelSolver, modelSolver } from '../projected/pole-residue.ts';
 import type { ModelPole, ScatteringModel } from '../projected/scattering-model.ts';
 import { qOf, sharpPoles } from '../projected/sharp-poles.ts';
 import { projectScattering, type ScatteringProjection } from '../scattering/project-scattering.ts';
-import type { Progress } from './modes.ts';
+import type { Progress } from './progress.ts';
 import { type DeviceChannel, type PreparedOpenings, prepareOpenings } from './prepare-openings.ts';
 import { whatRemains } from './scatter.ts';
 
