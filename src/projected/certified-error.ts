@@ -2,23 +2,36 @@
 
 import type { ScatteringModel } from './scattering-model.ts';
 
-/** Of full solves at high orders: absolute in S, and of a pole relative in k. */
-const ROUNDING = 1e-12;
-const POLE_ROUNDING = 5e-14;
+/** Least rounding of S, and what moves a pole, relative in k, in units of it. */
+const LEAST_ROUNDING = 1e-12;
+const POLE_SHARE = 0.05;
+/** Measured at a dozen points, asked at thousands. */
+const MARGIN = 3;
 
 /**
  * Of any entry of S at real k, from the residual that the solver estimated there, times the ratio seen in comparisons; and
- * rounding, which moves poles of full solves by 1e-15 (order 7) to 1e-14 (order 11) of k_p.
+ * rounding, which moves S and, relative in k, its poles.
  */
-export function certifiedError(
-  { poles, ratio }: Pick<ScatteringModel, 'poles' | 'ratio'>,
+export const certifiedError = (
+  model: Pick<ScatteringModel, 'poles' | 'ratio' | 'rounding'>,
   k: number,
   residual: number,
+): number => model.ratio * residualError(model.poles, k, residual) + model.rounding * roundingShape(model.poles, k);
+
+/** 1 and, about poles, more. */
+function roundingShape(poles: ScatteringModel['poles'], k: number): number {
+  let shape = 1;
+  for (const pole of poles) shape += (POLE_SHARE * Math.abs(pole.k.im) * k) / ((k - pole.k.re) ** 2 + pole.k.im ** 2);
+  return shape;
+}
+
+/** Rounding of full solves, from the differences of model and full solve at the snapshots, where residuals vanish. */
+export function roundingSeen(
+  poles: ScatteringModel['poles'],
+  differences: readonly { readonly k: number; readonly difference: number }[],
 ): number {
-  let rounding = ROUNDING;
-  for (const pole of poles)
-    rounding += (POLE_ROUNDING * Math.abs(pole.k.im) * k) / ((k - pole.k.re) ** 2 + pole.k.im ** 2);
-  return ratio * residualError(poles, k, residual) + rounding;
+  const seen = differences.map(({ k, difference }) => difference / roundingShape(poles, k));
+  return Math.max(LEAST_ROUNDING, MARGIN * Math.max(0, ...seen));
 }
 
 /**

@@ -34,6 +34,8 @@ export interface ScatteringModel {
   readonly snapshots: Float64Array;
   /** Largest ratio of true error to estimate seen where a full solve was compared with the model before it joined; 1 or more. */
   readonly ratio: number;
+  /** Rounding of S, absolute, away from sharp resonances. */
+  readonly rounding: number;
   /** Sharp resonances: k, and estimated |δk| against the full device. */
   readonly poles: readonly Pick<ModelPole, 'k' | 'error'>[];
 }

@@ -6,7 +6,7 @@ import { complex, type ComplexArray } from '../numerics/complex.ts';
 import { hermitianEigen } from '../numerics/hermitian.ts';
 import { singularValues } from '../numerics/singular-values.ts';
 import type { ClosedOpenings } from '../operator/closed-openings.ts';
-import { certifiedError, residualError } from '../projected/certified-error.ts';
+import { certifiedError, residualError, roundingSeen } from '../projected/certified-error.ts';
 import { delayTrace } from '../projected/model-waves.ts';
 import { type ModelSolver, modelSolver } from '../projected/pole-residue.ts';
 import type { ModelPole, ScatteringModel } from '../projected/scattering-model.ts';
@@ -114,8 +114,9 @@ export function findSpectrum(device: Device, ks: readonly number[], request: Spe
   const start = (): ScatteringProjection =>
     projectScattering(closed, { kMin, kMax, channels: openings.channels, tolerance: 1e-6 * goal });
   let projection = start();
+  let seen: Seen[] = probes.map((k, i) => ({ k, matrix: settled.matrices[i] }));
   probes.forEach((k, i) => projection.add(settled.fields[i], k));
-  let poles = growModel(closed, projection, grid, goal, progress);
+  let poles = growModel(closed, projection, seen, grid, goal, progress);
   let snapshots = projection.model().snapshots.length - probes.length;
 
   // sharp resonances ask for more than what lies between them
@@ -130,17 +131,20 @@ export function findSpectrum(device: Device, ks: readonly number[], request: Spe
     closed = openings.closed(order, 'loss');
     const again = projection.model().snapshots;
     projection = start();
+    seen = [];
     again.forEach((k, i) => {
       progress?.(`order ${order}`, i / again.length);
-      projection.add(closed.scatter(complex(k), 0).fields, k);
+      const { fields, matrix } = closed.scatter(complex(k), 0);
+      projection.add(fields, k);
+      seen.push({ k, matrix });
     });
-    poles = growModel(closed, projection, grid, goal, progress);
+    poles = growModel(closed, projection, seen, grid, goal, progress);
     snapshots += projection.model().snapshots.length;
   }
 
   const step = (kMax - kMin) / (grid.length - 1);
   const places = resolve ? withResonances(grid, poles, step) : grid.map((k) => ({ k, added: false }));
-  const model = { ...projection.model(), poles: poles.map(({ k, error: moved }) => ({ k, error: moved })) };
+  const model = withRounding(projection.model(), poles, seen);
   const shifted = poles.map((pole) => ({ ...pole, orderShift: projection.orderShift(pole.vector, pole.k) }));
   const { error, rest } = settled;
   const points = evaluate({ model, poles: shifted, places, base: error, rest, chosen, progress });
@@ -170,6 +174,7 @@ interface SettledOrder {
   readonly order: number;
   /** Fields of unit drives at the probes, at that order. */
   readonly fields: readonly ComplexArray[];
+  readonly matrices: readonly ComplexArray[];
   /** Largest change from the order below at any probe, times what remains. */
   readonly error: number;
   readonly rest: number;
@@ -200,15 +205,37 @@ function settleOrder(
     const rest = Math.max(...changes.map(([before, last]) => whatRemains(before, last)));
     const error = rest * Math.max(...changes.map(([, last]) => last));
     if (error <= goal || order + 1 >= HIGHEST_ORDER)
-      return { order, fields: high.map((h) => h.fields), error, rest: Math.max(rest, LEAST_REST), factorizations };
+      return {
+        order,
+        fields: high.map((h) => h.fields),
+        matrices: high.map((h) => h.matrix),
+        error,
+        rest: Math.max(rest, LEAST_REST),
+        factorizations,
+      };
     [low, mid] = [mid, high];
   }
+}
+
+/** S of a full solve whose fields have joined the basis. */
+interface Seen {
+  readonly k: number;
+  readonly matrix: ComplexArray;
+}
+
+/** Model and full solve differ at the snapshots by rounding only. */
+function withRounding(model: ScatteringModel, poles: readonly ModelPole[], seen: readonly Seen[]): ScatteringModel {
+  const sharp = poles.map(({ k, error }) => ({ k, error }));
+  const solver = modelSolver(model);
+  const differences = seen.map(({ k, matrix }) => ({ k, difference: difference(solver.at(k).S, matrix) }));
+  return { ...model, poles: sharp, rounding: roundingSeen(sharp, differences) };
 }
 
 /** Snapshots until the estimate is below the goal wherever it is looked at, sharp resonances included. */
 function growModel(
   closed: ClosedOpenings,
   projection: ScatteringProjection,
+  seen: Seen[],
   grid: readonly number[],
   goal: number,
   progress?: Progress,
@@ -223,6 +250,7 @@ function growModel(
     // what the estimate was worth here, before the snapshot joins
     if (estimate > 1e-9) projection.compare(difference(solver.at(k).S, matrix) / estimate);
     projection.add(fields, k);
+    seen.push({ k, matrix });
     // one inverse iteration with the same factorization: channels may hardly drive the mode
     if (mode) projection.addField(mode);
     taken.push(k);

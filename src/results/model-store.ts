@@ -18,6 +18,7 @@ export interface StoredModel {
   readonly witnesses: number;
   readonly snapshots: readonly number[];
   readonly ratio: number;
+  readonly rounding: number;
   readonly poles: ScatteringModel['poles'];
 }
 
@@ -49,6 +50,7 @@ export function storeModel(model: ScatteringModel): {
       witnesses: model.witnesses,
       snapshots: Array.from(model.snapshots),
       ratio: model.ratio,
+      rounding: model.rounding,
       poles: model.poles,
     },
     arrays,

@@ -205,6 +205,7 @@ export function projectScattering(closed: ClosedOpenings, request: ProjectionReq
       witnessCoupling,
       snapshots: Float64Array.from(snapshots).sort(),
       ratio,
+      rounding: 0,
       poles: [],
     }),
     orderShift(vector, k) {
