@@ -20,6 +20,7 @@ const { cases } = JSON.parse(readFileSync(new URL('../checks/cluster-scattering.
 
 describe.each(cases)('$id at k = $k', ({ polarization, cylinders, k, S }) => {
   // a disk of vacuum about the origin puts the rim's center there
+  const reach = Math.max(...cylinders.map(({ x, y, radius }) => Math.hypot(x, y) + radius)) + 0.1;
   const device = readDevice(
     `wavewell: 1
 polarization: ${polarization}
@@ -27,11 +28,11 @@ band: { wavenumber: [${k}, ${k * 1.01}] }
 materials:
 ${cylinders.map(({ eps }, i) => `  m${i}: { permittivity: ${JSON.stringify(eps)} }`).join('\n')}
 bodies:
-  - { material: vacuum, disk: { center: [0, 0], radius: 3.3 } }
+  - { material: vacuum, disk: { center: [0, 0], radius: ${reach} } }
 ${cylinders.map(({ x, y, radius }, i) => `  - { material: m${i}, disk: { center: [${x}, ${y}], radius: ${radius} } }`).join('\n')}`,
     'test.yaml',
   );
-  const answer = findScattering(device, [{ re: k, im: 0 }], { digits: 9 });
+  const answer = findScattering(device, [{ re: k, im: 0 }], { digits: 7 });
 
   test('agrees within 1e-8', () => {
     const M = (S.length - 1) / 2;
