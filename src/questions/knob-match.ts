@@ -2,12 +2,12 @@
 
 import { DEFAULT_DIGITS, HIGHEST_ORDER, resolutionFor } from '../accuracy/resolution.ts';
 import type { Device } from '../device/model.ts';
-import { add, type Complex, modulus, scale, subtract } from '../numerics/complex.ts';
+import { add, type Complex, complex, modulus, scale, subtract } from '../numerics/complex.ts';
 import type { LevelSense } from '../operator/device-family.ts';
 import { refineClosed } from './closed-newton.ts';
 import { driveOf, drivenPowers } from './driven.ts';
 import { drivenModel, searchModel } from './driven-model.ts';
-import { assignmentOf, inputsOf, type MatchRequest, OWN_MESH, type RealMatch } from './match.ts';
+import { assignmentOf, inputsOf, type MatchRequest, OWN_MESH, type RealMatch, remaining } from './match.ts';
 import { expectedModes } from './mode-count.ts';
 import { prepareOpenings } from './prepare-openings.ts';
 
@@ -60,11 +60,9 @@ export function findKnobMatches(deviceAt: (value: number) => Device, request: Ma
   };
   const matches: RealMatch[] = [];
   for (let i = 0; i + 1 < SAMPLES; i++)
-    for (const a of samples[i]) {
-      const b = nearest(samples[i + 1], a);
-      if (!b || a.im * b.im > 0 || modulus(subtract(a, b)) > 0.1 * modulus(a)) continue;
+    for (const [a, b] of pairsAcross(samples[i], samples[i + 1])) {
       const roots: { value: number; solved: NonNullable<ReturnType<typeof solve>> }[] = [];
-      for (const p of [order - 1, order]) {
+      for (const p of [order - 2, order - 1, order]) {
         progress?.(`order ${p}`, i / SAMPLES);
         const at = (value: number, near: Complex) => solve(value, near, p);
         // the next order's root is near the last; the search's sign may be wrong beside an end of its interval
@@ -76,13 +74,14 @@ export function findKnobMatches(deviceAt: (value: number) => Device, request: Ma
         brackets.push({ ends: [values[i] - step / 2, values[i + 1] + step / 2], ks: [a, b] });
         for (const { ends, ks } of brackets) {
           const root = falsePosition(at, ends, ks, 0.1 * 10 ** -digits);
-          if (!root) continue;
-          roots.push(root);
+          if (root === 'no change of sign') continue;
+          if (root) roots.push(root);
           break;
         }
+        if (roots.at(-1) === before) break;
       }
       const last = roots.at(-1);
-      if (roots.length < 2 || !last) continue;
+      if (roots.length < 3 || !last) continue;
       const { value, solved } = last;
       const real = { k: solved.k.re, level: 0, vector: solved.vector };
       if (real.k < solved.kMin || real.k > solved.kMax) continue;
@@ -96,9 +95,9 @@ export function findKnobMatches(deviceAt: (value: number) => Device, request: Ma
       const own = at(value, OWN_MESH).openings.closed(Math.min(order + 1, HIGHEST_ORDER), sense);
       matches.push({
         k: real.k,
-        kError: Math.abs(roots[1].solved.k.re - roots[0].solved.k.re) + 1e-13 * real.k,
+        kError: remaining(roots.map((root) => complex(root.solved.k.re))) + 1e-13 * real.k,
         level: value,
-        levelError: Math.abs(roots[1].value - roots[0].value) + 1e-13 * Math.abs(value),
+        levelError: remaining(roots.map((root) => complex(root.value))) + 1e-13 * Math.abs(value),
         drive,
         forward: {
           sameMesh: drivenPowers(solved.closed, real, drive, solved.inputs),
@@ -131,27 +130,36 @@ function falsePosition<T extends { readonly k: Complex }>(
   bracket: readonly [number, number],
   ks: readonly [Complex, Complex],
   rounding: number,
-): { value: number; solved: T } | null {
+): { value: number; solved: T } | 'no change of sign' | null {
   const ends = bracket.map((value, i) => {
     const solved = solve(value, ks[i]);
     return solved && { value, solved, weight: solved.k.im };
   });
-  if (!ends[0] || !ends[1] || ends[0].weight * ends[1].weight > 0) return null;
+  if (!ends[0] || !ends[1]) return null;
+  if (ends[0].weight * ends[1].weight > 0) return 'no change of sign';
   let a = ends[0];
   let b = ends[1];
+  const whole = Math.max(modulus(subtract(a.solved.k, b.solved.k)), rounding * a.solved.k.re);
   let best = Math.abs(a.weight) < Math.abs(b.weight) ? a : b;
   for (let step = 0; step < 30; step++) {
-    const value = (a.value * b.weight - b.value * a.weight) / (b.weight - a.weight);
+    // a jump keeps one end: every third step halves
+    const value =
+      step % 3 === 2 ? (a.value + b.value) / 2 : (a.value * b.weight - b.value * a.weight) / (b.weight - a.weight);
     const t = (value - a.value) / (b.value - a.value);
     const near = add(scale(a.solved.k, 1 - t), scale(b.solved.k, t));
     const solved = solve(value, near);
     if (!solved) return null;
     const here = { value, solved, weight: solved.k.im };
     if (Math.abs(solved.k.im) <= Math.abs(best.solved.k.im)) best = here;
-    if (Math.abs(solved.k.im) <= 1e-13 * solved.k.re || Math.abs(a.value - b.value) <= 1e-12 * Math.abs(value)) break;
+    if (Math.abs(solved.k.im) <= ROUNDING * solved.k.re || Math.abs(a.value - b.value) <= ROUNDING * Math.abs(value))
+      break;
     if (here.weight * b.weight < 0) a = b;
     else a = { ...a, weight: a.weight / 2 };
     b = here;
+    // k follows the knob, at worst like a square root beside an exceptional point
+    const narrowed = Math.abs((a.value - b.value) / (bracket[1] - bracket[0]));
+    if (modulus(subtract(a.solved.k, b.solved.k)) > 3 * Math.sqrt(narrowed) * whole + rounding * solved.k.re)
+      return null;
   }
   // two modes on either side of the bracket leave a jump, not a root; a new mesh leaves one below the digits
   const jump = modulus(subtract(a.solved.k, b.solved.k));
@@ -160,6 +168,9 @@ function falsePosition<T extends { readonly k: Complex }>(
     (Math.abs(a.value - b.value) <= 1e-9 * Math.abs(a.value) && jump <= rounding * best.solved.k.re);
   return isRoot ? { value: best.value, solved: best.solved } : null;
 }
+
+/** Steps end where Im k, or what the bracket leaves of the knob, is this small: rounding is a tenth of it. */
+const ROUNDING = 2e-12;
 
 /** A root of Im k is one when |Im k| falls below this share of Re k. */
 const ROOT = 1e-10;
@@ -172,9 +183,16 @@ interface Bracket {
 
 const around = (value: number, by: number): [number, number] => [value - by, value + by];
 
-function nearest(list: readonly Complex[], k: Complex): Complex | null {
-  return list.reduce<Complex | null>(
-    (best, other) => (!best || modulus(subtract(other, k)) < modulus(subtract(best, k)) ? other : best),
-    null,
+/**
+ * What may be one mode at two values of the knob, on either side of the axis: of each the two nearest of the next sample,
+ * since modes may pass each other between samples. A pair that is none ends in a jump.
+ */
+function pairsAcross(first: readonly Complex[], second: readonly Complex[]): [Complex, Complex][] {
+  return first.flatMap((a) =>
+    [...second]
+      .sort((b, c) => modulus(subtract(b, a)) - modulus(subtract(c, a)))
+      .slice(0, 2)
+      .filter((b) => a.im * b.im <= 0 && modulus(subtract(a, b)) <= 0.1 * modulus(a))
+      .map((b): [Complex, Complex] => [a, b]),
   );
 }

@@ -235,7 +235,7 @@ function amplitudeScale(
 }
 
 /** What is left after the last of three values: their last step, times r/(1 − r) where the steps shrink slowly. */
-function remaining(values: readonly Complex[]): number {
+export function remaining(values: readonly Complex[]): number {
   const [a, b, c] = values.slice(-3);
   const before = modulus(subtract(b, a));
   const step = modulus(subtract(c, b));
