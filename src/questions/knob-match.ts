@@ -48,78 +48,88 @@ export function findKnobMatches(deviceAt: (value: number) => Device, request: Ma
   };
   const step = (range[1] - range[0]) / (SAMPLES - 1);
   const values = Array.from({ length: SAMPLES }, (_, i) => range[0] + step * i);
+  const sample = (value: number): Sample => ({
+    value,
+    ks: candidates(deviceAt(value), request.inputs, sense, 1.5 * slope),
+  });
   const samples = values.map((value, i) => {
     progress?.('sampling the knob', i / SAMPLES);
-    return candidates(deviceAt(value), request.inputs, sense, 1.5 * slope);
+    return sample(value);
   });
+  const crossings = samples.slice(1).flatMap((to, i) => crossingsBetween(samples[i], to, sample, 0));
   const solve = (value: number, near: Complex, p: number) => {
     const here = known(value);
     const closed = here.openings.closed(p, sense);
     const found = refineClosed(closed, 0, here.assignment, near, null);
     return found && { ...here, ...found, closed };
   };
+  const roughly = (value: number, near: Complex) => {
+    const rough = coarsely(deviceAt(value), sense, slope);
+    return refineClosed(rough.closed, 0, assignmentOf(rough.openings, inputsOf(rough.openings, request.inputs)), near, null); // prettier-ignore
+  };
   const matches: RealMatch[] = [];
-  for (let i = 0; i + 1 < SAMPLES; i++)
-    for (const [a, b] of pairsAcross(samples[i], samples[i + 1])) {
-      const roots: { value: number; solved: NonNullable<ReturnType<typeof solve>> }[] = [];
-      for (const p of [order - 2, order - 1, order]) {
-        progress?.(`order ${p}`, i / SAMPLES);
-        const at = (value: number, near: Complex) => solve(value, near, p);
-        // the next order's root is near the last; the search's sign may be wrong beside an end of its interval
-        const before = roots.at(-1);
-        const brackets: Bracket[] = before
-          ? [{ ends: around(before.value, 0.02 * step), ks: [before.solved.k, before.solved.k] }]
-          : [];
-        brackets.push({ ends: [values[i], values[i + 1]], ks: [a, b] });
-        brackets.push({ ends: [values[i] - step / 2, values[i + 1] + step / 2], ks: [a, b] });
-        for (const { ends, ks } of brackets) {
-          const root = falsePosition(at, ends, ks, 0.1 * 10 ** -digits);
-          if (root === 'no change of sign') continue;
-          if (root) roots.push(root);
-          break;
-        }
-        if (roots.at(-1) === before) break;
-      }
-      const last = roots.at(-1);
-      if (roots.length < 3 || !last) continue;
-      const { value, solved } = last;
-      const real = { k: solved.k.re, level: 0, vector: solved.vector };
-      if (real.k < solved.kMin || real.k > solved.kMax) continue;
-      if (
-        matches.some(
-          (m) => Math.abs(m.k - real.k) < 1e-7 * real.k && Math.abs(m.level - value) < 1e-6 * (range[1] - range[0]),
-        )
-      )
-        continue;
-      const drive = driveOf(solved.closed, real, solved.inputs);
-      const own = at(value, OWN_MESH).openings.closed(Math.min(order + 1, HIGHEST_ORDER), sense);
-      matches.push({
-        k: real.k,
-        kError: remaining(roots.map((root) => complex(root.solved.k.re))) + 1e-13 * real.k,
-        level: value,
-        levelError: remaining(roots.map((root) => complex(root.value))) + 1e-13 * Math.abs(value),
-        drive,
-        forward: {
-          sameMesh: drivenPowers(solved.closed, real, drive, solved.inputs),
-          ownMesh: drivenPowers(own, real, drive, solved.inputs),
-        },
-        vector: solved.vector,
-        openings: solved.openings,
-        order,
-      });
+  for (const [i, { ends, ks }] of crossings.entries()) {
+    progress?.('narrowing', i / crossings.length);
+    const coarse = falsePosition(roughly, ends, ks, 10 ** -SAMPLE_DIGITS);
+    if (!coarse) continue;
+    const roots: { value: number; solved: NonNullable<ReturnType<typeof solve>> }[] = [];
+    let guess = { value: coarse.value, k: coarse.solved.k };
+    for (const p of [order - 2, order - 1, order]) {
+      progress?.(`order ${p}`, i / crossings.length);
+      const at = (value: number, near: Complex) => solve(value, near, p);
+      const root = [0.02, 0.2, 1].reduce<ReturnType<typeof falsePosition<NonNullable<ReturnType<typeof solve>>>>>(
+        (found, width) =>
+          found ?? falsePosition(at, around(guess.value, width * step), [guess.k, guess.k], 0.1 * 10 ** -digits),
+        null,
+      );
+      if (!root) break;
+      roots.push(root);
+      guess = { value: root.value, k: root.solved.k };
     }
+    const last = roots.at(-1);
+    if (roots.length < 3 || !last) continue;
+    const { value, solved } = last;
+    const real = { k: solved.k.re, level: 0, vector: solved.vector };
+    if (real.k < solved.kMin || real.k > solved.kMax) continue;
+    if (
+      matches.some(
+        (m) => Math.abs(m.k - real.k) < 1e-7 * real.k && Math.abs(m.level - value) < 1e-6 * (range[1] - range[0]),
+      )
+    )
+      continue;
+    const drive = driveOf(solved.closed, real, solved.inputs);
+    const own = at(value, OWN_MESH).openings.closed(Math.min(order + 1, HIGHEST_ORDER), sense);
+    matches.push({
+      k: real.k,
+      kError: remaining(roots.map((root) => complex(root.solved.k.re))) + 1e-13 * real.k,
+      level: value,
+      levelError: remaining(roots.map((root) => complex(root.value))) + 1e-13 * Math.abs(value),
+      drive,
+      forward: {
+        sameMesh: drivenPowers(solved.closed, real, drive, solved.inputs),
+        ownMesh: drivenPowers(own, real, drive, solved.inputs),
+      },
+      vector: solved.vector,
+      openings: solved.openings,
+      order,
+    });
+  }
   return matches.sort((a, b) => a.k - b.k);
+}
+
+/** On a mesh for a few digits. */
+function coarsely(device: Device, sense: LevelSense, slope: number) {
+  const resolution = resolutionFor(SAMPLE_DIGITS);
+  const { kMin, kMax } = device.band;
+  const openings = prepareOpenings(device, { kMin, kMax, slope }, resolution);
+  return { openings, closed: openings.closed(resolution.order, sense), scope: { kMin, kMax, slope } };
 }
 
 /** k of the modes that the inputs drive, to a few digits. */
 function candidates(device: Device, names: readonly string[], sense: LevelSense, slope: number): readonly Complex[] {
-  const resolution = resolutionFor(SAMPLE_DIGITS);
-  const { kMin, kMax } = device.band;
-  const openings = prepareOpenings(device, { kMin, kMax, slope }, resolution);
-  const closed = openings.closed(resolution.order, sense);
-  const model = drivenModel(closed, 0, kMin, kMax);
-  return searchModel(model, closed, [inputsOf(openings, names)], { kMin, kMax, slope }, expectedModes(device))
-    .families[0];
+  const { openings, closed, scope } = coarsely(device, sense, slope);
+  const model = drivenModel(closed, 0, scope.kMin, scope.kMax);
+  return searchModel(model, closed, [inputsOf(openings, names)], scope, expectedModes(device)).families[0];
 }
 
 const SAMPLE_DIGITS = 3;
@@ -130,13 +140,12 @@ function falsePosition<T extends { readonly k: Complex }>(
   bracket: readonly [number, number],
   ks: readonly [Complex, Complex],
   rounding: number,
-): { value: number; solved: T } | 'no change of sign' | null {
+): { value: number; solved: T } | null {
   const ends = bracket.map((value, i) => {
     const solved = solve(value, ks[i]);
     return solved && { value, solved, weight: solved.k.im };
   });
-  if (!ends[0] || !ends[1]) return null;
-  if (ends[0].weight * ends[1].weight > 0) return 'no change of sign';
+  if (!ends[0] || !ends[1] || ends[0].weight * ends[1].weight > 0) return null;
   let a = ends[0];
   let b = ends[1];
   const whole = Math.max(modulus(subtract(a.solved.k, b.solved.k)), rounding * a.solved.k.re);
@@ -175,24 +184,54 @@ const ROUNDING = 2e-12;
 /** A root of Im k is one when |Im k| falls below this share of Re k. */
 const ROOT = 1e-10;
 
-/** Where a root lies: values of the knob and what k is near there. */
-interface Bracket {
+const around = (value: number, by: number): [number, number] => [value - by, value + by];
+
+const apart = (a: Complex, b: Complex): number => modulus(subtract(a, b));
+
+interface Sample {
+  readonly value: number;
+  readonly ks: readonly Complex[];
+}
+
+/** A mode on either side of the axis at two values of the knob. */
+interface AxisCrossing {
   readonly ends: readonly [number, number];
   readonly ks: readonly [Complex, Complex];
 }
 
-const around = (value: number, by: number): [number, number] => [value - by, value + by];
+/** Samples are put between others so often at most where modes pass each other. */
+const MOST_HALVINGS = 4;
+/** A mode belongs to the nearest of the next sample when every other is so many times as far. */
+const CLEARLY = 3;
 
 /**
- * What may be one mode at two values of the knob, on either side of the axis: of each the two nearest of the next sample,
- * since modes may pass each other between samples. A pair that is none ends in a jump.
+ * Modes of one sample joined to the nearest of the next, each pair that changes sign; where the nearest is not clearly so,
+ * or is nearer to another, a sample between the two decides.
  */
-function pairsAcross(first: readonly Complex[], second: readonly Complex[]): [Complex, Complex][] {
-  return first.flatMap((a) =>
-    [...second]
-      .sort((b, c) => modulus(subtract(b, a)) - modulus(subtract(c, a)))
-      .slice(0, 2)
-      .filter((b) => a.im * b.im <= 0 && modulus(subtract(a, b)) <= 0.1 * modulus(a))
-      .map((b): [Complex, Complex] => [a, b]),
-  );
+function crossingsBetween(
+  from: Sample,
+  to: Sample,
+  sample: (value: number) => Sample,
+  halvings: number,
+): AxisCrossing[] {
+  const found: AxisCrossing[] = [];
+  for (const a of from.ks) {
+    const [b, other] = byDistance(to.ks, a);
+    if (!b || apart(a, b) > 0.1 * modulus(a)) continue;
+    const [back] = byDistance(from.ks, b);
+    const clear = back === a && (!other || apart(a, other) > CLEARLY * apart(a, b));
+    const mayCross = [b, other].some((c) => c && a.im * c.im <= 0);
+    if (!clear && mayCross && halvings < MOST_HALVINGS) {
+      const middle = sample((from.value + to.value) / 2);
+      return [
+        ...crossingsBetween(from, middle, sample, halvings + 1),
+        ...crossingsBetween(middle, to, sample, halvings + 1),
+      ];
+    }
+    if (a.im * b.im <= 0) found.push({ ends: [from.value, to.value], ks: [a, b] });
+  }
+  return found;
 }
+
+const byDistance = (list: readonly Complex[], k: Complex): Complex[] =>
+  [...list].sort((b, c) => apart(b, k) - apart(c, k));
