@@ -4,6 +4,7 @@ import { complex, type Complex, type ComplexArray } from '../numerics/complex.ts
 import { eigenGeneral } from '../numerics/eigenvalues.ts';
 import { hermitianEigen } from '../numerics/hermitian.ts';
 import { luFactor, luSolveInto } from '../numerics/lu.ts';
+import { qrOrthonormalise } from '../numerics/qr.ts';
 import { type ModelPoint, solveDense, type Wanted } from './dense-model.ts';
 import { loadWeights, scatteringOf, scatteringSlope, type WaveSource, waveSource } from './model-waves.ts';
 import type { ScatteringModel } from './scattering-model.ts';
@@ -16,6 +17,9 @@ export interface ModelSolver {
 
 /** What functions outside the small system may change in S. */
 const TAIL_TOLERANCE = 1e-12;
+
+/** Largest departure from diagonal form, relative; beyond, every point takes a dense solve. */
+const DIAGONAL = 1e-11;
 
 /** Poles of the inside nearer than this share of k² stay in the small system as they are. */
 const NEAR = 0.05;
@@ -38,18 +42,18 @@ export function modelSolver(model: ScatteringModel, pieces = 1): ModelSolver {
     return { model, source, at: (k, wanted = {}) => solveDense(model, complex(k), wanted, source) };
   const from = model.kMin ** 2;
   const width = (model.kMax ** 2 - from) / pieces;
-  const made = new Map<number, Piece>();
+  const made = new Map<number, Piece | null>();
   return {
     model,
     source,
     at(k, wanted = {}) {
       const i = Math.max(0, Math.min(pieces - 1, Math.floor((k * k - from) / width)));
       let piece = made.get(i);
-      if (!piece) {
+      if (piece === undefined) {
         piece = makePiece(model, source, from + i * width, from + (i + 1) * width);
         made.set(i, piece);
       }
-      return solvePiece(model, source, piece, k, wanted);
+      return piece ? solvePiece(model, source, piece, k, wanted) : solveDense(model, complex(k), wanted, source);
     },
   };
 }
@@ -76,7 +80,7 @@ interface Planar {
   readonly im: Float64Array | null;
 }
 
-function makePiece(model: ScatteringModel, source: WaveSource, sFrom: number, sTo: number): Piece {
+function makePiece(model: ScatteringModel, source: WaveSource, sFrom: number, sTo: number): Piece | null {
   const { size: r, terms, coupling, p, witnesses: l, witnessCoupling } = model;
   const fits = affineFits(source, sFrom, sTo);
   const inHead = headOf(model, source, fits.deviations);
@@ -109,6 +113,8 @@ function makePiece(model: ScatteringModel, source: WaveSource, sFrom: number, sT
   const half = solveLower(L, r, M, r);
   const T = solveLower(L, r, transposed(half, r, r), r);
   const { mu, Q } = real ? realPairs(T, r) : symmetricPairs(T, r);
+  // close to an exceptional point of the inside no eigenbasis will do
+  if (!real && !(distanceFromDiagonal(T, Q, mu, r) < DIAGONAL)) return null;
   // rows b_jᵀ L⁻ᵀ Q
   const columns = new Float64Array(2 * r * head.length);
   head.forEach((j, a) => {
@@ -559,26 +565,152 @@ function realPairs(T: ComplexArray, r: number): { mu: ComplexArray; Q: ComplexAr
   return { mu, Q: vectors };
 }
 
-/** Pairs of a complex symmetric matrix, scaled to qᵀq = 1. */
+/** Eigenvalues that are one to rounding, relative to the largest. */
+const SAME = 1e-12;
+
+/**
+ * Pairs of a complex symmetric matrix with QᵀQ = 1. Eigenvectors of equal eigenvalues come in any mixture, even one with
+ * qᵀq = 0: each such group is made orthonormal anew. What is left of QᵀQ − 1 belongs to close eigenvalues, since
+ * (μ_i − μ_j) q_iᵀq_j vanishes to rounding, and goes by QᵀQ = RᵀR, Q ← QR⁻¹, which moves T's diagonal form by rounding only.
+ */
 function symmetricPairs(T: ComplexArray, r: number): { mu: ComplexArray; Q: ComplexArray } {
   const { values, vectors } = eigenGeneral(T, r);
-  for (let i = 0; i < r; i++) {
-    const q = vectors.subarray(2 * i * r, 2 * (i + 1) * r);
-    let re = 0;
-    let im = 0;
-    for (let j = 0; j < 2 * r; j += 2) {
-      re += q[j] * q[j] - q[j + 1] * q[j + 1];
-      im += 2 * q[j] * q[j + 1];
+  const order = Array.from({ length: r }, (_, i) => i).sort((a, b) => values[2 * a] - values[2 * b]);
+  const mu = new Float64Array(2 * r);
+  const Q = new Float64Array(2 * r * r);
+  order.forEach((from, to) => {
+    mu.set(values.subarray(2 * from, 2 * from + 2), 2 * to);
+    Q.set(vectors.subarray(2 * r * from, 2 * r * (from + 1)), 2 * r * to);
+  });
+  let top = 0;
+  for (let i = 0; i < r; i++) top = Math.max(top, Math.hypot(mu[2 * i], mu[2 * i + 1]));
+  for (let first = 0; first < r;) {
+    let end = first + 1;
+    while (end < r && Math.hypot(mu[2 * end] - mu[2 * end - 2], mu[2 * end + 1] - mu[2 * end - 1]) < SAME * top) end++;
+    if (end - first > 1) untangle(Q.subarray(2 * r * first, 2 * r * end), r, end - first);
+    first = end;
+  }
+  for (let i = 0; i < r; i++) scaleColumn(Q, i, r);
+  const R = symmetricFactor(bilinearGram(Q, r, r), r);
+  divideByUpper(Q, r, R);
+  return { mu, Q };
+}
+
+/** Columns ← a basis of their span, orthonormal with conjugation, turned until no q has a small qᵀq, then without. */
+function untangle(columns: ComplexArray, r: number, c: number): void {
+  const { basis, rank } = qrOrthonormalise(columns, r, c, 1e-10);
+  if (rank < c) return;
+  let best = { pivot: -1, columns: basis };
+  for (let turn = 0; turn < 6; turn++) {
+    const turned = Float64Array.from(basis);
+    for (let i = 0; i + 1 < c; i++) rotatePair(turned, i, i + 1, r, 0.5 * turn);
+    const factor = symmetricFactor(bilinearGram(turned, r, c), c);
+    let pivot = Infinity;
+    for (let i = 0; i < c; i++)
+      pivot = Math.min(pivot, Math.hypot(factor[2 * (i + i * c)], factor[2 * (i + i * c) + 1]));
+    if (pivot > best.pivot) best = { pivot, columns: turned };
+  }
+  const factor = symmetricFactor(bilinearGram(best.columns, r, c), c);
+  columns.set(best.columns);
+  divideByUpper(columns, r, factor, c);
+}
+
+function rotatePair(a: ComplexArray, i: number, j: number, r: number, angle: number): void {
+  const [c, s] = [Math.cos(angle), Math.sin(angle)];
+  for (let x = 2 * r * i, y = 2 * r * j; x < 2 * r * (i + 1); x++, y++) {
+    const v = a[x];
+    a[x] = c * v - s * a[y];
+    a[y] = s * v + c * a[y];
+  }
+}
+
+/** q ← q/√(qᵀq). */
+function scaleColumn(Q: ComplexArray, i: number, r: number): void {
+  const q = Q.subarray(2 * i * r, 2 * (i + 1) * r);
+  let re = 0;
+  let im = 0;
+  for (let j = 0; j < 2 * r; j += 2) {
+    re += q[j] * q[j] - q[j + 1] * q[j + 1];
+    im += 2 * q[j] * q[j + 1];
+  }
+  const size = Math.hypot(re, im);
+  const half = Math.atan2(im, re) / 2;
+  const c = Math.cos(half) / Math.sqrt(size);
+  const s = -Math.sin(half) / Math.sqrt(size);
+  for (let j = 0; j < 2 * r; j += 2) {
+    const a = q[j];
+    q[j] = c * a - s * q[j + 1];
+    q[j + 1] = c * q[j + 1] + s * a;
+  }
+}
+
+/** QᵀQ of c columns. */
+function bilinearGram(Q: ComplexArray, r: number, c: number): ComplexArray {
+  return bilinear(Q, Q, r, c);
+}
+
+/** AᵀB of c columns each. */
+function bilinear(A: ComplexArray, B: ComplexArray, r: number, c: number): ComplexArray {
+  const out = new Float64Array(2 * c * c);
+  for (let j = 0; j < c; j++)
+    for (let i = 0; i < c; i++) {
+      let re = 0;
+      let im = 0;
+      for (let x = 2 * r * i, y = 2 * r * j; x < 2 * r * (i + 1); x += 2, y += 2) {
+        re += A[x] * B[y] - A[x + 1] * B[y + 1];
+        im += A[x] * B[y + 1] + A[x + 1] * B[y];
+      }
+      out[2 * (i + j * c)] = re;
+      out[2 * (i + j * c) + 1] = im;
     }
-    const size = Math.hypot(re, im);
-    const half = Math.atan2(im, re) / 2;
-    const c = Math.cos(half) / Math.sqrt(size);
-    const s = -Math.sin(half) / Math.sqrt(size);
-    for (let j = 0; j < 2 * r; j += 2) {
-      const a = q[j];
-      q[j] = c * a - s * q[j + 1];
-      q[j + 1] = c * q[j + 1] + s * a;
+  return out;
+}
+
+/** Q ← Q L⁻ᵀ for c columns. */
+function divideByUpper(Q: ComplexArray, r: number, L: ComplexArray, c = r): void {
+  for (let j = 0; j < c; j++) {
+    const to = 2 * r * j;
+    for (let i = 0; i < j; i++) {
+      const lr = L[2 * (j + i * c)];
+      const li = L[2 * (j + i * c) + 1];
+      if (lr === 0 && li === 0) continue;
+      for (let k = 0, x = 2 * r * i; k < 2 * r; k += 2, x += 2) {
+        Q[to + k] -= lr * Q[x] - li * Q[x + 1];
+        Q[to + k + 1] -= lr * Q[x + 1] + li * Q[x];
+      }
+    }
+    const dr = L[2 * (j + j * c)];
+    const di = L[2 * (j + j * c) + 1];
+    const size = dr * dr + di * di;
+    for (let k = to; k < to + 2 * r; k += 2) {
+      const a = Q[k];
+      Q[k] = (a * dr + Q[k + 1] * di) / size;
+      Q[k + 1] = (Q[k + 1] * dr - a * di) / size;
     }
   }
-  return { mu: values, Q: vectors };
+}
+
+/** Largest |QᵀTQ − diag μ|, relative to the largest μ. */
+function distanceFromDiagonal(T: ComplexArray, Q: ComplexArray, mu: ComplexArray, r: number): number {
+  const TQ = new Float64Array(2 * r * r);
+  for (let j = 0; j < r; j++)
+    for (let k = 0; k < r; k++) {
+      const qr = Q[2 * (k + j * r)];
+      const qi = Q[2 * (k + j * r) + 1];
+      for (let i = 0; i < r; i++) {
+        const at = 2 * (i + k * r);
+        TQ[2 * (i + j * r)] += T[at] * qr - T[at + 1] * qi;
+        TQ[2 * (i + j * r) + 1] += T[at] * qi + T[at + 1] * qr;
+      }
+    }
+  const D = bilinear(Q, TQ, r, r);
+  let worst = 0;
+  let top = 0;
+  for (let j = 0; j < r; j++) {
+    D[2 * (j + j * r)] -= mu[2 * j];
+    D[2 * (j + j * r) + 1] -= mu[2 * j + 1];
+    top = Math.max(top, Math.hypot(mu[2 * j], mu[2 * j + 1]));
+  }
+  for (let i = 0; i < 2 * r * r; i += 2) worst = Math.max(worst, Math.hypot(D[i], D[i + 1]));
+  return worst / top;
 }

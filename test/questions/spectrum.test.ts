@@ -231,6 +231,21 @@ bodies: [ { material: glass, disk: { center: [0, 0], radius: 0.8 } }, { material
   expect(ratio).toBeLessThan(3);
 });
 
+test('lossy pairs of equal poles of the inside, whose fields come in any mixture, spoil nothing', () => {
+  const device = open(
+    '{ permittivity: [4, 0.2] }',
+    '  - { material: glass, disk: { center: [0, 0], radius: 0.8 } }',
+    '[1.3, 2.1]',
+  );
+  const { model } = findSpectrum(device, evenly(1.3, 2.1, 31), { multipoles: 5, digits: 4 });
+  for (const pieces of [1, 4]) {
+    const solver = modelSolver(model, pieces);
+    for (const k of [1.3, 1.55, 1.81, 2.07])
+      expect(largest(solver.at(k).S, solveDense(model, { re: k, im: 0 }).S)).toBeLessThan(1e-11);
+  }
+  expect(model.rounding).toBeLessThan(1e-9);
+});
+
 test('bad input is refused at the door', () => {
   const device = open('{ index: 2 }', PAIR);
   expect(() => findSpectrum(device, [2])).toThrow(/two or more/);
