@@ -133,7 +133,7 @@ function addMarks(book: Book, matches: readonly RealMatch[], isZero: boolean, fi
       kError,
       q: k / (2 * kError),
       multiplicity: 1,
-      label: 'on the axis',
+      label: '',
       field: i < fields ? `match-${i + 1}` : null,
       path: null,
       crossing: null,

@@ -44,7 +44,7 @@ function factsOf(record: RunRecord, field: RunField | null, mark: RunMark | null
     ['Im k', im === 0 ? null : withError(im, error)],
     [`λ${unitName(lengthUnit) && ` (${unitName(lengthUnit)})`}`, withError(wavelength, (error / k) * wavelength)],
     ['frequency', frequency === null ? null : hertz(frequency, (error / k) * frequency)],
-    ['Q', !onAxis && mark && Number.isFinite(mark.q) ? withError(mark.q, qError(mark)) : null],
+    ['Q', !onAxis && mark && mark.k[1] !== 0 && Number.isFinite(mark.q) ? withError(mark.q, qError(mark)) : null],
     ['symmetry', mark?.label ? mark.label : null],
     ['multiplicity', mark && mark.multiplicity > 1 ? String(mark.multiplicity) : null],
   ];
