@@ -1,5 +1,6 @@
 // Which loss, frequency and input wave make a device absorb everything, and is it so?
 
+import { returnedToMode } from '../accuracy/layer-return.ts';
 import { HIGHEST_ORDER } from '../accuracy/resolution.ts';
 import type { Device } from '../device/model.ts';
 import { scaleColumn, transposeProduct } from '../eigen/columns.ts';
@@ -124,7 +125,7 @@ function prove(prepared: Prepared, own: Prepared, mode: AxisMode): AbsorbingMode
   const { drives, vectors } = orthonormalDrives(mode);
   const same = forwardCheck(prepared, mode.order, mode, drives);
   const other = forwardCheck(own, mode.order + 1, mode, drives);
-  // both meshes are off: twice the distance from the zero, and twice what the drive lacks
+  // both meshes are off: twice the distance from the zero, and twice what the drive lacks; the layers return a little
   const off = 2 * (mode.kError + Math.abs(mode.group.slope.im) * mode.levelError);
   return {
     ...mode,
@@ -133,7 +134,9 @@ function prove(prepared: Prepared, own: Prepared, mode: AxisMode): AbsorbingMode
     drives: drives.map((amplitudes, i) => ({ amplitudes, sameMesh: same[i], ownMesh: other[i] })),
     outgoingExpected: Math.min(
       1,
-      (off * outgoingPerDetuning(prepared, mode, vectors)) ** 2 + (2 * mode.multipolesError) ** 2,
+      (off * outgoingPerDetuning(prepared, mode, vectors)) ** 2 +
+        (2 * mode.multipolesError) ** 2 +
+        returnedToMode(own.layer, { re: mode.k, im: 0 }, drives) ** 2,
     ),
   };
 }

@@ -120,7 +120,10 @@ export function withShifts(
   return { ...prepared, shifts, madeFor, operator };
 }
 
-/** A mesh of its own for the same device and digits: triangles smaller by `refine` < 1, orders as in the same places. */
+/**
+ * A mesh of its own for the same device and digits: triangles smaller by `refine` < 1, orders from the same places but with
+ * a quarter of their differences: a driven field beside a sharp mode asks more of the outside than the mode itself does.
+ */
 export function ownMesh(
   prepared: Prepared,
   device: Device,
@@ -129,7 +132,18 @@ export function ownMesh(
 ): Prepared {
   const { scope, resolution, wishes, mesh, shifts, madeFor } = prepared;
   const own = prepare(device, scope, resolution, refine, highestOrder, 'layers', wishes);
-  return shifts ? withShifts(own, ordersInPlace(own.mesh, mesh, shifts, 0), madeFor) : own;
+  return shifts
+    ? withShifts(
+        own,
+        ordersInPlace(
+          own.mesh,
+          mesh,
+          shifts.map((s) => Math.ceil(s / 4)),
+          0,
+        ),
+        madeFor,
+      )
+    : own;
 }
 
 /** For each triangle of a mesh the number that belongs to the triangle of another mesh where its middle lies. */
