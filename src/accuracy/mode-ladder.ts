@@ -182,7 +182,9 @@ export function climbModes<G extends Ground<G>>(start: G, request: ModeSearchReq
       if (!reached) {
         const seenUp = inWindow(higher, groupsUp);
         plan = planRefinement(ground.mesh, raised, pictures(up, seenUp), strategy);
-        const next = plan.orders.some((p, t) => p > orders[t]) ? plan.orders : raised;
+        // never down: a plan that lowers what the last one raised would go round for ever
+        const planned = plan.orders.map((p, t) => Math.max(p, orders[t]));
+        const next = planned.some((p, t) => p > orders[t]) ? planned : raised;
         const top = next.reduce((a, b) => Math.max(a, b), 0);
         stopped = stopBefore(limits, ground.mesh, next) ?? (top >= HIGHEST_ORDER ? 'order' : null);
         seen = owned;
@@ -337,10 +339,10 @@ function rowsOf(rungs: Rungs, goal: number, group: EigenGroup, higher: readonly 
   }));
 }
 
-/** What the orders beyond may still move the group by; Infinity where the next order groups its members otherwise. */
+/** What the orders beyond may still move the group by; where the next order groups its members otherwise, twice the step. */
 function surplusOf({ here, up, level }: Rungs, group: EigenGroup, higher: readonly EigenGroup[]): number {
   const same = sameMembers(group, higher);
-  if (same.reduce((sum, g) => sum + g.multiplicity, 0) !== group.multiplicity) return Infinity;
+  if (same.reduce((sum, g) => sum + g.multiplicity, 0) !== group.multiplicity) return 2 * discretization(group, higher);
   const vectors = new Float64Array(same.reduce((sum, g) => sum + g.vectors.length, 0));
   let at = 0;
   for (const g of same) {
