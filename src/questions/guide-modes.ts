@@ -1,6 +1,8 @@
 // Where does a device with guides resonate?
 
+import { stopBefore } from '../accuracy/memory.ts';
 import { totalError } from '../accuracy/mode-ladder.ts';
+import { remainingChange } from '../accuracy/remaining-change.ts';
 import { DEFAULT_DIGITS, HIGHEST_ORDER, resolutionFor } from '../accuracy/resolution.ts';
 import type { Device } from '../device/model.ts';
 import { embed } from '../elements/space.ts';
@@ -53,7 +55,10 @@ export function findGuideModes(device: Device, request: ModesRequest): ModesAnsw
       .filter(({ group: { k } }) => k.re >= kMin && k.re <= kMax && Math.abs(k.im) <= slope * k.re)
       .map(({ group, steps }) => ({ group, error: remaining(steps) + group.spread }));
     const reached = rows.every(({ group, error }) => error <= 10 ** -digits * modulus(group.k));
-    if ((order >= first + 2 && reached) || order + 1 >= HIGHEST_ORDER) {
+    const { mesh } = openings.prepared;
+    const orders = new Int32Array(mesh.regions.length).fill(order);
+    const top = order + 1 >= HIGHEST_ORDER ? 'order' : stopBefore(request.limits ?? {}, mesh, orders);
+    if ((order >= first + 2 && reached) || top) {
       const modes = distinct(rows).map(({ group, error }) => describe(device, group, error));
       const { prepared } = openings;
       return {
@@ -63,7 +68,7 @@ export function findGuideModes(device: Device, request: ModesRequest): ModesAnsw
         covered: covered && found.size === ks.length,
         complete: null,
         reached,
-        stopped: reached ? null : 'order',
+        stopped: reached ? null : top,
         digits,
         qMin,
         order,
@@ -103,15 +108,12 @@ interface Climb {
 const stepFrom = (below: ClosedGroup, group: ClosedGroup): number =>
   below.multiplicity === group.multiplicity ? modulus(subtract(below.k, group.k)) : Infinity;
 
-/** What is left after the last step: r/(1 − r) of it for steps that shrink by r, which no two steps tell below `LEAST_RATIO`. */
+/** Error after the last step; unknown before there are two. */
 function remaining(steps: readonly number[]): number {
   if (steps.length < 2) return Infinity;
   const [before, last] = steps.slice(-2);
-  const r = Math.min(0.9, Math.max(last / Math.max(before, 1e-300), LEAST_RATIO));
-  return (last * r) / (1 - r);
+  return last * remainingChange(before, last);
 }
-
-const LEAST_RATIO = 0.03;
 
 /** Candidates that came to the same group count once. */
 function distinct(rows: readonly { readonly group: ClosedGroup; readonly error: number }[]) {

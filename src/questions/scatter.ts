@@ -1,5 +1,6 @@
 // What does each channel send into every other: the S-matrix, with its proofs?
 
+import { remainingChange } from '../accuracy/remaining-change.ts';
 import { DEFAULT_DIGITS, HIGHEST_ORDER, resolutionFor } from '../accuracy/resolution.ts';
 import type { Device } from '../device/model.ts';
 import { type Complex, complex, type ComplexArray, modulus } from '../numerics/complex.ts';
@@ -72,7 +73,7 @@ export function findScattering(device: Device, ks: readonly Complex[], request: 
   for (; order + 1 < HIGHEST_ORDER; order++) {
     progress?.(`order ${order + 1}`, 0);
     const changes = probes.map((i) => changesAt(openings, order, sense, ks[i], level));
-    rest = Math.max(...changes.map(([before, last]) => whatRemains(before, last)));
+    rest = Math.max(...changes.map(([before, last]) => remainingChange(before, last)));
     if (Math.max(...changes.map(([, last]) => last)) * rest <= goal) break;
   }
   const points = ks.map((k, i) => {
@@ -101,18 +102,6 @@ function changesAt(
   const [low, mid, high] = [order - 1, order, order + 1].map((p) => openings.closed(p, sense).scatter(k, level).matrix);
   return [largestDifference(low, mid), largestDifference(mid, high)];
 }
-
-/**
- * Error left after the last change, in units of it: r/(1 − r) for changes that shrink by r. At metal edges r is near 0.7
- * (windows in a guide: true error 2 to 3 times the last change); smooth fields have r of 0.1 and less, and no two steps are
- * trusted to tell less than `LEAST_RATIO`.
- */
-export function whatRemains(before: number, last: number): number {
-  const r = Math.min(0.9, Math.max(last / Math.max(before, 1e-300), LEAST_RATIO));
-  return r / (1 - r);
-}
-
-const LEAST_RATIO = 0.03;
 
 /** Of an entry of S, absolute: measured 1e-15 to 5e-15. */
 const ROUNDING = 1e-14;

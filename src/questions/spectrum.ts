@@ -1,5 +1,6 @@
 // What is the S-matrix on thousands of points, from a few full solves?
 
+import { remainingChange } from '../accuracy/remaining-change.ts';
 import { DEFAULT_DIGITS, HIGHEST_ORDER, resolutionFor } from '../accuracy/resolution.ts';
 import type { Device } from '../device/model.ts';
 import { complex, type ComplexArray } from '../numerics/complex.ts';
@@ -14,7 +15,6 @@ import { qOf, sharpPoles } from '../projected/sharp-poles.ts';
 import { projectScattering, type ScatteringProjection } from '../scattering/project-scattering.ts';
 import type { Progress } from './progress.ts';
 import { type DeviceChannel, type PreparedOpenings, prepareOpenings } from './prepare-openings.ts';
-import { whatRemains } from './scatter.ts';
 
 export interface SpectrumRequest {
   readonly digits?: number;
@@ -202,7 +202,7 @@ function settleOrder(
       difference(low[i].matrix, mid[i].matrix),
       difference(mid[i].matrix, high[i].matrix),
     ]);
-    const rest = Math.max(...changes.map(([before, last]) => whatRemains(before, last)));
+    const rest = Math.max(...changes.map(([before, last]) => remainingChange(before, last)));
     const error = rest * Math.max(...changes.map(([, last]) => last));
     if (error <= goal || order + 1 >= HIGHEST_ORDER)
       return {
